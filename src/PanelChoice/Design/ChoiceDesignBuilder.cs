@@ -1,0 +1,190 @@
+using System.Collections.Immutable;
+using System.Runtime.InteropServices;
+using PanelChoice.Covariates;
+using PanelChoice.Study;
+
+namespace PanelChoice.Design;
+
+/// <summary>Lays covariates out for the kernels and settles which parameters are free.</summary>
+public static class ChoiceDesignBuilder
+{
+    private const int TargetLanes = 256;
+
+    /// <summary>Builds the design of a covariate set under a nest tree.</summary>
+    /// <param name="covariates">Covariates on the estimation sample; every used occasion offers two or more alternatives.</param>
+    /// <param name="tree">The nest tree over the panel's alternatives, in the panel's order.</param>
+    /// <param name="nests">The study's nests, which give the order of the dissimilarities; same names as in the tree.</param>
+    /// <param name="form">The form: a nest that is never wider than one child has no parameter in the utility-scaled one.</param>
+    /// <exception cref="ArgumentException">The tree is over other alternatives than the panel.</exception>
+    public static ChoiceDesign Build(CovariateSet covariates, NestTree tree, ImmutableArray<NestSpecification> nests, NestedLogitForm form)
+    {
+        ArgumentNullException.ThrowIfNull(covariates);
+        ArgumentNullException.ThrowIfNull(tree);
+        var panel = covariates.Panel;
+        if (!tree.Alternatives.SequenceEqual(panel.Alternatives))
+            throw new ArgumentException("The nest tree and the panel name different alternatives.", nameof(tree));
+
+        var layout = LayOutParameters(covariates, tree, nests, form);
+        var columns = Columns(covariates, out var stored);
+        var persons = Persons(covariates);
+        var blocks = Blocks(persons.Start, stored, panel.Alternatives.Length, out var dataLength, out var maskLength);
+        var data = new double[dataLength];
+        var offered = new byte[maskLength];
+        var chosenMask = new byte[maskLength];
+        var chosen = new int[covariates.Used.Length];
+        foreach (var block in blocks) Fill(block, covariates, columns, data, offered, chosenMask, chosen);
+
+        var clusterNames = persons.Panel.Select(p => panel.ClusterOf[p]).Distinct().Order().ToList();
+        var clusterNumber = clusterNames.Select((c, i) => (c, i)).ToDictionary(x => x.c, x => x.i);
+        return new ChoiceDesign(
+            tree, layout, columns, stored, blocks,
+            ImmutableCollectionsMarshal.AsImmutableArray(data),
+            ImmutableCollectionsMarshal.AsImmutableArray(offered),
+            ImmutableCollectionsMarshal.AsImmutableArray(chosenMask),
+            ImmutableCollectionsMarshal.AsImmutableArray(chosen),
+            covariates.Used,
+            persons.Start,
+            persons.Panel,
+            [.. persons.Panel.Select(p => panel.Weight[p])],
+            panel.ClusterBy,
+            [.. persons.Panel.Select(p => clusterNumber[panel.ClusterOf[p]])],
+            [.. clusterNames.Select(c => panel.Clusters[c])]);
+    }
+
+    private static ParameterLayout LayOutParameters(
+        CovariateSet covariates, NestTree tree, ImmutableArray<NestSpecification> nests, NestedLogitForm form)
+    {
+        var parameters = new List<ModelParameter>();
+        foreach (var c in covariates.Covariates)
+            parameters.Add(new ModelParameter(c.Term, c.Alternative, ParameterKind.Coefficient, c.Fixed, c.Start, c.Role));
+        var coefficients = parameters.Count;
+
+        var wide = WideSituations(covariates, tree);
+        var nodeParameter = Enumerable.Repeat(-1, tree.Nodes.Length).ToArray();
+        var nodeOf = tree.Nodes.Select((n, i) => (n.Name, i)).Where(x => x.i != tree.Root).ToDictionary(x => x.Name, x => x.i);
+        foreach (var nest in nests)
+        {
+            var node = nodeOf[nest.Name];
+            if (tree.Nodes[node].Owner != node) continue;
+            var everWide = Enumerable.Range(0, tree.Nodes.Length).Any(n => tree.Nodes[n].Owner == node && wide[n] > 0);
+            var unidentified = form == NestedLogitForm.UtilityScaled && !everWide;
+            nodeParameter[node] = parameters.Count;
+            // Where the nest is never wide its value drops out of every probability; 1 stands in for it and the report names the parent's.
+            parameters.Add(new ModelParameter(
+                nest.Name, null, ParameterKind.Dissimilarity, tree.Nodes[node].Dissimilarity ?? (unidentified ? 1 : null), null, CovariateRole.Present));
+        }
+
+        var places = new List<NestPlace>();
+        foreach (var nest in nests)
+        {
+            var node = nodeOf[nest.Name];
+            var owner = tree.Nodes[node].Owner;
+            nodeParameter[node] = nodeParameter[owner];
+            var standing = parameters[nodeParameter[owner]].IsFree
+                ? (owner == node ? NestStanding.Own : NestStanding.Shared)
+                : tree.Nodes[owner].Dissimilarity is null ? NestStanding.NeverWider : NestStanding.FixedByStudy;
+            places.Add(new NestPlace(nest.Name, node, nodeParameter[node], standing, tree.ParentOf(tree.Alternatives.Length + node), wide[node]));
+        }
+
+        return new ParameterLayout([.. parameters], coefficients, [.. nodeParameter], [.. places]);
+    }
+
+    private static int[] WideSituations(CovariateSet covariates, NestTree tree)
+    {
+        var alternatives = tree.Alternatives.Length;
+        var wide = new int[tree.Nodes.Length];
+        var any = new bool[alternatives + tree.Nodes.Length];
+        foreach (var occasion in covariates.Used)
+        {
+            for (var j = 0; j < alternatives; j++) any[j] = covariates.Panel.Offered[(occasion * alternatives) + j];
+            for (var n = 0; n < tree.Nodes.Length; n++)
+            {
+                var width = tree.Nodes[n].Children.Count(c => any[c]);
+                any[alternatives + n] = width > 0;
+                if (width > 1) wide[n]++;
+            }
+        }
+
+        return wide;
+    }
+
+    private static ImmutableArray<DesignColumn> Columns(CovariateSet covariates, out int stored)
+    {
+        var columns = new List<DesignColumn>();
+        stored = 0;
+        for (var j = 0; j < covariates.Panel.Alternatives.Length; j++)
+            for (var k = 0; k < covariates.Covariates.Length; k++)
+                if (covariates.Covariates[k].Enters.Contains(j))
+                    columns.Add(new DesignColumn(k, j, covariates.Covariates[k].IsConstant ? -1 : stored++));
+        return [.. columns];
+    }
+
+    private static (ImmutableArray<int> Start, ImmutableArray<int> Panel) Persons(CovariateSet covariates)
+    {
+        var start = new List<int>();
+        var panel = new List<int>();
+        for (var t = 0; t < covariates.Used.Length; t++)
+        {
+            var person = covariates.Panel.PersonOf[covariates.Used[t]];
+            if (panel.Count > 0 && panel[^1] == person) continue;
+            start.Add(t);
+            panel.Add(person);
+        }
+
+        start.Add(covariates.Used.Length);
+        return ([.. start], [.. panel]);
+    }
+
+    private static ImmutableArray<DesignBlock> Blocks(
+        ImmutableArray<int> personStart, int stored, int alternatives, out int dataLength, out int maskLength)
+    {
+        var blocks = new List<DesignBlock>();
+        dataLength = maskLength = 0;
+        var first = 0;
+        for (var p = 0; p + 1 < personStart.Length; p++)
+        {
+            var last = p + 2 == personStart.Length;
+            if (!last && personStart[p + 2] - first <= TargetLanes) continue;
+            var situations = personStart[p + 1] - first;
+            var lanes = (situations + ChoiceDesign.TileLanes - 1) / ChoiceDesign.TileLanes * ChoiceDesign.TileLanes;
+            blocks.Add(new DesignBlock(first, situations, lanes, dataLength, maskLength));
+            dataLength = checked(dataLength + (lanes * stored));
+            maskLength = checked(maskLength + (lanes / ChoiceDesign.TileLanes * alternatives));
+            first = personStart[p + 1];
+        }
+
+        return [.. blocks];
+    }
+
+    private static void Fill(
+        DesignBlock block, CovariateSet covariates, ImmutableArray<DesignColumn> columns, double[] data, byte[] offered, byte[] chosenMask, int[] chosen)
+    {
+        var panel = covariates.Panel;
+        var alternatives = panel.Alternatives.Length;
+        for (var lane = 0; lane < block.Situations; lane++)
+        {
+            var situation = block.FirstSituation + lane;
+            var occasion = covariates.Used[situation];
+            chosen[situation] = panel.Chosen[occasion];
+            var mask = block.MaskOffset + ((lane / ChoiceDesign.TileLanes) * alternatives);
+            var bit = (byte)(1 << (lane % ChoiceDesign.TileLanes));
+            for (var j = 0; j < alternatives; j++)
+                if (panel.Offered[(occasion * alternatives) + j]) offered[mask + j] |= bit;
+            chosenMask[mask + chosen[situation]] |= bit;
+        }
+
+        foreach (var column in columns)
+        {
+            if (column.Storage < 0) continue;
+            var covariate = covariates.Covariates[column.Parameter];
+            var place = covariate.Enters.IndexOf(column.Alternative);
+            var into = block.DataOffset + (column.Storage * block.Lanes);
+            for (var lane = 0; lane < block.Situations; lane++)
+            {
+                var situation = block.FirstSituation + lane;
+                var isOffered = panel.Offered[(covariates.Used[situation] * alternatives) + column.Alternative];
+                data[into + lane] = isOffered ? covariate.Values[(situation * covariate.Enters.Length) + place] : 0;
+            }
+        }
+    }
+}

@@ -1,0 +1,122 @@
+using System.Collections.Immutable;
+using MathNet.Numerics.LinearAlgebra;
+using PanelChoice.Study;
+
+namespace PanelChoice.Inference;
+
+/// <summary>Kinds of covariance estimate.</summary>
+public enum CovarianceKind
+{
+    /// <summary>H^-1: each occasion independent.</summary>
+    Pooled,
+
+    /// <summary>Inverse of the summed outer products of occasion scores: a check on specification.</summary>
+    OuterProduct,
+
+    /// <summary>H^-1 (sum s_it s_it') H^-1: every choice by itself (Huber 1967, White 1982).</summary>
+    Robust,
+
+    /// <summary>G/(G-1) H^-1 (sum s_g s_g') H^-1 (Liang and Zeger 1986).</summary>
+    Cluster,
+
+    /// <summary>The same without G/(G-1).</summary>
+    ClusterUncorrected,
+
+    /// <summary>(G-1)/G sum of squared deviations of delete-one-cluster estimates from the full estimate.</summary>
+    Jackknife,
+
+    /// <summary>Two-way clustering.</summary>
+    TwoWay,
+
+    /// <summary>Covariance of bootstrap replicates.</summary>
+    Bootstrap,
+}
+
+/// <summary>A covariance estimate, or the reason why there is none.</summary>
+/// <param name="Kind">Its kind.</param>
+/// <param name="Matrix">F x F over the free parameters, symmetric, in the user's units; null when refused. Never written to.</param>
+/// <param name="Factor">Small-sample factor that is in it; 1 for none.</param>
+/// <param name="Clusters">Clusters it rests on; null where none.</param>
+/// <param name="DegreesOfFreedom">Degrees of freedom for t; null means the normal distribution.</param>
+/// <param name="Cautions">Sentences that belong beside it.</param>
+/// <param name="Refusal">Why there is no matrix; null when there is one.</param>
+/// <param name="RefusedParameters">Free parameters (by their place among the free ones) for which alone the figure is refused.</param>
+public sealed record CovarianceEstimate(
+    CovarianceKind Kind, Matrix<double>? Matrix, double Factor, int? Clusters, double? DegreesOfFreedom,
+    ImmutableArray<string> Cautions, string? Refusal, ImmutableArray<int> RefusedParameters);
+
+/// <summary>An interval.</summary>
+/// <param name="Low">Lower end.</param>
+/// <param name="High">Upper end.</param>
+public sealed record Interval(double Low, double High);
+
+/// <summary>Figures of one free parameter under one kind of covariance.</summary>
+/// <param name="StandardError">Standard error; null when it does not exist.</param>
+/// <param name="Interval">Interval at the study's confidence; null when it is not given for this kind.</param>
+/// <param name="PValue">Two-sided p-value against 0 (coefficients) or the parent's dissimilarity (log scale); null when not given.</param>
+/// <param name="Reason">Why a figure is missing; null when none is.</param>
+public sealed record KindFigures(double? StandardError, Interval? Interval, double? PValue, string? Reason);
+
+/// <summary>All inference on one free parameter.</summary>
+/// <param name="Parameter">Index in the layout.</param>
+/// <param name="ByKind">Figures by kind.</param>
+/// <param name="BootstrapPercentile">Percentile interval of the replicates; null without bootstrap.</param>
+/// <param name="BootstrapError">Monte-Carlo error of the bootstrap standard error; null without bootstrap.</param>
+/// <param name="SeRatio">Clustered over pooled standard error: by how much pooling makes it too small.</param>
+/// <param name="EquivalentOccasions">Occasions / ratio squared: independent occasions that would be worth as much.</param>
+public sealed record ParameterInference(
+    int Parameter, ImmutableDictionary<CovarianceKind, KindFigures> ByKind, Interval? BootstrapPercentile, double? BootstrapError,
+    double? SeRatio, double? EquivalentOccasions);
+
+/// <summary>How the jackknife went.</summary>
+/// <param name="Kind">Full refits or one step.</param>
+/// <param name="Refits">Delete-one estimates attempted.</param>
+/// <param name="Failures">Of these, failed.</param>
+/// <param name="Deviations">G x F deviations from the full estimate, row by row; NaN rows where a refit failed.</param>
+public sealed record JackknifeSummary(JackknifeKind Kind, int Refits, int Failures, ImmutableArray<double> Deviations);
+
+/// <summary>Failures of one kind among bootstrap replicates.</summary>
+/// <param name="Kind">Kind in plain words.</param>
+/// <param name="Count">How many.</param>
+/// <param name="Replicates">Their numbers, from 0.</param>
+public sealed record ReplicateFailures(string Kind, int Count, ImmutableArray<int> Replicates);
+
+/// <summary>How the bootstrap went.</summary>
+/// <param name="Requested">Replicates asked for.</param>
+/// <param name="Done">Replicates that converged.</param>
+/// <param name="Retried">Replicates that needed another start.</param>
+/// <param name="Failures">Failures by kind.</param>
+/// <param name="Estimates">Requested x K parameters, row by row; NaN rows where a replicate failed.</param>
+/// <param name="LogLikelihood">Log-likelihood of each replicate; NaN where it failed.</param>
+/// <param name="Status">"converged" or the failure's kind, for each replicate.</param>
+public sealed record BootstrapSummary(
+    int Requested, int Done, int Retried, ImmutableArray<ReplicateFailures> Failures,
+    ImmutableArray<double> Estimates, ImmutableArray<double> LogLikelihood, ImmutableArray<string> Status);
+
+/// <summary>A person or cluster that moves a term.</summary>
+/// <param name="Cluster">Index of the cluster.</param>
+/// <param name="Parameter">Index in the layout.</param>
+/// <param name="Change">Change of the estimate when the cluster is left out, in the user's units.</param>
+public sealed record Influence(int Cluster, int Parameter, double Change);
+
+/// <summary>The clusters the figures rest on.</summary>
+/// <param name="By">"person" or the cluster column.</param>
+/// <param name="Count">Clusters with at least one situation.</param>
+/// <param name="Smallest">Smallest number of situations in a cluster.</param>
+/// <param name="Median">Median number of situations.</param>
+/// <param name="Largest">Largest number of situations.</param>
+/// <param name="Effective">Effective number (Carter, Schnepel and Steigerwald 2017); null until it is computed.</param>
+/// <param name="DegreesOfFreedom">G - 1.</param>
+/// <param name="MostInfluential">Clusters that move terms most, measured in clustered standard errors; empty without jackknife.</param>
+public sealed record ClusterSummary(
+    string By, int Count, int Smallest, double Median, int Largest, double? Effective, int DegreesOfFreedom, ImmutableArray<Influence> MostInfluential);
+
+/// <summary>Everything Inference says about a fitted model.</summary>
+/// <param name="Covariances">Every kind, including refused ones.</param>
+/// <param name="Parameters">One for each free parameter, in layout order.</param>
+/// <param name="Clusters">The clusters.</param>
+/// <param name="Jackknife">How the jackknife went; null when off.</param>
+/// <param name="Bootstrap">How the bootstrap went; null without replicates.</param>
+public sealed record InferenceResult(
+    ImmutableDictionary<CovarianceKind, CovarianceEstimate> Covariances, ImmutableArray<ParameterInference> Parameters,
+    ClusterSummary Clusters, JackknifeSummary? Jackknife, BootstrapSummary? Bootstrap);
