@@ -1,0 +1,57 @@
+using PanelChoice.Results;
+using Xunit;
+
+namespace PanelChoice.Tests.Results;
+
+public sealed class AtomicFileTests : IDisposable
+{
+    private readonly string folder = Directory.CreateTempSubdirectory("panelchoice-").FullName;
+
+    public void Dispose() => Directory.Delete(folder, recursive: true);
+
+    [Fact]
+    public void Replaces_the_old_file_and_leaves_nothing_else_behind()
+    {
+        var path = Path.Combine(folder, "result.json");
+        File.WriteAllText(path, "old");
+        AtomicFile.Write(path, stream => stream.Write("new"u8));
+        Assert.Equal("new", File.ReadAllText(path));
+        Assert.Equal([path], Directory.GetFileSystemEntries(folder));
+    }
+
+    [Fact]
+    public void A_writer_may_close_the_stream_itself()
+    {
+        var path = Path.Combine(folder, "table.csv");
+        AtomicFile.Write(path, stream =>
+        {
+            using var writer = new StreamWriter(stream);
+            writer.Write("a,b\n");
+        });
+        Assert.Equal("a,b\n", File.ReadAllText(path));
+    }
+
+    [Fact]
+    public void A_failure_half_way_leaves_the_old_file_untouched_and_no_temporary_file()
+    {
+        var path = Path.Combine(folder, "result.json");
+        File.WriteAllText(path, "old");
+        Assert.Throws<InvalidOperationException>(() => AtomicFile.Write(path, stream =>
+        {
+            stream.Write("half"u8);
+            throw new InvalidOperationException("stopped");
+        }));
+        Assert.Equal("old", File.ReadAllText(path));
+        Assert.Equal([path], Directory.GetFileSystemEntries(folder));
+    }
+
+    [Fact]
+    public void A_path_that_is_a_folder_is_refused_and_nothing_is_left_behind()
+    {
+        var path = Path.Combine(folder, "taken");
+        Directory.CreateDirectory(path);
+        var error = Record.Exception(() => AtomicFile.Write(path, stream => stream.Write("x"u8)));
+        Assert.True(error is IOException or UnauthorizedAccessException);
+        Assert.Equal([path], Directory.GetFileSystemEntries(folder));
+    }
+}
