@@ -1,39 +1,53 @@
 namespace PanelChoice.Results;
 
 /// <summary>
-/// Writes a file so that it is either wholly there or not there at all: into a temporary name in the same folder, flushed to the disk, then
-/// renamed over the old file. After a failure the old file is untouched and the temporary one is gone.
+/// Writes output files so that a reader sees the old file or the whole new one, never a part: everything goes to a temporary name in the
+/// same folder, is flushed to the disk, and is renamed at the end. After a failure the temporary files are gone and the old files stand.
 /// </summary>
 internal static class AtomicFile
 {
-    /// <summary>Writes a file.</summary>
+    /// <summary>Writes one file.</summary>
     /// <param name="path">The file to make or replace; its folder must exist.</param>
     /// <param name="write">Writes the whole content; it may leave the stream open or close it.</param>
     /// <exception cref="IOException">The folder does not exist, the disk is full, the path is a folder.</exception>
     /// <exception cref="UnauthorizedAccessException">The folder or the old file may not be written.</exception>
-    public static void Write(string path, Action<Stream> write)
+    public static void Write(string path, Action<Stream> write) => WriteAll([new PlannedFile(path, write)]);
+
+    /// <summary>Writes several files that belong together: none takes its place before all are complete.</summary>
+    /// <param name="files">The files.</param>
+    /// <exception cref="IOException">As for one file.</exception>
+    /// <exception cref="UnauthorizedAccessException">As for one file.</exception>
+    public static void WriteAll(IReadOnlyList<PlannedFile> files)
     {
-        ArgumentException.ThrowIfNullOrEmpty(path);
-        ArgumentNullException.ThrowIfNull(write);
-        var full = Path.GetFullPath(path);
-        var temporary = Path.Combine(
-            Path.GetDirectoryName(full) ?? throw new IOException($"'{path}' is not a file name."),
-            $".{Path.GetFileName(full)}.{Path.GetRandomFileName()}.part");
+        ArgumentNullException.ThrowIfNull(files);
+        var temporary = files.Select(f => TemporaryName(f.Path)).ToList();
         try
         {
-            using (var stream = new FileStream(temporary, FileMode.CreateNew, FileAccess.ReadWrite, FileShare.None, 1 << 16))
+            for (var i = 0; i < files.Count; i++)
             {
-                write(stream);
+                using (var stream = new FileStream(temporary[i], FileMode.CreateNew, FileAccess.ReadWrite, FileShare.None, 1 << 16))
+                    files[i].Write(stream);
+                FlushToDisk(temporary[i]);
             }
 
-            FlushToDisk(temporary);
-            File.Move(temporary, full, overwrite: true);
+            // A folder in the way is seen now, while nothing has been replaced yet.
+            if (files.FirstOrDefault(f => Directory.Exists(f.Path)) is { } blocked)
+                throw new IOException($"'{blocked.Path}' is a folder.");
+            for (var i = 0; i < files.Count; i++) File.Move(temporary[i], files[i].Path, overwrite: true);
         }
-        catch
+        finally
         {
-            File.Delete(temporary);
-            throw;
+            foreach (var name in temporary) File.Delete(name);
         }
+    }
+
+    private static string TemporaryName(string path)
+    {
+        ArgumentException.ThrowIfNullOrEmpty(path);
+        var full = Path.GetFullPath(path);
+        var folder = Path.GetDirectoryName(full) ?? throw new IOException($"'{path}' is not a file name.");
+        if (!Directory.Exists(folder)) throw new DirectoryNotFoundException($"The folder '{folder}' does not exist.");
+        return Path.Combine(folder, $".{Path.GetFileName(full)}.{Guid.NewGuid():N}.part");
     }
 
     // Opened anew, because a writer that owns the stream may have closed it.
@@ -43,3 +57,8 @@ internal static class AtomicFile
         stream.Flush(flushToDisk: true);
     }
 }
+
+/// <summary>A file to be written by <see cref="AtomicFile"/>.</summary>
+/// <param name="Path">Where it shall stand.</param>
+/// <param name="Write">Writes its bytes.</param>
+internal sealed record PlannedFile(string Path, Action<Stream> Write);

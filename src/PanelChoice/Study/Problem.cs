@@ -60,6 +60,16 @@ public sealed record Checked<T>
     /// <summary>All problems found, in the order of the file.</summary>
     public ImmutableArray<Problem> Problems { get; }
 
+    /// <summary>The next stage's outcome where this one succeeded, or this one's problems.</summary>
+    /// <typeparam name="TNext">The record that the next stage makes.</typeparam>
+    /// <param name="next">The next stage.</param>
+    public Checked<TNext> Then<TNext>(Func<T, Checked<TNext>> next)
+        where TNext : class
+    {
+        ArgumentNullException.ThrowIfNull(next);
+        return Value is null ? Checked<TNext>.Bad(Problems) : next(Value);
+    }
+
     /// <summary>A record without problems.</summary>
     public static Checked<T> Good(T value) => new(value, []);
 

@@ -54,4 +54,32 @@ public sealed class AtomicFileTests : IDisposable
         Assert.True(error is IOException or UnauthorizedAccessException);
         Assert.Equal([path], Directory.GetFileSystemEntries(folder));
     }
+
+    [Fact]
+    public void When_one_of_several_fails_no_old_file_is_touched_and_nothing_is_left_behind()
+    {
+        var first = Path.Combine(folder, "a.csv");
+        File.WriteAllText(first, "old a");
+        Assert.Throws<InvalidOperationException>(() => AtomicFile.WriteAll(
+        [
+            new PlannedFile(first, stream => stream.Write("new a"u8)),
+            new PlannedFile(Path.Combine(folder, "b.csv"), _ => throw new InvalidOperationException("stopped")),
+        ]));
+        Assert.Equal("old a", File.ReadAllText(first));
+        Assert.Equal([first], Directory.GetFileSystemEntries(folder));
+    }
+
+    [Fact]
+    public void A_folder_in_the_place_of_one_of_several_files_is_refused_before_any_is_replaced()
+    {
+        var taken = Path.Combine(folder, "b.csv");
+        Directory.CreateDirectory(taken);
+        Assert.ThrowsAny<IOException>(() => AtomicFile.WriteAll(
+            [new PlannedFile(Path.Combine(folder, "a.csv"), _ => { }), new PlannedFile(taken, _ => { })]));
+        Assert.Equal([taken], Directory.GetFileSystemEntries(folder));
+    }
+
+    [Fact]
+    public void A_missing_folder_is_an_io_error() =>
+        Assert.ThrowsAny<IOException>(() => AtomicFile.Write(Path.Combine(folder, "nowhere", "a.csv"), _ => { }));
 }
