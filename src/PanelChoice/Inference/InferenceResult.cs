@@ -34,7 +34,10 @@ public enum CovarianceKind
 
 /// <summary>A covariance estimate, or the reason why there is none.</summary>
 /// <param name="Kind">Its kind.</param>
-/// <param name="Matrix">F x F over the free parameters, symmetric, in the user's units; null when refused. Never written to.</param>
+/// <param name="Matrix">
+/// F x F over the free parameters, symmetric, in the user's units; NaN in the rows and columns of <paramref name="RefusedParameters"/>; null when
+/// refused. Never written to.
+/// </param>
 /// <param name="Factor">Small-sample factor that is in it; 1 for none.</param>
 /// <param name="Clusters">Clusters it rests on; null where none.</param>
 /// <param name="DegreesOfFreedom">Degrees of freedom for t; null means the normal distribution.</param>
@@ -43,7 +46,19 @@ public enum CovarianceKind
 /// <param name="RefusedParameters">Free parameters (by their place among the free ones) for which alone the figure is refused.</param>
 public sealed record CovarianceEstimate(
     CovarianceKind Kind, Matrix<double>? Matrix, double Factor, int? Clusters, double? DegreesOfFreedom,
-    ImmutableArray<string> Cautions, string? Refusal, ImmutableArray<int> RefusedParameters);
+    ImmutableArray<string> Cautions, string? Refusal, ImmutableArray<int> RefusedParameters)
+{
+    /// <summary>Why each of the <see cref="RefusedParameters"/> is refused, in the same order.</summary>
+    public ImmutableArray<string> RefusedReasons { get; init; } = [];
+
+    /// <summary>A refusal.</summary>
+    internal static CovarianceEstimate Refused(CovarianceKind kind, string reason) => new(kind, null, 1, null, null, [], reason, []);
+
+    /// <summary>An estimate from F x F values, row by row.</summary>
+    internal static CovarianceEstimate Of(
+        CovarianceKind kind, double[] values, int order, double factor, int? clusters, ImmutableArray<string> cautions) =>
+        new(kind, Matrix<double>.Build.DenseOfRowMajor(order, order, values), factor, clusters, clusters - 1, cautions, null, []);
+}
 
 /// <summary>An interval.</summary>
 /// <param name="Low">Lower end.</param>
@@ -66,22 +81,44 @@ public sealed record KindFigures(double? StandardError, Interval? Interval, doub
 /// <param name="EquivalentOccasions">Occasions / ratio squared: independent occasions that would be worth as much.</param>
 public sealed record ParameterInference(
     int Parameter, ImmutableDictionary<CovarianceKind, KindFigures> ByKind, Interval? BootstrapPercentile, double? BootstrapError,
-    double? SeRatio, double? EquivalentOccasions);
+    double? SeRatio, double? EquivalentOccasions)
+{
+    /// <summary>
+    /// The same ratio from the jackknife, given below 40 clusters, where the clustered standard error itself tends to be too small; null otherwise.
+    /// </summary>
+    public double? JackknifeSeRatio { get; init; }
+
+    /// <summary>Why there is no percentile interval; null when there is one.</summary>
+    public string? PercentileReason { get; init; }
+
+    /// <summary>Why there is no ratio and no equivalent number of occasions; null when there are.</summary>
+    public string? RatioReason { get; init; }
+
+    /// <summary>How the ratio was made when sampling weights are in it; null without weights.</summary>
+    public string? RatioLabel { get; init; }
+}
 
 /// <summary>How the jackknife went.</summary>
 /// <param name="Kind">Full refits or one step.</param>
 /// <param name="Refits">Delete-one estimates attempted.</param>
 /// <param name="Failures">Of these, failed.</param>
-/// <param name="Deviations">G x F deviations from the full estimate, row by row; NaN rows where a refit failed.</param>
+/// <param name="Deviations">
+/// G x F deviations from the full estimate, row by row. A row is NaN where the refit failed, an entry where the parameter was not identified
+/// without the cluster.
+/// </param>
 public sealed record JackknifeSummary(JackknifeKind Kind, int Refits, int Failures, ImmutableArray<double> Deviations);
 
 /// <summary>Failures of one kind among bootstrap replicates.</summary>
 /// <param name="Kind">Kind in plain words.</param>
 /// <param name="Count">How many.</param>
 /// <param name="Replicates">Their numbers, from 0.</param>
-public sealed record ReplicateFailures(string Kind, int Count, ImmutableArray<int> Replicates);
+public sealed record ReplicateFailures(string Kind, int Count, ImmutableArray<int> Replicates)
+{
+    /// <summary>Parameters (indices in the layout) the failures were about, those named most often first; may be empty.</summary>
+    public ImmutableArray<int> Parameters { get; init; } = [];
+}
 
-/// <summary>How the bootstrap went.</summary>
+/// <summary>How the bootstrap went. Nothing is dropped or drawn again: requested = done + failures.</summary>
 /// <param name="Requested">Replicates asked for.</param>
 /// <param name="Done">Replicates that converged.</param>
 /// <param name="Retried">Replicates that needed another start.</param>
@@ -109,7 +146,11 @@ public sealed record Influence(int Cluster, int Parameter, double Change);
 /// <param name="DegreesOfFreedom">G - 1.</param>
 /// <param name="MostInfluential">Clusters that move terms most, measured in clustered standard errors; empty without jackknife.</param>
 public sealed record ClusterSummary(
-    string By, int Count, int Smallest, double Median, int Largest, double? Effective, int DegreesOfFreedom, ImmutableArray<Influence> MostInfluential);
+    string By, int Count, int Smallest, double Median, int Largest, double? Effective, int DegreesOfFreedom, ImmutableArray<Influence> MostInfluential)
+{
+    /// <summary>Why there is no effective number; null when there is one.</summary>
+    public string? EffectiveReason { get; init; }
+}
 
 /// <summary>Everything Inference says about a fitted model.</summary>
 /// <param name="Covariances">Every kind, including refused ones.</param>

@@ -1,0 +1,104 @@
+using System.Collections.Immutable;
+using System.Runtime.InteropServices;
+using PanelChoice.Estimation;
+using PanelChoice.Numerics;
+
+namespace PanelChoice.Inference;
+
+/// <summary>Delete-one-cluster estimates by full refits.</summary>
+/// <param name="Deviations">G x F: th_(g) - th; NaN where a term was not identified without the cluster, or the refit failed.</param>
+/// <param name="Failed">Clusters whose plain refit failed, rescued by holding a term or not.</param>
+/// <param name="Lost">Term by term (place among the free ones), the clusters without which it is not identified, with the kind of failure.</param>
+/// <param name="Hopeless">Clusters without which nothing could be estimated, with the kind of failure.</param>
+internal sealed record JackknifeRefits(
+    double[] Deviations, int Failed, SortedDictionary<int, List<(int Cluster, string Kind)>> Lost, List<(int Cluster, string Kind)> Hopeless)
+{
+    /// <summary>
+    /// Refits without each cluster, warm-started from the full estimate. Where a refit finds terms that are not identified (or run to
+    /// infinity) without the cluster, those terms are lost for the jackknife, and the others are estimated once more with them held at
+    /// their full-sample values, so that one person cannot take the figures of every term away.
+    /// </summary>
+    public static JackknifeRefits Run(InferenceInput input, WorkContext work)
+    {
+        var clusters = input.Clusters.Length;
+        var f = input.Free.Length;
+        var deviations = new double[clusters * f];
+        Array.Fill(deviations, double.NaN);
+        var lost = new SortedDictionary<int, List<(int, string)>>();
+        var hopeless = new List<(int, string)>();
+        var failed = new HashSet<int>();
+        var pending = Enumerable.Range(0, clusters).Select(g => new Deletion(g, [], [])).ToList();
+        for (var done = 0; pending.Count > 0; done = clusters - pending.Count)
+        {
+            var again = new List<Deletion>();
+            foreach (var batch in pending.Chunk(16 * Math.Max(1, work.Threads)))
+            {
+                work.Report("jackknife", done, clusters);
+                var outcomes = input.Refitter.Refit([.. batch.Select(d => d.Request(input))], work.Cancellation);
+                for (var i = 0; i < batch.Length; i++)
+                {
+                    var deletion = batch[i];
+                    var outcome = outcomes[i];
+                    if (outcome.Status == FitStatus.Converged && input.Free.All(k => double.IsFinite(outcome.Parameters[k])))
+                    {
+                        for (var k = 0; k < f; k++)
+                            if (!deletion.Lost.Contains(input.Free[k]))
+                                deviations[(deletion.Cluster * f) + k] = outcome.Parameters[input.Free[k]] - input.Estimates[input.Free[k]];
+                        done++;
+                        continue;
+                    }
+
+                    failed.Add(deletion.Cluster);
+                    var kind = FailureKinds.Of(outcome);
+                    if (deletion.WithFailure(outcome, input) is not { } next)
+                    {
+                        hopeless.Add((deletion.Cluster, kind));
+                        done++;
+                        continue;
+                    }
+
+                    foreach (var parameter in next.Lost.Except(deletion.Lost))
+                    {
+                        var place = input.Free.IndexOf(parameter);
+                        if (!lost.TryGetValue(place, out var at)) lost[place] = at = [];
+                        at.Add((deletion.Cluster, kind));
+                    }
+
+                    again.Add(next);
+                }
+            }
+
+            pending = again;
+        }
+
+        work.Report("jackknife", clusters, clusters);
+        return new JackknifeRefits(deviations, failed.Count, lost, hopeless);
+    }
+
+    /// <summary>One cluster left out; parameters by their index in the layout.</summary>
+    private sealed record Deletion(int Cluster, ImmutableArray<int> Held, ImmutableArray<int> Lost)
+    {
+        public RefitRequest Request(InferenceInput input)
+        {
+            var weights = new double[input.Clusters.Length];
+            Array.Fill(weights, 1);
+            weights[Cluster] = 0;
+            return new RefitRequest(ImmutableCollectionsMarshal.AsImmutableArray(weights), input.Estimates, Held);
+        }
+
+        /// <summary>The same deletion with failed terms held; null when that cannot help.</summary>
+        public Deletion? WithFailure(RefitOutcome outcome, InferenceInput input)
+        {
+            var named = outcome.FailedParameters.Where(k => input.Free.Contains(k) && !Held.Contains(k)).ToImmutableArray();
+            if (named.IsEmpty) return null;
+            var next = outcome.Status switch
+            {
+                // Terms that cannot be told from each other: holding one of them gives the rest of the model its estimates back, whatever the value.
+                FitStatus.NotIdentified => new Deletion(Cluster, Held.Add(named[^1]), [.. Lost.Union(named)]),
+                FitStatus.Separated => new Deletion(Cluster, [.. Held.Union(named)], [.. Lost.Union(named)]),
+                _ => null,
+            };
+            return next is null || input.Free.All(next.Held.Contains) ? null : next;
+        }
+    }
+}

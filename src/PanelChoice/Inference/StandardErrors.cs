@@ -1,0 +1,56 @@
+using System.Collections.Immutable;
+using PanelChoice.Numerics;
+using PanelChoice.Study;
+
+namespace PanelChoice.Inference;
+
+/// <summary>Every covariance estimate side by side, and the figures made from them.</summary>
+public static class StandardErrors
+{
+    /// <summary>Computes them. What cannot be had is refused with its reason inside the result, never by an exception.</summary>
+    /// <param name="input">What is known of the fitted model.</param>
+    /// <param name="settings">Confidence, jackknife, bootstrap.</param>
+    /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
+    /// <exception cref="OperationCanceledException">Cancelled.</exception>
+    /// <exception cref="ArgumentException">The lengths in the input do not fit together.</exception>
+    public static InferenceResult Compute(InferenceInput input, InferenceSettings settings, WorkContext work)
+    {
+        ArgumentNullException.ThrowIfNull(input);
+        ArgumentNullException.ThrowIfNull(settings);
+        ArgumentNullException.ThrowIfNull(work);
+        input.CheckLengths();
+        if (input.NoMaximum is { } reason) return Without(input, settings, reason);
+        if (input.Free.IsEmpty) return Without(input, settings, "Every parameter is fixed, so that nothing was estimated.");
+
+        var pooled = PooledCovariance.Estimate(input, out var bread);
+        if (bread is null) return Without(input, settings, pooled.Refusal!);
+
+        var meat = Sandwich.OuterSum(input.Scores.AsMemory(), input.Free.Length, work.Threads);
+        var (cluster, uncorrected) = ClusterCovariance.Estimate(input, bread, work.Threads);
+        var (jackknife, deletions) = ClusterJackknife.Estimate(input, settings.Jackknife, work);
+        var (bootstrap, replicates) = ClusterBootstrap.Estimate(input, settings, work);
+        return Assemble(
+            input, settings,
+            [
+                pooled, OuterProductCovariance.Estimate(input, meat), RobustCovariance.Estimate(input, bread, meat), cluster, uncorrected, jackknife,
+                CovarianceEstimate.Refused(CovarianceKind.TwoWay, "The study names no second cluster."), bootstrap,
+            ],
+            deletions, replicates);
+    }
+
+    private static InferenceResult Without(InferenceInput input, InferenceSettings settings, string reason) =>
+        Assemble(input, settings, [.. Enum.GetValues<CovarianceKind>().Select(kind => CovarianceEstimate.Refused(kind, reason))], null, null);
+
+    private static InferenceResult Assemble(
+        InferenceInput input, InferenceSettings settings, ImmutableArray<CovarianceEstimate> estimates, JackknifeSummary? jackknife,
+        BootstrapSummary? bootstrap)
+    {
+        var covariances = estimates.ToImmutableDictionary(c => c.Kind);
+        var figures = new ParameterFigures(input, covariances, bootstrap, settings.Confidence);
+        return new InferenceResult(
+            covariances,
+            [.. Enumerable.Range(0, input.Free.Length).Select(figures.Of)],
+            ClusterFigures.Of(input, covariances[CovarianceKind.Cluster], jackknife),
+            jackknife, bootstrap);
+    }
+}
