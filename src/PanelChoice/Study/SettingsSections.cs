@@ -1,0 +1,58 @@
+namespace PanelChoice.Study;
+
+/// <summary>Reads <c>[history]</c>, <c>[estimate]</c>, <c>[inference]</c> with its bootstrap, and <c>[diagnostics]</c>; an absent table has its defaults.</summary>
+internal static class SettingsSections
+{
+    private const string BelowOne = "a number between 0 and 1, both excluded";
+
+    public static HistorySpecification History(TableReader table, StudyProblems problems)
+    {
+        var previous = table.Word<PreviousRule?>(
+            "previous", null, ("recorded", PreviousRule.Recorded), ("step", PreviousRule.Step), ("day", PreviousRule.Day),
+            ("workday", PreviousRule.Workday), ("week", PreviousRule.Week));
+        var holidays = table.Dates("holidays");
+        var longestGap = table.Whole("longest_gap", 1);
+        var without = table.Word("without_history", MissingHistory.Drop, ("drop", MissingHistory.Drop), ("zero", MissingHistory.Zero));
+        Belongs("holidays", PreviousRule.Workday, "workday");
+        Belongs("longest_gap", PreviousRule.Recorded, "recorded");
+        return new HistorySpecification(previous, holidays, longestGap, without);
+
+        void Belongs(string key, PreviousRule rule, string word)
+        {
+            // Where 'previous' itself has a problem, nothing can be said about what goes with it.
+            if (table.Has(key) && previous != rule && (previous is not null || !table.Has("previous")))
+                problems.Add("study.needs_key", table.PlaceOf(key), $"'{key}' has a meaning only with previous = \"{word}\"", $"write previous = \"{word}\" or remove '{key}'");
+        }
+    }
+
+    public static EstimateSettings Estimate(TableReader table) => new(
+        table.Word("form", NestedLogitForm.UtilityScaled, ("utility-scaled", NestedLogitForm.UtilityScaled), ("unscaled", NestedLogitForm.Unscaled)),
+        table.Whole("starts", 1) ?? 20,
+        table.Seed("seed", 7));
+
+    public static InferenceSettings Inference(TableReader table, TableReader bootstrap, StudyProblems problems)
+    {
+        var cluster = table.Text("cluster") ?? "person";
+        var confidence = table.Number("confidence", InsideUnit, BelowOne) ?? 0.95;
+        var jackknife = table.Word(
+            "jackknife", JackknifeKind.Auto, ("auto", JackknifeKind.Auto), ("refit", JackknifeKind.Refit), ("one_step", JackknifeKind.OneStep), ("off", JackknifeKind.Off));
+        if (bootstrap.Word("blocks", false, ("cluster", false), ("moving", true)))
+            problems.Add(
+                "study.not_supported", bootstrap.PlaceOf("blocks"), "moving blocks are not supported yet", "draw whole clusters: blocks = \"cluster\"");
+        var replicates = 399;
+        if (bootstrap.Peek("replicates") == "auto")
+            problems.Add(
+                "study.not_supported", bootstrap.PlaceOf("replicates"), "replicates = \"auto\" is not supported yet", "state a number, for example replicates = 399");
+        else
+            replicates = bootstrap.Whole("replicates", 0) ?? replicates;
+        return new InferenceSettings(cluster, confidence, jackknife, replicates, bootstrap.Seed("seed", 7));
+    }
+
+    public static DiagnosticsSettings Diagnostics(TableReader table) => new(
+        table.Whole("lags", 1) ?? 5,
+        table.Number("level", InsideUnit, BelowOne) ?? 0.05,
+        table.Whole("draws", 1) ?? 9999,
+        table.Seed("seed", 7));
+
+    private static bool InsideUnit(double value) => value is > 0 and < 1;
+}
