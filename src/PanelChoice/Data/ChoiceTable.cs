@@ -16,9 +16,13 @@ public enum OccasionKind
 }
 
 /// <summary>A text column held as whole-number codes and their values.</summary>
-/// <param name="Codes">Code of each row, an index into <paramref name="Levels"/>.</param>
+/// <param name="Codes">Code of each row, an index into <paramref name="Levels"/>, or <see cref="NoValue"/>.</param>
 /// <param name="Levels">The distinct values in ordinal order.</param>
-public sealed record CodedColumn(ImmutableArray<int> Codes, ImmutableArray<string> Levels);
+public sealed record CodedColumn(ImmutableArray<int> Codes, ImmutableArray<string> Levels)
+{
+    /// <summary>The code of an empty cell; only text attributes have it, and only on rows that were not offered.</summary>
+    public const int NoValue = -1;
+}
 
 /// <summary>The needed columns of a long data file, row by row in the file's order, typed and checked cell by cell.</summary>
 /// <param name="File">Data file as the study writes it.</param>

@@ -26,6 +26,9 @@ public sealed record Problem(string Id, string File, string What, string Remedy)
     /// <summary>The offending value as it was read.</summary>
     public string? Value { get; init; }
 
+    /// <summary>On the line that closes a shortened list of one kind: how many problems of that kind there are in all.</summary>
+    public long? Total { get; init; }
+
     /// <summary>The whole problem as one plain line: place, value, what is wrong, remedy.</summary>
     public string Sentence
     {
@@ -57,7 +60,7 @@ public sealed record Checked<T>
     /// <summary>The record; null when <see cref="Problems"/> is not empty.</summary>
     public T? Value { get; }
 
-    /// <summary>All problems found, in the order of the file.</summary>
+    /// <summary>All problems found, in the order of the file; those of a data file kind by kind, the first twenty of each and then their total.</summary>
     public ImmutableArray<Problem> Problems { get; }
 
     /// <summary>The next stage's outcome where this one succeeded, or this one's problems.</summary>

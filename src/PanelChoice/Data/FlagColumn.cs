@@ -1,0 +1,48 @@
+using System.Collections.Immutable;
+using System.Globalization;
+
+namespace PanelChoice.Data;
+
+/// <summary>A column of yes and no: 1 or 0, true or false. A cell that is neither counts as <paramref name="otherwise"/> until the file is rejected.</summary>
+internal sealed class FlagColumn(string file, string name, bool otherwise) : CellColumn(file, name)
+{
+    private const string Remedy = "write 1 or true, 0 or false";
+
+    private readonly ImmutableArray<bool>.Builder values = ImmutableArray.CreateBuilder<bool>();
+
+    /// <summary>The entry of a cell already added.</summary>
+    public bool this[int index] => values[index];
+
+    /// <summary>Number of cells added.</summary>
+    public int Count => values.Count;
+
+    /// <summary>Hands the column over; it can take no more cells.</summary>
+    public ImmutableArray<bool> Finish() => values.DrainToImmutable();
+
+    public override void Whole(CellPlace at, long value) => Add(at, value is 0 or 1 ? value == 1 : null, value.ToString(CultureInfo.InvariantCulture));
+
+    public override void Number(CellPlace at, double value) => Add(at, value is 0 or 1 ? value == 1 : null, CellText.Of(value));
+
+    public override void Truth(CellPlace at, bool value) => values.Add(value);
+
+    public override void Moment(CellPlace at, DateTime value) => Add(at, null, Shown(value));
+
+    public override void Empty(CellPlace at)
+    {
+        RejectEmpty(at, Remedy);
+        values.Add(otherwise);
+    }
+
+    protected override void Written(CellPlace at, ReadOnlySpan<byte> utf8)
+    {
+        if (CellText.TryTruth(utf8, out var truth)) values.Add(truth);
+        else if (CellText.TryNumber(utf8, out var number) && number is 0 or 1) values.Add(number == 1);
+        else Add(at, null, Shown(utf8));
+    }
+
+    private void Add(CellPlace at, bool? value, string shown)
+    {
+        if (value is null) Reject("data.not_boolean", at, shown, "says neither yes nor no", Remedy);
+        values.Add(value ?? otherwise);
+    }
+}

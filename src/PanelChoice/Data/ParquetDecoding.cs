@@ -1,0 +1,71 @@
+using System.Globalization;
+using System.Text;
+using Parquet;
+using Parquet.Schema;
+
+namespace PanelChoice.Data;
+
+/// <summary>Hands entry <paramref name="index"/> of a decoded column to a column of the table.</summary>
+internal delegate void CellPutter(CellColumn into, CellPlace at, int index);
+
+/// <summary>Decodes one column of one row group.</summary>
+internal delegate CellPutter ColumnDecoder(ParquetRowGroupReader group, DataField field);
+
+/// <summary>How each type that Parquet stores becomes a cell; a column of any type is read as nullable, because an empty cell may stand anywhere.</summary>
+internal static class ParquetDecoding
+{
+    private static readonly Dictionary<Type, ColumnDecoder> Decoders = new()
+    {
+        [typeof(double)] = DecoderOf<double>((into, at, v) => into.Number(at, v)),
+        [typeof(float)] = DecoderOf<float>((into, at, v) => into.Number(at, v)),
+        [typeof(decimal)] = DecoderOf<decimal>(PutDecimal),
+        [typeof(long)] = DecoderOf<long>((into, at, v) => into.Whole(at, v)),
+        [typeof(int)] = DecoderOf<int>((into, at, v) => into.Whole(at, v)),
+        [typeof(short)] = DecoderOf<short>((into, at, v) => into.Whole(at, v)),
+        [typeof(sbyte)] = DecoderOf<sbyte>((into, at, v) => into.Whole(at, v)),
+        [typeof(byte)] = DecoderOf<byte>((into, at, v) => into.Whole(at, v)),
+        [typeof(ushort)] = DecoderOf<ushort>((into, at, v) => into.Whole(at, v)),
+        [typeof(uint)] = DecoderOf<uint>((into, at, v) => into.Whole(at, v)),
+        [typeof(ulong)] = DecoderOf<ulong>((into, at, v) => PutDecimal(into, at, v)),
+        [typeof(bool)] = DecoderOf<bool>((into, at, v) => into.Truth(at, v)),
+        [typeof(DateTime)] = DecoderOf<DateTime>((into, at, v) => into.Moment(at, v)),
+        [typeof(ReadOnlyMemory<char>)] = DecoderOf<ReadOnlyMemory<char>>((into, at, v) => PutText(into, at, v.Span)),
+    };
+
+    /// <summary>The decoder of a field; null for nested values and for types that mean nothing in a panel.</summary>
+    public static ColumnDecoder? DecoderOf(Field field) =>
+        field is DataField { IsArray: false } data ? Decoders.GetValueOrDefault(data.ClrType) : null;
+
+    /// <summary>What a field holds, for messages.</summary>
+    public static string KindOf(Field field) =>
+        field is DataField { IsArray: false } data ? string.Create(CultureInfo.InvariantCulture, $"values of the type {data.ClrType.Name}") : "nested values";
+
+    /// <summary>Waits for the library, whose interface is asynchronous throughout while a file on disk is not.</summary>
+    public static T Wait<T>(Task<T> task) => task.GetAwaiter().GetResult();
+
+    private static ColumnDecoder DecoderOf<T>(Action<CellColumn, CellPlace, T> put)
+        where T : struct => (group, field) =>
+    {
+        var values = new T?[group.RowCount];
+        group.ReadAsync(field, values.AsMemory()).AsTask().GetAwaiter().GetResult();
+        return (into, at, index) =>
+        {
+            if (values[index] is { } value) put(into, at, value);
+            else into.Empty(at);
+        };
+    };
+
+    private static void PutDecimal(CellColumn into, CellPlace at, decimal value)
+    {
+        if (value == decimal.Truncate(value) && value is >= long.MinValue and <= long.MaxValue) into.Whole(at, (long)value);
+        else into.Number(at, (double)value);
+    }
+
+    private static void PutText(CellColumn into, CellPlace at, ReadOnlySpan<char> text)
+    {
+        Span<byte> small = stackalloc byte[256];
+        var most = Encoding.UTF8.GetMaxByteCount(text.Length);
+        var utf8 = most <= small.Length ? small : new byte[most];
+        into.Text(at, utf8[..Encoding.UTF8.GetBytes(text, utf8)]);
+    }
+}

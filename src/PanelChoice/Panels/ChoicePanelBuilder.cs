@@ -1,0 +1,124 @@
+using System.Collections.Immutable;
+using System.Runtime.InteropServices;
+using PanelChoice.Data;
+using PanelChoice.Study;
+
+namespace PanelChoice.Panels;
+
+/// <summary>Puts the rows of a table together as persons, their occasions and choice sets.</summary>
+public static class ChoicePanelBuilder
+{
+    /// <summary>Builds the panel. The order of rows in the file means nothing, except for the row numbers in messages.</summary>
+    /// <param name="study">The study.</param>
+    /// <param name="table">The table that was read for it.</param>
+    /// <returns>
+    /// The panel, or the problems: <c>study.unknown_alternative</c>, <c>study.previous_does_not_fit</c>,
+    /// <c>study.history_without_occasions</c>, <c>data.duplicate</c>, <c>data.several_occasions</c>, <c>data.none_chosen</c>,
+    /// <c>data.several_chosen</c>, <c>data.chosen_not_offered</c>, <c>data.weight_not_positive</c>, <c>data.weight_not_constant</c>,
+    /// <c>data.cluster_not_constant</c>.
+    /// </returns>
+    public static Checked<ChoicePanel> Build(StudySpecification study, ChoiceTable table)
+    {
+        ArgumentNullException.ThrowIfNull(study);
+        ArgumentNullException.ThrowIfNull(table);
+        var problems = new ProblemList();
+        StudyFit.Check(study, table, problems);
+        var personOrder = NameOrder.Of(table.Person.Levels);
+        var order = RowOrder.Of(table, NameOrder.Ranks(personOrder));
+        var (occasionStart, personStart) = Check(study, table, order, problems);
+        return problems.IsEmpty
+            ? Checked<ChoicePanel>.Good(Assemble(study, table, personOrder, order, occasionStart, personStart))
+            : Checked<ChoicePanel>.Bad(ProblemList.InRowOrder(problems));
+    }
+
+    /// <summary>Finds where occasions begin in the ordered rows (with a closing entry), and where persons begin among the occasions, checking each.</summary>
+    private static (List<int> OccasionStart, int[] PersonStart) Check(StudySpecification study, ChoiceTable table, RowOrder order, ProblemList problems)
+    {
+        var checks = new ChoiceSetChecks(study, table, problems);
+        var rows = order.Rows.AsSpan();
+        var occasionStart = new List<int>();
+        var personStart = new int[order.PersonStart.Length];
+        for (var p = 0; p + 1 < order.PersonStart.Length; p++)
+        {
+            personStart[p] = occasionStart.Count;
+            checks.CheckPerson(rows[order.PersonStart[p]..order.PersonStart[p + 1]]);
+            for (var from = order.PersonStart[p]; from < order.PersonStart[p + 1];)
+            {
+                var to = from + 1;
+                while (to < order.PersonStart[p + 1] && table.Occasion[rows[to]] == table.Occasion[rows[from]]) to++;
+                checks.CheckOccasion(rows[from..to]);
+                occasionStart.Add(from);
+                from = to;
+            }
+        }
+
+        personStart[^1] = occasionStart.Count;
+        occasionStart.Add(rows.Length);
+        return (occasionStart, personStart);
+    }
+
+    private static ChoicePanel Assemble(
+        StudySpecification study, ChoiceTable table, int[] personOrder, RowOrder order, List<int> occasionStart, int[] personStart)
+    {
+        var alternatives = table.Alternative.Levels.Length;
+        var occasions = occasionStart.Count - 1;
+        var personOf = new int[occasions];
+        var occasion = new long[occasions];
+        var chosen = new int[occasions];
+        var row = new int[checked(occasions * alternatives)];
+        var offered = new bool[row.Length];
+        Array.Fill(row, -1);
+        for (var p = 0; p + 1 < personStart.Length; p++)
+            for (var o = personStart[p]; o < personStart[p + 1]; o++)
+            {
+                personOf[o] = p;
+                for (var i = occasionStart[o]; i < occasionStart[o + 1]; i++)
+                {
+                    var r = order.Rows[i];
+                    var alternative = table.Alternative.Codes[r];
+                    occasion[o] = table.Occasion[r];
+                    row[(o * alternatives) + alternative] = r;
+                    offered[(o * alternatives) + alternative] = table.Offered[r];
+                    if (table.Chosen[r]) chosen[o] = alternative;
+                }
+            }
+
+        var persons = personOrder.Select(p => table.Person.Levels[p]).ToImmutableArray();
+        var (clusters, clusterOf) = Clusters(study, table, order, persons);
+        return new ChoicePanel(
+            table, persons, table.Alternative.Levels, Immutable(personStart), Immutable(personOf), Immutable(occasion), Immutable(row), Immutable(offered),
+            Immutable(chosen), Weights(table, order), study.Inference.Cluster, clusters, clusterOf);
+    }
+
+    private static ImmutableArray<double> Weights(ChoiceTable table, RowOrder order)
+    {
+        var weights = new double[order.PersonStart.Length - 1];
+        Array.Fill(weights, 1);
+        if (table.Weight.IsEmpty) return Immutable(weights);
+        for (var p = 0; p < weights.Length; p++)
+            weights[p] = table.Weight[FirstRowWith(order, p, r => !double.IsNaN(table.Weight[r]))];
+        return Immutable(weights);
+    }
+
+    private static (ImmutableArray<string> Names, ImmutableArray<int> Of) Clusters(
+        StudySpecification study, ChoiceTable table, RowOrder order, ImmutableArray<string> persons)
+    {
+        if (study.Inference.Cluster == "person") return (persons, [.. Enumerable.Range(0, persons.Length)]);
+        var column = table.Texts[study.Inference.Cluster];
+        var codes = Enumerable.Range(0, persons.Length)
+            .Select(p => column.Codes[FirstRowWith(order, p, r => column.Codes[r] != CodedColumn.NoValue)]).ToArray();
+        var clusterOrder = NameOrder.Of(column.Levels);
+        var rank = NameOrder.Ranks(clusterOrder);
+        return ([.. clusterOrder.Select(c => column.Levels[c])], [.. codes.Select(c => rank[c])]);
+    }
+
+    /// <summary>The person's first row with a value: every person has an offered row, because the chosen one is, and there no cell is empty.</summary>
+    private static int FirstRowWith(RowOrder order, int person, Func<int, bool> hasValue)
+    {
+        for (var i = order.PersonStart[person]; i < order.PersonStart[person + 1]; i++)
+            if (hasValue(order.Rows[i])) return order.Rows[i];
+        throw new InvalidOperationException("A person without any offered row passed the checks.");
+    }
+
+    private static ImmutableArray<T> Immutable<T>(T[] values) => ImmutableCollectionsMarshal.AsImmutableArray(values);
+}

@@ -1,0 +1,33 @@
+using System.Collections.Immutable;
+using System.Globalization;
+using System.Numerics;
+
+namespace PanelChoice.Panels;
+
+/// <summary>The order of ids that does not depend on the order of rows: by number when all are whole numbers, ordinal otherwise.</summary>
+internal static class NameOrder
+{
+    /// <summary>Indices of the names in their order.</summary>
+    public static int[] Of(ImmutableArray<string> names)
+    {
+        var order = Enumerable.Range(0, names.Length).ToArray();
+        var numbers = new BigInteger[names.Length];
+        var areWhole = true;
+        for (var i = 0; i < names.Length && areWhole; i++)
+            areWhole = BigInteger.TryParse(names[i], NumberStyles.AllowLeadingSign, CultureInfo.InvariantCulture, out numbers[i]);
+        Array.Sort(order, (a, b) =>
+        {
+            var byNumber = areWhole ? numbers[a].CompareTo(numbers[b]) : 0;
+            return byNumber != 0 ? byNumber : string.CompareOrdinal(names[a], names[b]);
+        });
+        return order;
+    }
+
+    /// <summary>Place of each name in the order.</summary>
+    public static int[] Ranks(int[] order)
+    {
+        var ranks = new int[order.Length];
+        for (var i = 0; i < order.Length; i++) ranks[order[i]] = i;
+        return ranks;
+    }
+}

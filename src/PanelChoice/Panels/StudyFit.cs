@@ -1,0 +1,89 @@
+using System.Collections.Immutable;
+using PanelChoice.Data;
+using PanelChoice.Study;
+
+namespace PanelChoice.Panels;
+
+/// <summary>Whether the study's names and rules fit the panel that was read.</summary>
+internal static class StudyFit
+{
+    /// <summary>Notes every alternative that the study names and the data do not have, and every history rule that the occasions cannot serve.</summary>
+    public static void Check(StudySpecification study, ChoiceTable table, ProblemList problems)
+    {
+        CheckAlternatives(study, table.Alternative.Levels, problems);
+        CheckHistory(study, table.OccasionKind, problems);
+    }
+
+    private static void CheckAlternatives(StudySpecification study, ImmutableArray<string> alternatives, ProblemList problems)
+    {
+        var nests = study.Nests.Select(n => n.Name).ToHashSet(StringComparer.Ordinal);
+        foreach (var nest in study.Nests)
+            foreach (var member in nest.Members)
+                if (!nests.Contains(member))
+                    Require(member, $"nest '{nest.Name}'", nest.Line, [.. alternatives, .. nests]);
+
+        foreach (var term in study.Terms)
+        {
+            foreach (var name in term.Alternatives) Require(name, $"term '{term.Name}'", term.Line, alternatives);
+            if (term.Base is { } name1) Require(name1, $"the base of term '{term.Name}'", term.Line, alternatives);
+        }
+
+        void Require(string name, string asker, int line, ImmutableArray<string> known)
+        {
+            if (alternatives.Contains(name)) return;
+            problems.Add(new Problem(
+                "study.unknown_alternative", study.File, $"{asker} names an alternative that {study.Panel.File} does not have", ClosestName.Remedy(name, known))
+            {
+                Line = line,
+                Value = name,
+            });
+        }
+    }
+
+    private static void CheckHistory(StudySpecification study, OccasionKind kind, ProblemList problems)
+    {
+        if (kind == OccasionKind.None)
+        {
+            foreach (var term in study.Terms.Where(t => LooksAlong(t.Source)))
+                problems.Add(new Problem(
+                    "study.history_without_occasions", study.File, $"term '{term.Name}' looks to other occasions, but the panel has no occasion column",
+                    "name the column under [panel] occasion") { Line = term.Line });
+            return;
+        }
+
+        var (word, needs) = study.History.Previous switch
+        {
+            PreviousRule.Step => ("step", OccasionKind.WholeNumber),
+            PreviousRule.Day => ("day", OccasionKind.Date),
+            PreviousRule.Workday => ("workday", OccasionKind.Date),
+            PreviousRule.Week => ("week", OccasionKind.Date),
+            _ => ("", kind),
+        };
+        if (needs == kind) return;
+        var isDate = kind == OccasionKind.Date;
+        problems.Add(new Problem(
+            "study.previous_does_not_fit", study.File,
+            $"this rule needs occasions that are {(isDate ? "whole numbers" : "dates")}, and column '{study.Panel.Occasion}' of {study.Panel.File} holds {(isDate ? "dates" : "whole numbers")}",
+            isDate ? "use previous = \"day\", \"workday\", \"week\" or \"recorded\"" : "use previous = \"step\" or \"recorded\", or write the occasions as dates like 2031-04-14")
+        {
+            Line = LineOfPrevious(study.Text),
+            Value = word,
+        });
+    }
+
+    private static bool LooksAlong(TermSource source) => source switch
+    {
+        LastChoiceSource or LastNestSource or StockSource or PastShareSource or FirstChoiceSource => true,
+        ColumnSource column => column.Moment is not (Now or PersonMean),
+        _ => false,
+    };
+
+    /// <summary>Line of <c>previous</c> in the study file's text, which the history record does not carry; null when it is not found.</summary>
+    private static int? LineOfPrevious(string text)
+    {
+        var lines = text.ReplaceLineEndings("\n").Split('\n');
+        var table = Array.FindIndex(lines, line => line.TrimStart().StartsWith("[history]", StringComparison.Ordinal));
+        var found = table < 0 ? -1 : Array.FindIndex(lines, table, line => line.TrimStart().StartsWith("previous", StringComparison.Ordinal));
+        return found < 0 ? null : found + 1;
+    }
+}
