@@ -12,8 +12,8 @@ public static class ChoicePanelBuilder
     /// <param name="study">The study.</param>
     /// <param name="table">The table that was read for it.</param>
     /// <returns>
-    /// The panel, or the problems: <c>study.unknown_alternative</c>, <c>study.previous_does_not_fit</c>,
-    /// <c>study.history_without_occasions</c>, <c>data.duplicate</c>, <c>data.several_occasions</c>, <c>data.none_chosen</c>,
+    /// The panel, or the problems: <c>study.unknown_alternative</c>, those of <see cref="NestTreeBuilder"/>,
+    /// <c>study.previous_does_not_fit</c>, <c>data.duplicate</c>, <c>data.several_occasions</c>, <c>data.none_chosen</c>,
     /// <c>data.several_chosen</c>, <c>data.chosen_not_offered</c>, <c>data.weight_not_positive</c>, <c>data.weight_not_constant</c>,
     /// <c>data.cluster_not_constant</c>.
     /// </returns>

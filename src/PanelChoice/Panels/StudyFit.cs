@@ -16,41 +16,25 @@ internal static class StudyFit
 
     private static void CheckAlternatives(StudySpecification study, ImmutableArray<string> alternatives, ProblemList problems)
     {
-        var nests = study.Nests.Select(n => n.Name).ToHashSet(StringComparer.Ordinal);
-        foreach (var nest in study.Nests)
-            foreach (var member in nest.Members)
-                if (!nests.Contains(member))
-                    Require(member, $"nest '{nest.Name}'", nest.Line, [.. alternatives, .. nests]);
-
+        foreach (var problem in NestTreeBuilder.Build(study, alternatives).Problems) problems.Add(problem);
         foreach (var term in study.Terms)
         {
-            foreach (var name in term.Alternatives) Require(name, $"term '{term.Name}'", term.Line, alternatives);
-            if (term.Base is { } name1) Require(name1, $"the base of term '{term.Name}'", term.Line, alternatives);
+            foreach (var name in term.Alternatives) Require(name, term, "term");
+            if (term.Base is { } baseline) Require(baseline, term, "base of the term");
         }
 
-        void Require(string name, string asker, int line, ImmutableArray<string> known)
+        void Require(string name, TermSpecification term, string part)
         {
             if (alternatives.Contains(name)) return;
             problems.Add(new Problem(
-                "study.unknown_alternative", study.File, $"{asker} names an alternative that {study.Panel.File} does not have", ClosestName.Remedy(name, known))
-            {
-                Line = line,
-                Value = name,
-            });
+                "study.unknown_alternative", study.File, $"the {part} '{term.Name}' names an alternative that {study.Panel.File} does not have",
+                ClosestName.Remedy(name, alternatives)) { Line = term.Line, Value = name });
         }
     }
 
     private static void CheckHistory(StudySpecification study, OccasionKind kind, ProblemList problems)
     {
-        if (kind == OccasionKind.None)
-        {
-            foreach (var term in study.Terms.Where(t => LooksAlong(t.Source)))
-                problems.Add(new Problem(
-                    "study.history_without_occasions", study.File, $"term '{term.Name}' looks to other occasions, but the panel has no occasion column",
-                    "name the column under [panel] occasion") { Line = term.Line });
-            return;
-        }
-
+        if (kind == OccasionKind.None) return;
         var (word, needs) = study.History.Previous switch
         {
             PreviousRule.Step => ("step", OccasionKind.WholeNumber),
@@ -70,13 +54,6 @@ internal static class StudyFit
             Value = word,
         });
     }
-
-    private static bool LooksAlong(TermSource source) => source switch
-    {
-        LastChoiceSource or LastNestSource or StockSource or PastShareSource or FirstChoiceSource => true,
-        ColumnSource column => column.Moment is not (Now or PersonMean),
-        _ => false,
-    };
 
     /// <summary>Line of <c>previous</c> in the study file's text, which the history record does not carry; null when it is not found.</summary>
     private static int? LineOfPrevious(string text)

@@ -40,7 +40,8 @@ public sealed record Problem(string Id, string File, string What, string Remedy)
             if (Row is { } row) text.Append(CultureInfo.InvariantCulture, $", row {row}");
             if (Column is { } column) text.Append(CultureInfo.InvariantCulture, $", column '{column}'");
             if (Value is { } value) text.Append(CultureInfo.InvariantCulture, $", value '{value}'");
-            return text.Append(": ").Append(What.TrimEnd('.')).Append("; ").Append(Remedy.TrimEnd('.')).Append('.')
+            var remedy = Remedy.TrimEnd('.');
+            return text.Append(": ").Append(What.TrimEnd('.')).Append("; ").Append(remedy).Append(remedy.EndsWith('?') ? "" : ".")
                 .ToString().ReplaceLineEndings(" ");
         }
     }
