@@ -1,0 +1,23 @@
+namespace PanelChoice.Findings;
+
+/// <summary>What is said whatever the figures are.</summary>
+internal static class CautionFindings
+{
+    public static IEnumerable<Finding> Of(FindingsInput input)
+    {
+        if (input.Covariates.Panel.IsWeighted)
+            yield return new Finding(
+                "caution.weights", FindingTopic.Caution, FindingSeverity.Notice,
+                "Sampling weights enter as given. Ratios of standard errors use weights scaled to mean 1; the diagnostics use an unweighted fit.", []);
+        yield return new Finding(
+            "caution.interval", FindingTopic.Caution, FindingSeverity.Information,
+            "A clustered standard error repairs the interval, not a biased habit coefficient.", []);
+        yield return new Finding(
+            "caution.personal_data", FindingTopic.Caution, FindingSeverity.Information,
+            "Records of where people travel are personal data: handle them as local law asks. Persons are shown here under pseudonyms; whoever "
+            + "holds the data file can undo them.", []);
+        yield return new Finding(
+            "caution.forecast", FindingTopic.Caution, FindingSeverity.Information,
+            "A forecast for a public decision needs the review of somebody qualified to give it.", []);
+    }
+}

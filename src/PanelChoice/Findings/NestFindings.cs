@@ -1,0 +1,100 @@
+using System.Collections.Immutable;
+using PanelChoice.Design;
+using PanelChoice.Study;
+
+namespace PanelChoice.Findings;
+
+/// <summary>
+/// Which alternatives replace which. In the utility-scaled form a nest is consistent with utility maximisation for all data where its
+/// dissimilarity is at most its parent's and that at most 1 (McFadden 1981); in the unscaled form each is relative to the node above, so
+/// that every one must be at most 1.
+/// </summary>
+internal static class NestFindings
+{
+    public static IEnumerable<Finding> Of(FindingsInput input)
+    {
+        if (input.Layout.Nests.IsEmpty)
+        {
+            yield return new Finding(
+                "nests.none", FindingTopic.Nests, FindingSeverity.Information,
+                "The study groups no alternatives, so this is plain logit: every alternative draws from all others in proportion to their shares.", []);
+            yield break;
+        }
+
+        foreach (var nest in input.Layout.Nests) yield return Describe(input, nest);
+        if (input.Model.Form == NestedLogitForm.Unscaled)
+            yield return new Finding(
+                "nests.unscaled", FindingTopic.Nests, FindingSeverity.Notice,
+                "In the unscaled form a coefficient means the same in two nests only where their dissimilarities are equal.", []);
+    }
+
+    private static Finding Describe(FindingsInput input, NestPlace nest)
+    {
+        var value = input.Model.Parameters[nest.Parameter];
+        var parent = ParentValue(input, nest, out var parentName);
+        var members = string.Join(", ", input.Study.Nests.First(n => n.Name == nest.Name).Members);
+        var head = $"'{nest.Name}' ({members}): ";
+        ImmutableArray<FindingFigure> figures = [new(nest.Name, value), new("limit", parent)];
+        switch (nest.Standing)
+        {
+            case NestStanding.NeverWider:
+                return new Finding(
+                    "nests.never_wider", FindingTopic.Nests, FindingSeverity.Notice,
+                    head + $"never offers two of its members at once, so its dissimilarity cannot be estimated; it is shown at {parentName}.",
+                    figures);
+            case NestStanding.FixedByStudy:
+                return Judged(
+                    input, nest, head + $"dissimilarity fixed at {PlainNumber.Rounded(value, null)} by the study.", value, parent, parentName, tested: false, figures);
+            case NestStanding.Shared:
+                return Judged(
+                    input, nest, head + $"shares the dissimilarity of '{input.Layout.Parameters[nest.Parameter].Name}', {input.WithInterval(nest.Parameter)}.",
+                    value, parent, parentName, tested: true, figures);
+            default:
+                return Judged(
+                    input, nest, head + $"dissimilarity {input.WithInterval(nest.Parameter)}.", value, parent, parentName, tested: true, figures);
+        }
+    }
+
+    private static Finding Judged(
+        FindingsInput input, NestPlace nest, string head, double value, double parent, string parentName, bool tested, ImmutableArray<FindingFigure> figures)
+    {
+        var p = tested ? input.Figures(nest.Parameter, input.Quoted)?.PValue : null;
+        // The p-value compares with the parent's in both forms; in the unscaled form the limit is 1, so it is quoted only under the root.
+        if (input.Model.Form == NestedLogitForm.Unscaled && nest.ParentNode != input.Model.Design.Tree.Root) p = null;
+        var test = p is { } known ? $" (two-sided test against it: {PlainNumber.PValueInWords(known)}, {input.QuotedInWords})" : "";
+        if (p is { } tail) figures = figures.Add(new FindingFigure("p against the limit", tail));
+        // Identity up to rounding: a value shared with the parent or fixed at it is neither above nor below.
+        if (Math.Abs(value - parent) <= 1e-12)
+            return new Finding(
+                "nests.dissolved", FindingTopic.Nests, FindingSeverity.Information, $"{head} It equals {parentName}, so the nest changes nothing.", figures);
+        if (value < parent)
+            return new Finding(
+                "nests.consistent", FindingTopic.Nests, FindingSeverity.Information,
+                $"{head} Its members replace each other more readily than others do; it lies below {parentName}{test}, which is consistent with utility maximisation.",
+                figures);
+        var certain = p < 1 - input.Study.Inference.Confidence;
+        return new Finding(
+            certain ? "nests.inconsistent" : "nests.above", FindingTopic.Nests, certain ? FindingSeverity.Warning : FindingSeverity.Notice,
+            $"{head} It lies above {parentName}{test}"
+            + (certain
+                ? ", which is not consistent with utility maximisation for all data: rethink the nest"
+                : p is null ? ", which is not consistent with utility maximisation for all data" : ", but within error of it")
+            + (tested ? $"; dissimilarity = {PlainNumber.Rounded(parent, null)} in the study file fixes it at the limit." : "."),
+            figures);
+    }
+
+    private static double ParentValue(FindingsInput input, NestPlace nest, out string name)
+    {
+        var tree = input.Model.Design.Tree;
+        if (input.Model.Form == NestedLogitForm.Unscaled || nest.ParentNode == tree.Root)
+        {
+            name = "1";
+            return 1;
+        }
+
+        var parent = input.Layout.Nests.First(n => n.Node == nest.ParentNode);
+        var value = parent.Standing == NestStanding.NeverWider ? ParentValue(input, parent, out _) : input.Model.Parameters[parent.Parameter];
+        name = $"its parent's {PlainNumber.Rounded(value, input.Figures(parent.Parameter, input.Quoted)?.StandardError)} ('{parent.Name}')";
+        return value;
+    }
+}

@@ -1,0 +1,105 @@
+using System.Collections.Immutable;
+using PanelChoice.Covariates;
+using PanelChoice.Inference;
+
+namespace PanelChoice.Findings;
+
+/// <summary>How far pooled standard errors overstate precision, and what the honest ones rest on.</summary>
+internal static class PrecisionFindings
+{
+    // A cluster whose removal moves an estimate by more than one standard error deserves a look (Belsley, Kuh and Welsch 1980, "Regression
+    // Diagnostics", the size-free rule for scaled changes; quoted from memory).
+    private const double LargeChange = 1;
+
+    // 27.6 percent of 1,500 simulated independent panels of 15 persons (simulations made for this project).
+    private const string FewPersonsByChance = "with 15 persons a ratio above 1.2 shows up by chance in a quarter of panels that are independent";
+
+    public static IEnumerable<Finding> Of(FindingsInput input)
+    {
+        if (input.Inference is not { } inference) yield break;
+        var ratios = inference.Parameters
+            .Where(p => p.SeRatio is { } r && double.IsFinite(r))
+            .Select(p => (Parameter: input.Layout.Parameters[p.Parameter], Ratio: p.SeRatio!.Value, p.EquivalentOccasions))
+            .ToList();
+        if (ratios.Count == 0) yield break;
+
+        foreach (var habit in ratios.Where(r => r.Parameter.Role == CovariateRole.PastChoice))
+            yield return new Finding(
+                "precision.habit", FindingTopic.Precision, FindingSeverity.Information,
+                $"The clustered standard error of '{habit.Parameter.Label}' is {PlainNumber.Ratio(habit.Ratio)} times the pooled one"
+                + (habit.EquivalentOccasions is { } worth && habit.Ratio > 1
+                    ? $": for this term {PlainNumber.Counted(input.Model.Design.Situations, "occasion")} are worth about {PlainNumber.Count(worth)} independent ones."
+                    : "."),
+                [new FindingFigure(habit.Parameter.Label, habit.Ratio)]);
+
+        var median = Median(ratios.Select(r => r.Ratio));
+        var largest = ratios.MaxBy(r => r.Ratio);
+        yield return new Finding(
+            "precision.overall", FindingTopic.Precision, FindingSeverity.Information,
+            $"Over all terms the clustered standard error is {PlainNumber.Ratio(median)} times the pooled one in the median and at most "
+            + $"{PlainNumber.Ratio(largest.Ratio)} times ('{largest.Parameter.Label}'). This describes; the test is the detector: {FewPersonsByChance}.",
+            [new FindingFigure("median", median), new FindingFigure("largest", largest.Ratio)]);
+
+        if (JackknifeRatios(input, inference) is { Count: > 0 } jackknife && inference.Clusters.Count < FindingsInput.FewClusters)
+            yield return new Finding(
+                "precision.jackknife", FindingTopic.Precision, FindingSeverity.Information,
+                $"With {inference.Clusters.Count} clusters the jackknife is the better yardstick: its standard error is "
+                + $"{PlainNumber.Ratio(Median(jackknife))} times the pooled one in the median and at most {PlainNumber.Ratio(jackknife.Max())} times.",
+                [new FindingFigure("median", Median(jackknife)), new FindingFigure("largest", jackknife.Max())]);
+
+        foreach (var finding in Influence(input, inference)) yield return finding;
+        foreach (var finding in Refusals(inference)) yield return finding;
+    }
+
+    private static List<double> JackknifeRatios(FindingsInput input, InferenceResult inference) =>
+        [.. from p in inference.Parameters
+            let pooled = input.Figures(p.Parameter, CovarianceKind.Pooled)?.StandardError
+            let jackknife = input.Figures(p.Parameter, CovarianceKind.Jackknife)?.StandardError
+            where pooled > 0 && jackknife is not null && !input.Covariates.Panel.IsWeighted
+            select jackknife.Value / pooled.Value];
+
+    private static IEnumerable<Finding> Influence(FindingsInput input, InferenceResult inference)
+    {
+        var pseudonyms = Pseudonyms.Of(input.Covariates.Panel.Table.Sha256, inference.Clusters.By, input.Model.Design.Clusters);
+        var strongest = (from i in inference.Clusters.MostInfluential
+                         let se = input.Figures(i.Parameter, CovarianceKind.Cluster)?.StandardError
+                         where se > 0
+                         select (i.Cluster, i.Parameter, Scaled: Math.Abs(i.Change) / se.Value)).OrderByDescending(x => x.Scaled).ToList();
+        if (strongest.Count == 0 || strongest[0].Scaled < LargeChange) yield break;
+        var (cluster, parameter, scaled) = strongest[0];
+        yield return new Finding(
+            "precision.influential", FindingTopic.Precision, FindingSeverity.Notice,
+            $"Without {pseudonyms[cluster]} the estimate of '{input.Layout.Parameters[parameter].Label}' would move by {PlainNumber.Ratio(scaled)} "
+            + "clustered standard errors: look at that record before relying on the term.",
+            [new FindingFigure(input.Layout.Parameters[parameter].Label, scaled)]);
+    }
+
+    private static IEnumerable<Finding> Refusals(InferenceResult inference)
+    {
+        foreach (var kind in Enum.GetValues<CovarianceKind>())
+        {
+            if (kind is CovarianceKind.TwoWay or CovarianceKind.ClusterUncorrected) continue;
+            if (!inference.Covariances.TryGetValue(kind, out var estimate)) continue;
+            if (estimate.Refusal is { } reason && (kind != CovarianceKind.Bootstrap || inference.Bootstrap is not null)
+                && (kind != CovarianceKind.Jackknife || inference.Jackknife is not null))
+                yield return new Finding("precision.refused", FindingTopic.Precision, FindingSeverity.Warning, Sentence(kind, reason), []);
+        }
+    }
+
+    private static string Sentence(CovarianceKind kind, string reason) =>
+        $"There is no {InWords(kind)} standard error: {reason.TrimEnd('.')}.";
+
+    internal static string InWords(CovarianceKind kind) => kind switch
+    {
+        CovarianceKind.OuterProduct => "outer-product",
+        CovarianceKind.Cluster or CovarianceKind.ClusterUncorrected => "clustered",
+        CovarianceKind.TwoWay => "two-way",
+        _ => kind.ToString().ToLowerInvariant(),
+    };
+
+    internal static double Median(IEnumerable<double> values)
+    {
+        var sorted = values.Order().ToImmutableArray();
+        return sorted.Length % 2 == 1 ? sorted[sorted.Length / 2] : 0.5 * (sorted[(sorted.Length / 2) - 1] + sorted[sorted.Length / 2]);
+    }
+}

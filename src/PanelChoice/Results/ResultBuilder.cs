@@ -1,0 +1,167 @@
+using System.Collections.Immutable;
+using System.Reflection;
+using System.Runtime.InteropServices;
+using PanelChoice.Covariates;
+using PanelChoice.Design;
+using PanelChoice.Diagnostics;
+using PanelChoice.Estimation;
+using PanelChoice.Findings;
+using PanelChoice.Inference;
+using PanelChoice.Study;
+
+namespace PanelChoice.Results;
+
+/// <summary>Gathers what the stages made into one result.</summary>
+internal static class ResultBuilder
+{
+    public static AnalysisResult Build(FindingsInput stages, ImmutableArray<Finding> findings)
+    {
+        var (study, covariates, model, inference, diagnostics) = stages;
+        var book = new ReasonBook();
+        var entries = ParameterEntries.Of(model);
+        var fit = Fit(model, book);
+        var parameters = entries.Select((e, i) => ParameterEntries.Figures(e, $"parameters[{i}]", model, inference, book)).ToImmutableArray();
+        var covariance = CovarianceExpansion.Over(entries, model, inference, book);
+        if (inference?.Jackknife is null) book.Note("jackknife", ParameterEntries.KindReason(CovarianceKind.Jackknife, model, inference));
+        var clusters = Clusters(stages, book);
+        NoteDiagnostics(diagnostics, book);
+        return new AnalysisResult(
+            study.Title,
+            new ToolStamp(Version, RuntimeInformation.FrameworkDescription, model.Likelihood.Kernel),
+            Inputs(study, covariates.Panel.Table.File, covariates.Panel.Table.Sha256),
+            new RunSettings(study.Inference.Confidence, study.Estimate.Seed, study.Inference.BootstrapSeed, study.Diagnostics.Seed),
+            book.Reasons,
+            Warnings(covariates, inference, findings),
+            Sample(covariates, model.Design),
+            fit,
+            parameters,
+            inference?.Bootstrap is { } b
+                ? new BootstrapCounts(b.Requested, b.Done, b.Retried, [.. b.Failures.Select(f => new FailureCount(f.Kind, f.Count))])
+                : new BootstrapCounts(0, 0, 0, []),
+            inference?.Jackknife is { } j ? new JackknifeCounts(j.Kind == JackknifeKind.OneStep ? "one_step" : "refit", j.Refits, j.Failures) : null,
+            covariance,
+            clusters,
+            diagnostics,
+            findings,
+            Replicates(entries, model, inference?.Bootstrap));
+    }
+
+    /// <summary>Version of the program, without the revision that a build may append.</summary>
+    public static string Version { get; } =
+        typeof(ResultBuilder).Assembly.GetCustomAttribute<AssemblyInformationalVersionAttribute>()!.InformationalVersion.Split('+')[0];
+
+    /// <summary>The input stamps; folders are left out of the study's name, because they tell about the machine and not about the study.</summary>
+    public static InputStamps Inputs(StudySpecification study, string dataFile, string dataSha256) =>
+        new(new FileStamp(Path.GetFileName(study.File), study.Sha256), new FileStamp(dataFile, dataSha256));
+
+    /// <summary>Book-keeping of the sample.</summary>
+    public static SampleSummary Sample(CovariateSet covariates)
+    {
+        var panel = covariates.Panel;
+        var alternatives = panel.Alternatives.Length;
+        var offered = new int[alternatives];
+        var chosen = new int[alternatives];
+        foreach (var occasion in covariates.Used)
+        {
+            chosen[panel.Chosen[occasion]]++;
+            for (var j = 0; j < alternatives; j++) if (panel.Offered[(occasion * alternatives) + j]) offered[j]++;
+        }
+
+        return new SampleSummary(
+            panel.Table.Rows, panel.Persons.Length, panel.Occasions,
+            [.. covariates.LeftOut.Select(l => new LeftOutCount(l.Reason, l.Occasions))],
+            covariates.Used.Select(o => panel.PersonOf[o]).Distinct().Count(), covariates.Used.Length,
+            [.. Enumerable.Range(0, alternatives).Select(j => new AlternativeCount(panel.Alternatives[j], offered[j], chosen[j]))]);
+    }
+
+    private static SampleSummary Sample(CovariateSet covariates, ChoiceDesign design)
+    {
+        var sample = Sample(covariates);
+        return sample.Persons == design.Persons && sample.Occasions == design.Situations
+            ? sample
+            : throw new InvalidOperationException("The design and the covariates hold different samples.");
+    }
+
+    private static FitSummary Fit(FittedModel model, ReasonBook book) => new(
+        ParameterEntries.StatusWord(model.Status),
+        model.Form == NestedLogitForm.Unscaled ? "unscaled" : "utility-scaled",
+        book.Number("fit.log_likelihood", model.LogLikelihood, "the search left the range of finite numbers"),
+        book.Number("fit.log_likelihood_equal_probability", model.LogLikelihoodEqualProbability, "it is not finite"),
+        book.Number("fit.log_likelihood_constants", model.LogLikelihoodConstants, "with constants alone the likelihood has no maximum"),
+        model.Layout.Free.Length,
+        book.Number("fit.gradient_norm", model.GradientNorm, "without standard errors the gradient cannot be scaled"),
+        model.Iterations,
+        new StartCounts(model.StartsRequested, model.StartsConverged, [.. model.Optima.Select(o => new OptimumCount(o.LogLikelihood, o.Starts))]),
+        [.. model.Findings.Select(f => new FitWarning(f.Id, f.Sentence, [.. f.Parameters.Select(k => model.Layout.Parameters[k].Label)]))]);
+
+    private static ClusterResult Clusters(FindingsInput stages, ReasonBook book)
+    {
+        var design = stages.Model.Design;
+        if (stages.Inference?.Clusters is { } clusters)
+        {
+            var pseudonyms = Pseudonyms.Of(stages.Covariates.Panel.Table.Sha256, clusters.By, design.Clusters);
+            return new ClusterResult(
+                clusters.By, clusters.Count, book.Number("clusters.effective", clusters.Effective, "the effective number of clusters is not computed in this version"),
+                clusters.Smallest, clusters.Median, clusters.Largest, clusters.DegreesOfFreedom,
+                [.. clusters.MostInfluential.Select(i => new InfluenceResult(pseudonyms[i.Cluster], design.Layout.Parameters[i.Parameter].Label, i.Change))]);
+        }
+
+        book.Note("clusters.effective", "the effective number of clusters is not computed in this version");
+        var sizes = new int[design.Clusters.Length];
+        for (var t = 0; t < design.Situations; t++) sizes[design.ClusterOf[design.PersonOf[t]]]++;
+        Array.Sort(sizes);
+        var middle = sizes.Length / 2;
+        return new ClusterResult(
+            design.ClusterBy, sizes.Length, null, sizes[0], sizes.Length % 2 == 1 ? sizes[middle] : 0.5 * (sizes[middle - 1] + sizes[middle]), sizes[^1],
+            sizes.Length - 1, []);
+    }
+
+    private static ImmutableArray<ResultWarning> Warnings(CovariateSet covariates, InferenceResult? inference, ImmutableArray<Finding> findings) =>
+    [
+        .. covariates.Cautions.Select(c => new ResultWarning(c.Id, c.Sentence))
+            .Concat(inference is null
+                ? []
+                : Enum.GetValues<CovarianceKind>().Where(inference.Covariances.ContainsKey).SelectMany(
+                    k => inference.Covariances[k].Cautions.Select(c => new ResultWarning("inference." + JsonWords.Of(k), c))))
+            .Concat(findings.Where(f => f.Severity == FindingSeverity.Warning).Select(f => new ResultWarning(f.Id, f.Sentence)))
+            .Distinct(),
+    ];
+
+    private static void NoteDiagnostics(DiagnosticsResult diagnostics, ReasonBook book)
+    {
+        var none = diagnostics.Reason ?? "it could not be computed on this panel";
+        if (diagnostics.Detector is null) book.Note("diagnostics.detector", none);
+        if (diagnostics.DateScore is null)
+            book.Note("diagnostics.date_score", diagnostics.Reason ?? "the study does not say that an occasion is the same day for everybody, or no day is shared");
+        if (diagnostics.CommonDays is null) book.Note("diagnostics.common_days", diagnostics.Reason ?? "the date score was not computed");
+        if (diagnostics.Cause is null) book.Note("diagnostics.cause", diagnostics.Verdict == Verdict.Dependence ? "only the date score passed" : "no dependence was found");
+        book.Number("diagnostics.variance_inflation", diagnostics.VarianceInflation, none);
+        if (diagnostics.HitRate is null) book.Note("diagnostics.hit_rate", "there is no cause whose rule could be rated");
+        book.Note("diagnostics.bootstrap", "the parametric bootstrap of the detector is not in this version; its p-value is analytic");
+        for (var i = 0; i < diagnostics.Lags.Length; i++)
+        {
+            const string Thin = "too few pairs of occasions lie at this distance";
+            book.Number($"diagnostics.lags[{i}].gamma", diagnostics.Lags[i].Gamma, Thin);
+            book.Number($"diagnostics.lags[{i}].se", diagnostics.Lags[i].StandardError, Thin);
+        }
+
+        for (var i = 0; i < diagnostics.ByAlternative.Length; i++)
+            book.Number($"diagnostics.by_alternative[{i}].z", diagnostics.ByAlternative[i].Z, "the alternative is chosen or offered too seldom");
+        for (var i = 0; i < diagnostics.ByNest.Length; i++)
+            book.Number($"diagnostics.by_nest[{i}].z", diagnostics.ByNest[i].Z, "the nest is chosen or offered too seldom");
+        for (var i = 0; i < (diagnostics.Detector?.ByDecay.Length ?? 0); i++)
+            book.Number($"diagnostics.detector.by_decay[{i}].z", diagnostics.Detector!.ByDecay[i].Z, "the score has no variance at this decay");
+    }
+
+    private static ReplicateTable Replicates(ImmutableArray<ParameterEntry> entries, FittedModel model, BootstrapSummary? bootstrap)
+    {
+        var labels = ColumnNames.Distinct(
+            entries.Select(e => e.Standing is null ? model.Layout.Parameters[e.Parameter].Label : e.Name), ReplicatesParquet.FixedColumns);
+        if (bootstrap is null) return new ReplicateTable(labels, [], [], []);
+        var estimates = new double[bootstrap.Requested * entries.Length];
+        for (var r = 0; r < bootstrap.Requested; r++)
+            for (var i = 0; i < entries.Length; i++)
+                estimates[(r * entries.Length) + i] = entries[i].Value(bootstrap.Estimates.AsSpan(r * model.Layout.Count, model.Layout.Count));
+        return new ReplicateTable(labels, bootstrap.Status, bootstrap.LogLikelihood, ImmutableCollectionsMarshal.AsImmutableArray(estimates));
+    }
+}
