@@ -13,11 +13,13 @@ internal static class AdviceFindings
 
     public static IEnumerable<Finding> Of(FindingsInput input)
     {
-        if (input.Inference is not { } inference)
+        var inference = input.Inference;
+        if (!input.HasErrors)
         {
             yield return new Finding(
                 "advice.nothing", FindingTopic.Advice, FindingSeverity.Warning,
-                "Report none of these figures. Mend what the fit names above first: leave a term out, join alternatives, or fix a parameter.", []);
+                "Report none of these figures: there is no standard error to go with them. Mend what the fit names above first; leave a term out, join "
+                + "alternatives, or fix a parameter.", []);
             yield break;
         }
 

@@ -12,10 +12,10 @@ namespace PanelChoice.Findings;
 /// <param name="Study">The study.</param>
 /// <param name="Covariates">Covariates and the book-keeping of the sample.</param>
 /// <param name="Model">The fitted model.</param>
-/// <param name="Inference">Standard errors of all kinds; null when the estimate is not to be trusted.</param>
+/// <param name="Inference">Standard errors of all kinds, or the reasons why there are none.</param>
 /// <param name="Diagnostics">The independence battery.</param>
 public sealed record FindingsInput(
-    StudySpecification Study, CovariateSet Covariates, FittedModel Model, InferenceResult? Inference, DiagnosticsResult Diagnostics)
+    StudySpecification Study, CovariateSet Covariates, FittedModel Model, InferenceResult Inference, DiagnosticsResult Diagnostics)
 {
     /// <summary>
     /// Below this many clusters the clustered standard error with t(G - 1) rejects too often (8 percent at 40, 12 at 20, 19 at 10 against
@@ -27,14 +27,16 @@ public sealed record FindingsInput(
 
     /// <summary>The kind of standard error that the sentences quote: clustered, or the jackknife with few clusters.</summary>
     internal CovarianceKind Quoted =>
-        Inference is { } i && i.Clusters.Count < FewClusters && i.Covariances.TryGetValue(CovarianceKind.Jackknife, out var jackknife)
-            && jackknife.Matrix is not null
+        Inference.Clusters.Count < FewClusters && Inference.Covariances.GetValueOrDefault(CovarianceKind.Jackknife)?.Matrix is not null
             ? CovarianceKind.Jackknife
             : CovarianceKind.Cluster;
 
     internal string QuotedInWords => Quoted == CovarianceKind.Jackknife ? "jackknife" : "clustered";
 
-    internal ParameterInference? InferenceOf(int parameter) => Inference?.Parameters.FirstOrDefault(p => p.Parameter == parameter);
+    /// <summary>Whether there is any standard error: not where the estimate is no interior maximum, or every parameter is fixed.</summary>
+    internal bool HasErrors => Inference.Covariances.GetValueOrDefault(CovarianceKind.Pooled)?.Matrix is not null;
+
+    internal ParameterInference? InferenceOf(int parameter) => Inference.Parameters.FirstOrDefault(p => p.Parameter == parameter);
 
     internal KindFigures? Figures(int parameter, CovarianceKind kind) => InferenceOf(parameter)?.ByKind.GetValueOrDefault(kind);
 

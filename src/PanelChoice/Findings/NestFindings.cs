@@ -59,8 +59,6 @@ internal static class NestFindings
         FindingsInput input, NestPlace nest, string head, double value, double parent, string parentName, bool tested, ImmutableArray<FindingFigure> figures)
     {
         var p = tested ? input.Figures(nest.Parameter, input.Quoted)?.PValue : null;
-        // The p-value compares with the parent's in both forms; in the unscaled form the limit is 1, so it is quoted only under the root.
-        if (input.Model.Form == NestedLogitForm.Unscaled && nest.ParentNode != input.Model.Design.Tree.Root) p = null;
         var test = p is { } known ? $" (two-sided test against it: {PlainNumber.PValueInWords(known)}, {input.QuotedInWords})" : "";
         if (p is { } tail) figures = figures.Add(new FindingFigure("p against the limit", tail));
         // Identity up to rounding: a value shared with the parent or fixed at it is neither above nor below.

@@ -18,7 +18,7 @@ internal static class PastFindings
             yield break;
         }
 
-        if (input.Inference is null) yield break;
+        if (!input.HasErrors) yield break;
         foreach (var term in Enumerable.Range(0, input.Layout.Coefficients)
             .Where(k => input.Layout.Parameters[k].Role != CovariateRole.Present)
             .GroupBy(k => input.Covariates.Covariates[k].TermIndex))
@@ -106,7 +106,7 @@ internal static class PastFindings
     /// <summary>Wald test of all habit terms together, with the quoted covariance, as F(q, G - 1): W / q.</summary>
     private static Finding? Jointly(FindingsInput input)
     {
-        var inference = input.Inference!;
+        var inference = input.Inference;
         var habit = input.Layout.Free.Select((parameter, place) => (parameter, place))
             .Where(x => input.Layout.Parameters[x.parameter].Role == CovariateRole.PastChoice).ToList();
         if (habit.Count < 2 || inference.Covariances.GetValueOrDefault(input.Quoted)?.Matrix is not { } matrix) return null;

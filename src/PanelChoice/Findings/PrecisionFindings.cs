@@ -16,7 +16,8 @@ internal static class PrecisionFindings
 
     public static IEnumerable<Finding> Of(FindingsInput input)
     {
-        if (input.Inference is not { } inference) yield break;
+        if (!input.HasErrors) yield break;
+        var inference = input.Inference;
         var ratios = inference.Parameters
             .Where(p => p.SeRatio is { } r && double.IsFinite(r))
             .Select(p => (Parameter: input.Layout.Parameters[p.Parameter], Ratio: p.SeRatio!.Value, p.EquivalentOccasions))
@@ -40,7 +41,8 @@ internal static class PrecisionFindings
             + $"{PlainNumber.Ratio(largest.Ratio)} times ('{largest.Parameter.Label}'). This describes; the test is the detector: {FewPersonsByChance}.",
             [new FindingFigure("median", median), new FindingFigure("largest", largest.Ratio)]);
 
-        if (JackknifeRatios(input, inference) is { Count: > 0 } jackknife && inference.Clusters.Count < FindingsInput.FewClusters)
+        List<double> jackknife = [.. inference.Parameters.Where(p => p.JackknifeSeRatio is not null).Select(p => p.JackknifeSeRatio!.Value)];
+        if (jackknife.Count > 0)
             yield return new Finding(
                 "precision.jackknife", FindingTopic.Precision, FindingSeverity.Information,
                 $"With {inference.Clusters.Count} clusters the jackknife is the better yardstick: its standard error is "
@@ -51,16 +53,9 @@ internal static class PrecisionFindings
         foreach (var finding in Refusals(inference)) yield return finding;
     }
 
-    private static List<double> JackknifeRatios(FindingsInput input, InferenceResult inference) =>
-        [.. from p in inference.Parameters
-            let pooled = input.Figures(p.Parameter, CovarianceKind.Pooled)?.StandardError
-            let jackknife = input.Figures(p.Parameter, CovarianceKind.Jackknife)?.StandardError
-            where pooled > 0 && jackknife is not null && !input.Covariates.Panel.IsWeighted
-            select jackknife.Value / pooled.Value];
-
     private static IEnumerable<Finding> Influence(FindingsInput input, InferenceResult inference)
     {
-        var pseudonyms = Pseudonyms.Of(input.Covariates.Panel.Table.Sha256, inference.Clusters.By, input.Model.Design.Clusters);
+        var codes = Pseudonyms.Of(input.Covariates.Panel.Table.Sha256, input.Model.Design.Clusters);
         var strongest = (from i in inference.Clusters.MostInfluential
                          let se = input.Figures(i.Parameter, CovarianceKind.Cluster)?.StandardError
                          where se > 0
@@ -69,7 +64,7 @@ internal static class PrecisionFindings
         var (cluster, parameter, scaled) = strongest[0];
         yield return new Finding(
             "precision.influential", FindingTopic.Precision, FindingSeverity.Notice,
-            $"Without {pseudonyms[cluster]} the estimate of '{input.Layout.Parameters[parameter].Label}' would move by {PlainNumber.Ratio(scaled)} "
+            $"Without {inference.Clusters.By} {codes[cluster]} the estimate of '{input.Layout.Parameters[parameter].Label}' would move by {PlainNumber.Ratio(scaled)} "
             + "clustered standard errors: look at that record before relying on the term.",
             [new FindingFigure(input.Layout.Parameters[parameter].Label, scaled)]);
     }

@@ -12,15 +12,14 @@ internal static class Pseudonyms
 {
     private const int FewestDigits = 6;
 
-    /// <summary>One pseudonym for each id, all different: the kind of cluster and the first hexadecimal digits of a hash.</summary>
+    /// <summary>One pseudonym for each id, all different: the first hexadecimal digits of a hash.</summary>
     /// <param name="dataSha256">Hash of the data file, so that the same id has another pseudonym in another file.</param>
-    /// <param name="by">"person", or the cluster column.</param>
     /// <param name="ids">Distinct ids.</param>
-    public static ImmutableArray<string> Of(string dataSha256, string by, ImmutableArray<string> ids)
+    public static ImmutableArray<string> Of(string dataSha256, ImmutableArray<string> ids)
     {
         var hashes = ids.Select(id => Convert.ToHexStringLower(SHA256.HashData(Encoding.UTF8.GetBytes(dataSha256 + "\n" + id)))).ToArray();
         var digits = FewestDigits;
         while (hashes.Select(h => h[..digits]).Distinct(StringComparer.Ordinal).Count() < hashes.Length) digits++;
-        return [.. hashes.Select(h => $"{by} {h[..digits]}")];
+        return [.. hashes.Select(h => h[..digits])];
     }
 }

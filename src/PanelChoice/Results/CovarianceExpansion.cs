@@ -1,6 +1,5 @@
 using System.Collections.Immutable;
 using System.Runtime.InteropServices;
-using PanelChoice.Estimation;
 using PanelChoice.Inference;
 
 namespace PanelChoice.Results;
@@ -8,7 +7,7 @@ namespace PanelChoice.Results;
 /// <summary>Spreads covariances of the free parameters over the result's whole parameter list.</summary>
 internal static class CovarianceExpansion
 {
-    public static CovarianceMatrices Over(ImmutableArray<ParameterEntry> entries, FittedModel model, InferenceResult? inference, ReasonBook book)
+    public static CovarianceMatrices Over(ImmutableArray<ParameterEntry> entries, InferenceResult inference, ReasonBook book)
     {
         return new CovarianceMatrices(
             Full(CovarianceKind.Pooled), Full(CovarianceKind.OuterProduct), Full(CovarianceKind.Robust), Full(CovarianceKind.Cluster),
@@ -17,9 +16,9 @@ internal static class CovarianceExpansion
         SquareMatrix? Full(CovarianceKind kind)
         {
             var path = "covariance." + JsonWords.Of(kind);
-            if (inference?.Covariances.GetValueOrDefault(kind) is not { Matrix: { } matrix } estimate)
+            if (inference.Covariances.GetValueOrDefault(kind) is not { Matrix: { } matrix } estimate)
             {
-                book.Note(path, ParameterEntries.KindReason(kind, model, inference));
+                book.Note(path, ParameterEntries.KindReason(kind, inference));
                 return null;
             }
 
@@ -35,7 +34,7 @@ internal static class CovarianceExpansion
                     if (!double.IsFinite(value)) missing.Add(i);
                 }
 
-            foreach (var row in missing) book.Note($"{path}[{row}]", "the figure is refused for a parameter of this row or column");
+            foreach (var row in missing) book.Note($"{path}[{row}]", "The figure is refused for a parameter of this row or column.");
             return new SquareMatrix(entries.Length, ImmutableCollectionsMarshal.AsImmutableArray(values));
         }
     }

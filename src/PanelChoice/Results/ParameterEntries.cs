@@ -41,10 +41,10 @@ internal static class ParameterEntries
         return entries.ToImmutable();
     }
 
-    public static ParameterResult Figures(ParameterEntry entry, string path, FittedModel model, InferenceResult? inference, ReasonBook book)
+    public static ParameterResult Figures(ParameterEntry entry, string path, FittedModel model, InferenceResult inference, ReasonBook book)
     {
         var parameter = model.Layout.Parameters[entry.Parameter];
-        var figures = entry.Place < 0 ? null : inference?.Parameters.FirstOrDefault(p => p.Parameter == entry.Parameter);
+        var figures = entry.Place < 0 ? null : inference.Parameters.FirstOrDefault(p => p.Parameter == entry.Parameter);
         return new ParameterResult(
             entry.Name,
             entry.Standing is null ? parameter.Alternative : null,
@@ -52,7 +52,7 @@ internal static class ParameterEntries
             entry.Place < 0 ? "fixed" : "free",
             entry.SameAs,
             entry.Standing is null ? RoleWord(parameter.Role) : null,
-            book.Number($"{path}.estimate", entry.Value(model.Parameters.AsSpan()), "the search left the range of finite numbers"),
+            book.Number($"{path}.estimate", entry.Value(model.Parameters.AsSpan()), "The search left the range of finite numbers."),
             new StandardErrors(
                 Error("pooled", CovarianceKind.Pooled), Error("outer_product", CovarianceKind.OuterProduct), Error("robust", CovarianceKind.Robust),
                 Error("cluster", CovarianceKind.Cluster), Error("jackknife", CovarianceKind.Jackknife), Error("two_way", CovarianceKind.TwoWay),
@@ -60,36 +60,25 @@ internal static class ParameterEntries
             new Intervals(
                 Range("pooled", CovarianceKind.Pooled), Range("robust", CovarianceKind.Robust), Range("cluster", CovarianceKind.Cluster),
                 Range("jackknife", CovarianceKind.Jackknife), Range("two_way", CovarianceKind.TwoWay), Range("bootstrap", CovarianceKind.Bootstrap),
-                book.Interval($"{path}.interval.bootstrap_percentile", figures?.BootstrapPercentile, Missing(CovarianceKind.Bootstrap))),
+                book.Interval($"{path}.interval.bootstrap_percentile", figures?.BootstrapPercentile, figures?.PercentileReason ?? Missing(CovarianceKind.Bootstrap))),
             new PValues(
                 PValue("pooled", CovarianceKind.Pooled), PValue("robust", CovarianceKind.Robust), PValue("cluster", CovarianceKind.Cluster),
                 PValue("jackknife", CovarianceKind.Jackknife), PValue("two_way", CovarianceKind.TwoWay), PValue("bootstrap", CovarianceKind.Bootstrap)),
             book.Number($"{path}.bootstrap_error", figures?.BootstrapError, Missing(CovarianceKind.Bootstrap)),
-            book.Number($"{path}.se_ratio", figures?.SeRatio, Missing(CovarianceKind.Cluster)),
-            book.Number($"{path}.equivalent_occasions", figures?.EquivalentOccasions, Missing(CovarianceKind.Cluster)));
+            book.Number($"{path}.se_ratio", figures?.SeRatio, figures?.RatioReason ?? Missing(CovarianceKind.Cluster)),
+            book.Number($"{path}.equivalent_occasions", figures?.EquivalentOccasions, figures?.RatioReason ?? Missing(CovarianceKind.Cluster)));
 
         double? Error(string name, CovarianceKind kind) => book.Number($"{path}.se.{name}", Of(kind)?.StandardError, Missing(kind));
         Interval? Range(string name, CovarianceKind kind) => book.Interval($"{path}.interval.{name}", Of(kind)?.Interval, Missing(kind));
         double? PValue(string name, CovarianceKind kind) => book.Number($"{path}.p_value.{name}", Of(kind)?.PValue, Missing(kind));
         KindFigures? Of(CovarianceKind kind) => figures?.ByKind.GetValueOrDefault(kind);
         string Missing(CovarianceKind kind) =>
-            FixedReason(entry) ?? Of(kind)?.Reason ?? KindReason(kind, model, inference);
+            FixedReason(entry) ?? Of(kind)?.Reason ?? KindReason(kind, inference);
     }
 
     /// <summary>Why a whole kind of covariance is missing.</summary>
-    public static string KindReason(CovarianceKind kind, FittedModel model, InferenceResult? inference)
-    {
-        if (inference is null) return $"the estimate is not to be trusted ({StatusWord(model.Status)}), so no standard errors are given";
-        if (inference.Covariances.GetValueOrDefault(kind)?.Refusal is { } refusal) return refusal;
-        return kind switch
-        {
-            CovarianceKind.TwoWay => "no second cluster was asked for",
-            CovarianceKind.Jackknife => "the jackknife is off in the study",
-            CovarianceKind.Bootstrap => "no bootstrap replicates were asked for",
-            CovarianceKind.Pooled or CovarianceKind.OuterProduct => "it has no interval or p-value, because with weights it depends on their unit",
-            _ => "the figure does not exist for this parameter",
-        };
-    }
+    public static string KindReason(CovarianceKind kind, InferenceResult inference) =>
+        inference.Covariances.GetValueOrDefault(kind)?.Refusal ?? "The figure does not exist for this parameter.";
 
     public static string StatusWord(FitStatus status) => status switch
     {
@@ -110,8 +99,8 @@ internal static class ParameterEntries
     private static string? FixedReason(ParameterEntry entry) => entry switch
     {
         { Place: >= 0 } => null,
-        { Standing: NestStanding.NeverWider } => "the nest never offers two of its members at once, so its dissimilarity is not identified",
-        _ => "the parameter is fixed by the study",
+        { Standing: NestStanding.NeverWider } => "The nest never offers two of its members at once, so its dissimilarity is not identified.",
+        _ => "The parameter is fixed by the study.",
     };
 
     private static string RoleWord(CovariateRole role) => role switch

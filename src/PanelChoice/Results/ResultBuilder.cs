@@ -21,8 +21,8 @@ internal static class ResultBuilder
         var entries = ParameterEntries.Of(model);
         var fit = Fit(model, book);
         var parameters = entries.Select((e, i) => ParameterEntries.Figures(e, $"parameters[{i}]", model, inference, book)).ToImmutableArray();
-        var covariance = CovarianceExpansion.Over(entries, model, inference, book);
-        if (inference?.Jackknife is null) book.Note("jackknife", ParameterEntries.KindReason(CovarianceKind.Jackknife, model, inference));
+        var covariance = CovarianceExpansion.Over(entries, inference, book);
+        if (inference.Jackknife is null) book.Note("jackknife", ParameterEntries.KindReason(CovarianceKind.Jackknife, inference));
         var clusters = Clusters(stages, book);
         NoteDiagnostics(diagnostics, book);
         return new AnalysisResult(
@@ -35,15 +35,15 @@ internal static class ResultBuilder
             Sample(covariates, model.Design),
             fit,
             parameters,
-            inference?.Bootstrap is { } b
+            inference.Bootstrap is { } b
                 ? new BootstrapCounts(b.Requested, b.Done, b.Retried, [.. b.Failures.Select(f => new FailureCount(f.Kind, f.Count))])
                 : new BootstrapCounts(0, 0, 0, []),
-            inference?.Jackknife is { } j ? new JackknifeCounts(j.Kind == JackknifeKind.OneStep ? "one_step" : "refit", j.Refits, j.Failures) : null,
+            inference.Jackknife is { } j ? new JackknifeCounts(j.Kind == JackknifeKind.OneStep ? "one_step" : "refit", j.Refits, j.Failures) : null,
             covariance,
             clusters,
             diagnostics,
             findings,
-            Replicates(entries, model, inference?.Bootstrap));
+            Replicates(entries, model, inference.Bootstrap));
     }
 
     /// <summary>Version of the program, without the revision that a build may append.</summary>
@@ -85,72 +85,60 @@ internal static class ResultBuilder
     private static FitSummary Fit(FittedModel model, ReasonBook book) => new(
         ParameterEntries.StatusWord(model.Status),
         model.Form == NestedLogitForm.Unscaled ? "unscaled" : "utility-scaled",
-        book.Number("fit.log_likelihood", model.LogLikelihood, "the search left the range of finite numbers"),
-        book.Number("fit.log_likelihood_equal_probability", model.LogLikelihoodEqualProbability, "it is not finite"),
-        book.Number("fit.log_likelihood_constants", model.LogLikelihoodConstants, "with constants alone the likelihood has no maximum"),
+        book.Number("fit.log_likelihood", model.LogLikelihood, "The search left the range of finite numbers."),
+        book.Number("fit.log_likelihood_equal_probability", model.LogLikelihoodEqualProbability, "It is not finite."),
+        book.Number("fit.log_likelihood_constants", model.LogLikelihoodConstants, "With constants alone the likelihood has no maximum."),
         model.Layout.Free.Length,
-        book.Number("fit.gradient_norm", model.GradientNorm, "without standard errors the gradient cannot be scaled"),
+        book.Number("fit.gradient_norm", model.GradientNorm, "Without standard errors the gradient cannot be scaled."),
         model.Iterations,
         new StartCounts(model.StartsRequested, model.StartsConverged, [.. model.Optima.Select(o => new OptimumCount(o.LogLikelihood, o.Starts))]),
         [.. model.Findings.Select(f => new FitWarning(f.Id, f.Sentence, [.. f.Parameters.Select(k => model.Layout.Parameters[k].Label)]))]);
 
     private static ClusterResult Clusters(FindingsInput stages, ReasonBook book)
     {
+        var clusters = stages.Inference.Clusters;
         var design = stages.Model.Design;
-        if (stages.Inference?.Clusters is { } clusters)
-        {
-            var pseudonyms = Pseudonyms.Of(stages.Covariates.Panel.Table.Sha256, clusters.By, design.Clusters);
-            return new ClusterResult(
-                clusters.By, clusters.Count, book.Number("clusters.effective", clusters.Effective, "the effective number of clusters is not computed in this version"),
-                clusters.Smallest, clusters.Median, clusters.Largest, clusters.DegreesOfFreedom,
-                [.. clusters.MostInfluential.Select(i => new InfluenceResult(pseudonyms[i.Cluster], design.Layout.Parameters[i.Parameter].Label, i.Change))]);
-        }
-
-        book.Note("clusters.effective", "the effective number of clusters is not computed in this version");
-        var sizes = new int[design.Clusters.Length];
-        for (var t = 0; t < design.Situations; t++) sizes[design.ClusterOf[design.PersonOf[t]]]++;
-        Array.Sort(sizes);
-        var middle = sizes.Length / 2;
+        var codes = Pseudonyms.Of(stages.Covariates.Panel.Table.Sha256, design.Clusters);
         return new ClusterResult(
-            design.ClusterBy, sizes.Length, null, sizes[0], sizes.Length % 2 == 1 ? sizes[middle] : 0.5 * (sizes[middle - 1] + sizes[middle]), sizes[^1],
-            sizes.Length - 1, []);
+            clusters.By, clusters.Count, book.Number("clusters.effective", clusters.Effective, clusters.EffectiveReason ?? "It is not computed."),
+            clusters.Smallest, clusters.Median, clusters.Largest, clusters.DegreesOfFreedom,
+            [.. clusters.MostInfluential.Select(
+                i => new InfluenceResult($"{clusters.By} {codes[i.Cluster]}", design.Layout.Parameters[i.Parameter].Label, i.Change))]);
     }
 
-    private static ImmutableArray<ResultWarning> Warnings(CovariateSet covariates, InferenceResult? inference, ImmutableArray<Finding> findings) =>
+    private static ImmutableArray<ResultWarning> Warnings(CovariateSet covariates, InferenceResult inference, ImmutableArray<Finding> findings) =>
     [
         .. covariates.Cautions.Select(c => new ResultWarning(c.Id, c.Sentence))
-            .Concat(inference is null
-                ? []
-                : Enum.GetValues<CovarianceKind>().Where(inference.Covariances.ContainsKey).SelectMany(
-                    k => inference.Covariances[k].Cautions.Select(c => new ResultWarning("inference." + JsonWords.Of(k), c))))
+            .Concat(Enum.GetValues<CovarianceKind>().Where(inference.Covariances.ContainsKey).SelectMany(
+                k => inference.Covariances[k].Cautions.Select(c => new ResultWarning("inference." + JsonWords.Of(k), c))))
             .Concat(findings.Where(f => f.Severity == FindingSeverity.Warning).Select(f => new ResultWarning(f.Id, f.Sentence)))
             .Distinct(),
     ];
 
     private static void NoteDiagnostics(DiagnosticsResult diagnostics, ReasonBook book)
     {
-        var none = diagnostics.Reason ?? "it could not be computed on this panel";
+        var none = diagnostics.Reason ?? "It could not be computed on this panel.";
         if (diagnostics.Detector is null) book.Note("diagnostics.detector", none);
         if (diagnostics.DateScore is null)
-            book.Note("diagnostics.date_score", diagnostics.Reason ?? "the study does not say that an occasion is the same day for everybody, or no day is shared");
-        if (diagnostics.CommonDays is null) book.Note("diagnostics.common_days", diagnostics.Reason ?? "the date score was not computed");
-        if (diagnostics.Cause is null) book.Note("diagnostics.cause", diagnostics.Verdict == Verdict.Dependence ? "only the date score passed" : "no dependence was found");
+            book.Note("diagnostics.date_score", diagnostics.Reason ?? "The study does not say that an occasion is the same day for everybody, or no day is shared.");
+        if (diagnostics.CommonDays is null) book.Note("diagnostics.common_days", diagnostics.Reason ?? "The date score was not computed.");
+        if (diagnostics.Cause is null) book.Note("diagnostics.cause", diagnostics.Verdict == Verdict.Dependence ? "Only the date score passed." : "No dependence was found.");
         book.Number("diagnostics.variance_inflation", diagnostics.VarianceInflation, none);
-        if (diagnostics.HitRate is null) book.Note("diagnostics.hit_rate", "there is no cause whose rule could be rated");
-        book.Note("diagnostics.bootstrap", "the parametric bootstrap of the detector is not in this version; its p-value is analytic");
+        if (diagnostics.HitRate is null) book.Note("diagnostics.hit_rate", "There is no cause whose rule could be rated.");
+        book.Note("diagnostics.bootstrap", "The parametric bootstrap of the detector is not in this version; its p-value is analytic.");
         for (var i = 0; i < diagnostics.Lags.Length; i++)
         {
-            const string Thin = "too few pairs of occasions lie at this distance";
+            const string Thin = "Too few pairs of occasions lie at this distance.";
             book.Number($"diagnostics.lags[{i}].gamma", diagnostics.Lags[i].Gamma, Thin);
             book.Number($"diagnostics.lags[{i}].se", diagnostics.Lags[i].StandardError, Thin);
         }
 
         for (var i = 0; i < diagnostics.ByAlternative.Length; i++)
-            book.Number($"diagnostics.by_alternative[{i}].z", diagnostics.ByAlternative[i].Z, "the alternative is chosen or offered too seldom");
+            book.Number($"diagnostics.by_alternative[{i}].z", diagnostics.ByAlternative[i].Z, "The alternative is chosen or offered too seldom.");
         for (var i = 0; i < diagnostics.ByNest.Length; i++)
-            book.Number($"diagnostics.by_nest[{i}].z", diagnostics.ByNest[i].Z, "the nest is chosen or offered too seldom");
+            book.Number($"diagnostics.by_nest[{i}].z", diagnostics.ByNest[i].Z, "The nest is chosen or offered too seldom.");
         for (var i = 0; i < (diagnostics.Detector?.ByDecay.Length ?? 0); i++)
-            book.Number($"diagnostics.detector.by_decay[{i}].z", diagnostics.Detector!.ByDecay[i].Z, "the score has no variance at this decay");
+            book.Number($"diagnostics.detector.by_decay[{i}].z", diagnostics.Detector!.ByDecay[i].Z, "The score has no variance at this decay.");
     }
 
     private static ReplicateTable Replicates(ImmutableArray<ParameterEntry> entries, FittedModel model, BootstrapSummary? bootstrap)
