@@ -1,5 +1,6 @@
 using System.Collections.Immutable;
 using PanelChoice.Panels;
+using PanelChoice.Study;
 
 namespace PanelChoice.Covariates;
 
@@ -41,11 +42,6 @@ public sealed record Covariate(
 /// <param name="Reason">The reason in plain words.</param>
 /// <param name="Occasions">Number of occasions.</param>
 public sealed record LeftOut(string Reason, int Occasions);
-
-/// <summary>A caution that goes with a result: a stable id and one sentence.</summary>
-/// <param name="Id">Stable id, for example <c>history.gaps</c>.</param>
-/// <param name="Sentence">The caution in plain words.</param>
-public sealed record Caution(string Id, string Sentence);
 
 /// <summary>How much of a habit stock's arbitrary start value 1/J is still in it.</summary>
 /// <param name="Term">Name of the stock term.</param>

@@ -1,4 +1,4 @@
-using PanelChoice.Covariates;
+using PanelChoice.Panels;
 using PanelChoice.Study;
 using PanelChoice.Tests.Support;
 using Xunit;

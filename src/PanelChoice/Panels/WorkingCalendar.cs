@@ -1,6 +1,6 @@
 using System.Collections.Immutable;
 
-namespace PanelChoice.Covariates;
+namespace PanelChoice.Panels;
 
 /// <summary>Numbers the working days in a row, so that a distance in working days is a difference of two numbers.</summary>
 /// <param name="holidays">Dates that are no working days besides Saturdays and Sundays.</param>

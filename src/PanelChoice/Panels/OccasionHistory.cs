@@ -1,8 +1,7 @@
 using PanelChoice.Data;
-using PanelChoice.Panels;
 using PanelChoice.Study;
 
-namespace PanelChoice.Covariates;
+namespace PanelChoice.Panels;
 
 /// <summary>
 /// Which recorded occasion lies k steps before or after which, under the study's rule. It looks at the recorded panel and never at the
