@@ -16,6 +16,9 @@ internal static class ClusterJackknife
     /// <summary>Up to this number of clusters the automatic choice is a full refit without each.</summary>
     public const int MostRefits = 1000;
 
+    /// <summary>Entries of the clusters' information matrices, at 8 bytes each, that the one-step form may hold: 2 gigabytes.</summary>
+    public const long MostEntries = 1L << 28;
+
     /// <summary>The estimate, and how it went (null when off or refused beforehand).</summary>
     public static (CovarianceEstimate Covariance, JackknifeSummary? Summary) Estimate(InferenceInput input, JackknifeKind kind, WorkContext work)
     {
@@ -46,17 +49,21 @@ internal static class ClusterJackknife
 
         var covariance = FromDeviations(input, refits.Deviations, refits.Lost.Keys, work.Threads) with
         {
-            Cautions = [.. refits.Lost.Select(l => LostSentence(input, l.Key, l.Value) + " The other terms' refits held it where needed.")],
+            Cautions = [.. refits.Lost.Select(l =>
+                LostSentence(input, l.Key, l.Value) + " The other terms are then estimated with it held at its full-sample value.")],
             RefusedParameters = [.. refits.Lost.Keys],
             RefusedReasons = [.. refits.Lost.Select(l => LostSentence(input, l.Key, l.Value))],
         };
         return (covariance, summary);
     }
 
-    private static (CovarianceEstimate, JackknifeSummary) ByOneStep(InferenceInput input, WorkContext work)
+    private static (CovarianceEstimate, JackknifeSummary?) ByOneStep(InferenceInput input, WorkContext work)
     {
         var clusters = input.Clusters.Length;
         var f = input.Free.Length;
+        var entries = (long)clusters * input.Estimates.Length * input.Estimates.Length;
+        if (entries > MostEntries)
+            return (Refuse($"The information of {clusters} clusters by {input.Estimates.Length} parameters would take {entries >> 27} gigabytes."), null);
         var scores = Sandwich.ClusterScores(input);
         var parts = input.ClusterInformation();
         var deviations = new double[clusters * f];

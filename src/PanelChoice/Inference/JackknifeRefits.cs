@@ -14,9 +14,9 @@ internal sealed record JackknifeRefits(
     double[] Deviations, int Failed, SortedDictionary<int, List<(int Cluster, string Kind)>> Lost, List<(int Cluster, string Kind)> Hopeless)
 {
     /// <summary>
-    /// Refits without each cluster, warm-started from the full estimate. Where a refit finds terms that are not identified (or run to
-    /// infinity) without the cluster, those terms are lost for the jackknife, and the others are estimated once more with them held at
-    /// their full-sample values, so that one person cannot take the figures of every term away.
+    /// Refits without each cluster, warm-started from the full estimate. Where a refit finds terms that are not identified (or run to the
+    /// edge of their range) without the cluster, those terms are lost for the jackknife, and the others are estimated once more with them
+    /// held at their full-sample values, so that one person cannot take the figures of every term away.
     /// </summary>
     public static JackknifeRefits Run(InferenceInput input, WorkContext work)
     {
@@ -95,7 +95,7 @@ internal sealed record JackknifeRefits(
             {
                 // Terms that cannot be told from each other: holding one of them gives the rest of the model its estimates back, whatever the value.
                 FitStatus.NotIdentified => new Deletion(Cluster, Held.Add(named[^1]), [.. Lost.Union(named)]),
-                FitStatus.Separated => new Deletion(Cluster, [.. Held.Union(named)], [.. Lost.Union(named)]),
+                FitStatus.Separated or FitStatus.Boundary => new Deletion(Cluster, [.. Held.Union(named)], [.. Lost.Union(named)]),
                 _ => null,
             };
             return next is null || input.Free.All(next.Held.Contains) ? null : next;

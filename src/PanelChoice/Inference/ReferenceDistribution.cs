@@ -1,4 +1,5 @@
 using MathNet.Numerics.Distributions;
+using MathNet.Numerics.RootFinding;
 
 namespace PanelChoice.Inference;
 
@@ -12,7 +13,11 @@ internal readonly record struct ReferenceDistribution(double? DegreesOfFreedom)
     {
         // The lower tail keeps its digits; 1 - (1 - confidence)/2 would lose some.
         var tail = (1 - confidence) / 2;
-        return DegreesOfFreedom is { } df ? -StudentT.InvCDF(0, 1, df, tail) : -Normal.InvCDF(0, 1, tail);
+        if (DegreesOfFreedom is not { } df) return -Normal.InvCDF(0, 1, tail);
+        // The library's own inverse looks inside (-800, 800) only, which one degree of freedom leaves at a confidence of 0.9993.
+        var beyond = 1.0;
+        while (StudentT.CDF(0, 1, df, -beyond) > tail) beyond *= 2;
+        return Brent.FindRoot(q => Math.Log(StudentT.CDF(0, 1, df, -q) / tail), 0, beyond, 1e-14, 500);
     }
 
     /// <summary>Probability of a statistic at least as far from zero.</summary>

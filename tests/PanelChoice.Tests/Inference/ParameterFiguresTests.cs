@@ -46,6 +46,8 @@ public class ParameterFiguresTests
         }
 
         Assert.Equal(1, new ReferenceDistribution(null).TwoSided(0));
+        foreach (var confidence in new[] { 0.01, 0.5, 0.95, 0.9995, 0.999999 })
+            Assert.InRange(new ReferenceDistribution(1).Critical(confidence) * Math.Tan(Math.PI * (1 - confidence) / 2), 1 - 1e-9, 1 + 1e-9);
     }
 
     [Fact]
