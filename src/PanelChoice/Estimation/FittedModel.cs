@@ -45,7 +45,8 @@ public sealed record FitFinding(string Id, string Sentence, ImmutableArray<int> 
 /// <param name="LogLikelihoodEqualProbability">With every offered alternative equally likely.</param>
 /// <param name="LogLikelihoodConstants">Maximum with alternative-specific constants alone (plain logit); null when it does not exist.</param>
 /// <param name="Hessian">K x K second derivatives there, row by row.</param>
-/// <param name="GradientNorm">Largest absolute gradient over free parameters, each times the parameter's pooled standard error.</param>
+/// <param name="GradientNorm">Largest absolute gradient over free parameters, each times the parameter's pooled standard error
+/// (weights scaled to mean 1).</param>
 /// <param name="Iterations">Iterations of the winning start.</param>
 /// <param name="StartsRequested">Starts asked for.</param>
 /// <param name="StartsConverged">Starts that converged.</param>
@@ -67,6 +68,9 @@ public sealed record FittedModel(
     ImmutableArray<Optimum> Optima,
     ImmutableArray<FitFinding> Findings)
 {
+    /// <summary>Free coefficients that the sample cannot tell; they are held at 0 and the others estimated given that.</summary>
+    public ImmutableArray<int> Held { get; init; } = [];
+
     /// <summary>The design of the likelihood.</summary>
     public ChoiceDesign Design => Likelihood.Design;
 

@@ -1,0 +1,119 @@
+using System.Collections.Immutable;
+using PanelChoice.Design;
+using PanelChoice.Likelihood;
+using PanelChoice.Optimisation;
+
+namespace PanelChoice.Estimation;
+
+/// <summary>
+/// Minus the log-likelihood, the only place that turns its sign, as a function of the coordinates the optimiser works in: a coefficient
+/// times the scale of its column, and the logarithm of a dissimilarity. It is divided by the mean weight of a situation, so that the Newton
+/// decrement means standard errors whatever the unit of the weights.
+/// </summary>
+internal sealed class MinusLogLikelihood
+{
+    private readonly IChoiceLikelihood likelihood;
+    private readonly double[] personWeight;
+    private readonly double unit;
+    private readonly double[] scale;
+    private readonly double[] all;
+
+    /// <summary>The function over some of the parameters; the others are held.</summary>
+    /// <param name="likelihood">The likelihood.</param>
+    /// <param name="personWeight">Weight of each person.</param>
+    /// <param name="scale">Scale of each of the K parameters' columns; not used for dissimilarities.</param>
+    /// <param name="active">Parameters that move, ascending.</param>
+    /// <param name="parameters">K parameters; those not in <paramref name="active"/> stay as they are here.</param>
+    public MinusLogLikelihood(
+        IChoiceLikelihood likelihood, double[] personWeight, double[] scale, ImmutableArray<int> active, ReadOnlySpan<double> parameters)
+    {
+        this.likelihood = likelihood;
+        this.personWeight = personWeight;
+        this.scale = scale;
+        Active = active;
+        all = parameters.ToArray();
+        unit = MeanWeight(likelihood.Design, personWeight);
+    }
+
+    /// <summary>Parameters that move.</summary>
+    public ImmutableArray<int> Active { get; }
+
+    /// <summary>Mean weight of a situation.</summary>
+    public static double MeanWeight(ChoiceDesign design, double[] personWeight)
+    {
+        double sum = 0;
+        long situations = 0;
+        for (var p = 0; p < personWeight.Length; p++)
+        {
+            if (personWeight[p] == 0) continue;
+            var own = design.PersonStart[p + 1] - design.PersonStart[p];
+            sum += personWeight[p] * own;
+            situations += own;
+        }
+
+        return sum > 0 ? sum / situations : 1;
+    }
+
+    /// <summary>The coordinates of a point.</summary>
+    public double[] Coordinates(ReadOnlySpan<double> parameters)
+    {
+        var x = new double[Active.Length];
+        for (var i = 0; i < x.Length; i++)
+        {
+            var k = Active[i];
+            x[i] = IsDissimilarity(k) ? Math.Log(parameters[k]) : parameters[k] * scale[k];
+        }
+
+        return x;
+    }
+
+    /// <summary>All K parameters at a point.</summary>
+    public double[] Parameters(ReadOnlySpan<double> x)
+    {
+        var parameters = (double[])all.Clone();
+        for (var i = 0; i < x.Length; i++)
+        {
+            var k = Active[i];
+            parameters[k] = IsDissimilarity(k) ? Math.Exp(x[i]) : x[i] / scale[k];
+        }
+
+        return parameters;
+    }
+
+    /// <summary>A direction in coordinates as a direction of the K parameters (of their logarithms where they are dissimilarities).</summary>
+    public double[] Direction(ReadOnlySpan<double> step)
+    {
+        var direction = new double[all.Length];
+        for (var i = 0; i < step.Length; i++) direction[Active[i]] = IsDissimilarity(Active[i]) ? step[i] : step[i] / scale[Active[i]];
+        return direction;
+    }
+
+    /// <summary>The log-likelihood that belongs to a value of this function.</summary>
+    public double LogLikelihood(double value) => -value * unit;
+
+    /// <summary>The function with its derivatives by the coordinates.</summary>
+    public SmoothValue Evaluate(ReadOnlySpan<double> x)
+    {
+        var parameters = Parameters(x);
+        var at = likelihood.Evaluate(parameters, personWeight, Derivatives.Hessian);
+        var n = x.Length;
+        var K = all.Length;
+        var gradient = new double[n];
+        var hessian = new double[n * n];
+        for (var i = 0; i < n; i++)
+        {
+            // Derivative of the parameter by its coordinate; for log l its second derivative is l as well.
+            var di = Slope(i, parameters);
+            gradient[i] = -at.Gradient[Active[i]] * di / unit;
+            for (var j = 0; j < n; j++)
+                hessian[(i * n) + j] = -at.Hessian[(Active[i] * K) + Active[j]] * di * Slope(j, parameters) / unit;
+            if (IsDissimilarity(Active[i])) hessian[(i * n) + i] += gradient[i];
+        }
+
+        return new SmoothValue(-at.Value / unit, gradient, hessian);
+    }
+
+    private double Slope(int i, double[] parameters) => IsDissimilarity(Active[i]) ? parameters[Active[i]] : 1 / scale[Active[i]];
+
+    private bool IsDissimilarity(int k) => k >= likelihood.Design.Layout.Coefficients;
+}

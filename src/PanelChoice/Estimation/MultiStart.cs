@@ -1,0 +1,152 @@
+using System.Collections.Immutable;
+using PanelChoice.Design;
+using PanelChoice.Likelihood;
+using PanelChoice.Numerics;
+using PanelChoice.Optimisation;
+using PanelChoice.Study;
+
+namespace PanelChoice.Estimation;
+
+/// <summary>What the searches from all starting points came to.</summary>
+/// <param name="Plain">The plain logit (free dissimilarities held at their largest ordered value, 1 where nothing bounds them).</param>
+/// <param name="Ends">Every search over all parameters, in the order it was run.</param>
+/// <param name="Maxima">Distinct maxima, best first.</param>
+/// <param name="EndsAt">How many searches ended at each of <paramref name="Maxima"/>.</param>
+/// <param name="Active">Parameters that moved in the searches.</param>
+internal sealed record MultiStartResult(
+    SearchEnd Plain, ImmutableArray<SearchEnd> Ends, ImmutableArray<KnownMaximum> Maxima, ImmutableArray<int> EndsAt, ImmutableArray<int> Active);
+
+/// <summary>
+/// Searches from plain logit, from the user's own values, from the local maxima of the profile over a grid of dissimilarities, and from seeded
+/// points. For given dissimilarities in order the likelihood is concave in the coefficients (Daganzo and Kusnic 1993), so that the profile
+/// cannot be trapped; jointly it is not. Each search is brought near its end on a thinned sample of persons when there are many, and stops
+/// as soon as it comes within a hundredth of a standard error of a maximum known before, so that many starts stay cheap.
+/// </summary>
+internal sealed class MultiStart
+{
+    /// <summary>Persons a thinned sample keeps at least (about; measured: fewer lose more in steps on the whole sample than they save).</summary>
+    private const int ThinnedPersons = 600;
+
+    private static readonly MinimisationSettings Loose = new(Tolerance: 0.03, MaxIterations: 60);
+    private static readonly MinimisationSettings Tight = new();
+
+    private readonly ChoiceDesign design;
+    private readonly ImmutableArray<int> active;
+    private readonly ImmutableArray<int> coefficients;
+    private readonly double[] scale;
+    private readonly StartingPoints points;
+    private readonly LocalSearch search;
+    private readonly LocalSearch? thinned;
+    private readonly EstimateSettings settings;
+    private readonly WorkContext work;
+    private readonly List<SearchEnd> ends = [];
+    private readonly List<KnownMaximum> maxima = [];
+    private readonly List<int> endsAt = [];
+
+    /// <summary>Prepares the searches.</summary>
+    /// <param name="likelihood">The likelihood.</param>
+    /// <param name="form">Its form.</param>
+    /// <param name="active">Parameters to estimate.</param>
+    /// <param name="scale">Scale of each column.</param>
+    /// <param name="settings">Number of starts and seed.</param>
+    /// <param name="work">Progress and cancellation.</param>
+    public MultiStart(
+        IChoiceLikelihood likelihood, NestedLogitForm form, ImmutableArray<int> active, double[] scale, EstimateSettings settings, WorkContext work)
+    {
+        design = likelihood.Design;
+        this.active = active;
+        this.scale = scale;
+        this.settings = settings;
+        this.work = work;
+        coefficients = [.. active.Where(k => k < design.Layout.Coefficients)];
+        points = new StartingPoints(design, form);
+        var weight = design.PersonWeight.ToArray();
+        search = new LocalSearch(likelihood, form, weight, scale, work.Cancellation);
+        var every = Math.Min(16, design.Persons / ThinnedPersons);
+        if (every >= 4)
+            thinned = new LocalSearch(likelihood, form, [.. weight.Select((w, p) => p % every == 0 ? w : 0)], scale, work.Cancellation);
+    }
+
+    /// <summary>Runs all searches.</summary>
+    /// <param name="start">K parameters: fixed values, the user's starting values, 0 for other coefficients, 1 for free dissimilarities.</param>
+    /// <param name="hasOwnStart">Whether the user gave starting values.</param>
+    public MultiStartResult Run(double[] start, bool hasOwnStart)
+    {
+        var isConcave = points.Free.IsEmpty && points.FixedAreInOrder();
+        var total = isConcave ? 1 : Math.Max(1, settings.Starts);
+        work.Report("starts", 0, total);
+        var ones = Enumerable.Repeat(1.0, points.Free.Length).ToArray();
+        var plainStart = points.With(start, ones);
+        var plain = search.Run(Near(plainStart, coefficients), coefficients, points.Free.IsEmpty ? Tight : Loose with { Tolerance = 1e-3, MaxIterations = 200 }, []);
+        var moving = active;
+        if (plain.Kind == SearchEndKind.Separated)
+        {
+            // What runs away is held where it is, so that the rest can still be estimated.
+            moving = [.. active.Where(k => !plain.About.Contains(k))];
+            total = 1;
+        }
+
+        if (points.Free.IsEmpty && plain.Kind != SearchEndKind.Separated) Keep(plain);
+        else Search(plain.Parameters, moving);
+        work.Report("starts", ends.Count, total);
+
+        foreach (var from in OtherStarts(start, hasOwnStart, plain.Parameters, total))
+        {
+            if (ends.Count >= total) break;
+            Search(from, moving);
+            work.Report("starts", ends.Count, total);
+        }
+
+        var order = Enumerable.Range(0, maxima.Count).OrderByDescending(m => maxima[m].LogLikelihood).ToArray();
+        return new MultiStartResult(plain, [.. ends], [.. order.Select(m => maxima[m])], [.. order.Select(m => endsAt[m])], moving);
+    }
+
+    private IEnumerable<double[]> OtherStarts(double[] start, bool hasOwnStart, double[] plain, int total)
+    {
+        if (total <= 1) yield break;
+        if (hasOwnStart) yield return start;
+        if (!points.Free.IsEmpty)
+            foreach (var from in ProfileMaxima(plain, total)) yield return from;
+        for (var i = 0; i < total; i++) yield return points.Seeded(plain, active, scale, settings.Seed, i);
+    }
+
+    /// <summary>The local maxima of the profile over the grid, best first.</summary>
+    private IEnumerable<double[]> ProfileMaxima(double[] plain, int total)
+    {
+        var grid = points.Grid();
+        var ends = new SearchEnd[grid.Length];
+        var from = plain;
+        for (var i = 0; i < grid.Length; i++)
+        {
+            work.Report("starts", this.ends.Count, total);
+            ends[i] = (thinned ?? search).Run(points.With(from, grid[i].Values), coefficients, Loose, []);
+            if (ends[i].Kind == SearchEndKind.Maximum) from = ends[i].Parameters;
+        }
+
+        double Height(int i) => ends[i].Kind == SearchEndKind.Maximum ? ends[i].LogLikelihood : double.NegativeInfinity;
+        return Enumerable.Range(0, grid.Length)
+            .Where(i => double.IsFinite(Height(i)) && grid[i].Neighbours.All(n => Height(n) <= Height(i)))
+            .OrderByDescending(Height)
+            .Select(i => ends[i].Parameters);
+    }
+
+    private void Search(double[] from, ImmutableArray<int> moving)
+    {
+        var end = search.Run(Near(from, moving), moving, Tight, maxima);
+        if (end.Kind == SearchEndKind.Stopped) end = search.Run(end.Parameters, moving, Tight with { InitialRadius = 0.5 }, maxima);
+        Keep(end);
+    }
+
+    /// <summary>Brings a point near its end on the thinned sample; leaves it where it is when there is none, or it leads nowhere.</summary>
+    private double[] Near(double[] from, ImmutableArray<int> moving) =>
+        thinned?.Run(from, moving, Loose, []) is { Kind: SearchEndKind.Maximum } near ? near.Parameters : from;
+
+    private void Keep(SearchEnd end)
+    {
+        ends.Add(end);
+        if (end.Kind == SearchEndKind.Known) endsAt[end.Known]++;
+        if (end.Kind != SearchEndKind.Maximum) return;
+        maxima.Add(new KnownMaximum(end.Parameters, end.LogLikelihood, end.Last.Point, end.Last.At.Hessian));
+        endsAt.Add(1);
+    }
+}
