@@ -1,1 +1,21 @@
+using System.Globalization;
+using PanelChoice.Benchmarks;
+
+// Prints the speed of the likelihood as ratios measured in one run: dotnet run -c Release --project tests/PanelChoice.Benchmarks -- [--case S|M]
+CultureInfo.DefaultThreadCurrentCulture = CultureInfo.CurrentCulture = CultureInfo.InvariantCulture;
+string[] cases;
+switch (args)
+{
+    case []:
+        cases = ["S", "M"];
+        break;
+    case ["--case", "S" or "M"]:
+        cases = [args[1]];
+        break;
+    default:
+        Console.Error.WriteLine("Usage: PanelChoice.Benchmarks [--case S|M]");
+        return 64;
+}
+
+foreach (var name in cases) LikelihoodBenchmark.Run(name == "S" ? CommuteCase.Small() : CommuteCase.Medium());
 return 0;

@@ -13,7 +13,7 @@ namespace PanelChoice.Likelihood;
 /// <code>
 /// sum over nodes m:  a_m / l_m (sum_c p_c y_c y_c' - z_m z_m') - a_m / l_m^2 (u_m e_m' + e_m u_m') + a_m v_m / l_m^3 e_m e_m'
 ///   with u_m = sum_c p_c (W_c - Wbar_m) y_c, v_m = variance of W_c under p;
-/// sum over the path: -(1/l_m^2) (d e_m' + e_m d') + 2 (W_c - W_m) / l_m^3 e_m e_m',  d = y_c - y_m
+/// sum over the path: -(1/l_m^2) (d e_m' + e_m d') + 2 log p_c / l_m^2 e_m e_m',  d = y_c - y_m
 /// </code>
 /// and in the unscaled form, with b_m = a_m l_m - [m on the path] and y_m = l_m z_m + L_m e_m,
 /// <code>
@@ -46,6 +46,7 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
 
     public LikelihoodEvaluation Evaluate(ReadOnlySpan<double> parameters, ReadOnlySpan<double> personWeight, Derivatives derivatives)
     {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Undefined(K, derivatives);
         var theta = parameters.ToArray();
         var weight = personWeight.ToArray();
         var chunks = Numerics.FixedChunks.Count(Design.Persons);
@@ -86,6 +87,7 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
 
     public double[] Scores(ReadOnlySpan<double> parameters)
     {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Situations * K);
         var theta = parameters.ToArray();
         var scores = new double[Design.Situations * K];
         Numerics.FixedChunks.Run(Design.Situations, threads, (_, first, end) =>
@@ -102,6 +104,7 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
 
     public double[] LogProbabilities(ReadOnlySpan<double> parameters)
     {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Situations);
         var work = new Situation(Design, form, parameters.ToArray());
         var log = new double[Design.Situations];
         for (var s = 0; s < log.Length; s++)
@@ -115,6 +118,7 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
 
     public double[] PersonInformation(ReadOnlySpan<double> parameters)
     {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Persons * K * K);
         var theta = parameters.ToArray();
         var information = new double[Design.Persons * K * K];
         Numerics.FixedChunks.Run(Design.Persons, threads, (_, first, end) =>
@@ -264,7 +268,7 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
                 var l = tree.Dissimilarity[n];
                 for (var k = 0; k < K; k++) d[k] = y[c][k] - y[J + n][k];
                 AddCross(-weight / (l * l), d, parameter, hessian);
-                hessian[(parameter * K) + parameter] += weight * 2 * (tree.Value[c] - tree.Value[J + n]) / (l * l * l);
+                hessian[(parameter * K) + parameter] += weight * 2 * tree.LogConditional[c] / (l * l);
             }
         }
 

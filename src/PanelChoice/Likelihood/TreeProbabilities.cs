@@ -30,6 +30,7 @@ internal sealed class TreeProbabilities
         var children = J + tree.Nodes.Length;
         Value = new double[children];
         Conditional = new double[children];
+        LogConditional = new double[children];
         Probability = new double[children];
         Entropy = new double[tree.Nodes.Length];
         l = new double[tree.Nodes.Length];
@@ -50,6 +51,9 @@ internal sealed class TreeProbabilities
 
     /// <summary>p: probability of each child inside its parent; 0 where nothing is offered.</summary>
     public double[] Conditional { get; }
+
+    /// <summary>log p of each offered child; it stays finite where p has become 0.</summary>
+    public double[] LogConditional { get; }
 
     /// <summary>Probability of each child number from the root.</summary>
     public double[] Probability { get; }
@@ -104,6 +108,7 @@ internal sealed class TreeProbabilities
             {
                 if (!any[c]) continue;
                 var logP = ((Value[c] - max) / scale) - log;
+                LogConditional[c] = logP;
                 Conditional[c] = Math.Exp(logP);
                 if (Conditional[c] > 0) Entropy[n] -= Conditional[c] * logP;
             }
@@ -118,14 +123,9 @@ internal sealed class TreeProbabilities
     public double LogProbability(int alternative)
     {
         var log = 0.0;
-        for (var c = alternative; Parent[c] >= 0; c = J + Parent[c]) log += PathStep(c, Parent[c]);
+        for (var c = alternative; Parent[c] >= 0; c = J + Parent[c]) log += LogConditional[c];
         return log;
     }
-
-    /// <summary>(W_c - W_n) / l_n in the utility-scaled form, W_c - L_n in the unscaled one.</summary>
-    public double PathStep(int child, int node) => Form == NestedLogitForm.UtilityScaled
-        ? (Value[child] - Value[J + node]) / l[node]
-        : Value[child] - logSum[node];
 
     /// <summary>
     /// First derivatives of log P(<paramref name="chosen"/>). The derivative by V of alternative j is the generalised residual g_j.
@@ -145,7 +145,7 @@ internal sealed class TreeProbabilities
             {
                 byValue[c] += 1 / l[n];
                 byValue[J + n] -= 1 / l[n];
-                byDissimilarity[n] -= (Value[c] - Value[J + n]) / (l[n] * l[n]);
+                byDissimilarity[n] -= LogConditional[c] / l[n];
             }
             else
             {

@@ -1,0 +1,199 @@
+using System.Runtime.CompilerServices;
+using System.Runtime.InteropServices;
+using System.Runtime.Intrinsics;
+using PanelChoice.Design;
+
+namespace PanelChoice.Likelihood;
+
+/// <summary>
+/// A strip is a run of tiles of one block, short enough that everything about it stays in the first-level cache. This is its memory, and
+/// the step that fills it from the design: weights, utilities, choices. Child numbers are those of <see cref="Study.NestTree"/>.
+/// One instance is a work space: it is not for use by several threads at once.
+/// </summary>
+internal sealed class Strip
+{
+    /// <summary>
+    /// Value of whatever is not offered: far below any utility, so that its probability is exactly 0 next to an offered sibling, yet finite
+    /// when squared. Where nothing is offered (padding, weight 0) siblings share it and every figure stays finite.
+    /// </summary>
+    public const double NotOffered = -1e100;
+
+    private const int Tile = ChoiceDesign.TileLanes;
+    private readonly StripPlan plan;
+    private readonly StripRows rows;
+    private readonly byte[] live;
+
+    /// <summary>A work space for the plan's design.</summary>
+    public Strip(StripPlan plan)
+    {
+        this.plan = plan;
+        rows = new StripRows(RowCount(plan.J, plan.Nodes), plan.StripLanes);
+        live = new byte[plan.StripLanes / Tile];
+        Theta = new double[plan.K];
+        Dissimilarity = new double[plan.Nodes];
+    }
+
+    /// <summary>The parameters.</summary>
+    public double[] Theta { get; }
+
+    /// <summary>l of each node; 1 for the root.</summary>
+    public double[] Dissimilarity { get; }
+
+    /// <summary>Block of the strip.</summary>
+    public DesignBlock Block { get; private set; } = null!;
+
+    /// <summary>First lane of the strip in its block.</summary>
+    public int FirstLane { get; private set; }
+
+    /// <summary>Lanes of the strip, a multiple of 8.</summary>
+    public int Lanes { get; private set; }
+
+    private int Children => plan.J + plan.Nodes;
+
+    /// <summary>Rows that a strip needs for J alternatives and the given number of inner nodes.</summary>
+    public static int RowCount(int alternatives, int nodes) => (5 * (alternatives + nodes)) + (2 * nodes) + 1;
+
+    /// <summary>W of a child; V for an alternative.</summary>
+    public ref double Value(int child) => ref rows.Row(child);
+
+    /// <summary>t = log p of a child inside its node.</summary>
+    public ref double LogConditional(int child) => ref rows.Row(Children + child);
+
+    /// <summary>p of a child inside its node.</summary>
+    public ref double Conditional(int child) => ref rows.Row((2 * Children) + child);
+
+    /// <summary>o: the situation's weight where the child lies on the path to the chosen alternative, else 0. The root's row is the weight.</summary>
+    public ref double OnPath(int child) => ref rows.Row((3 * Children) + child);
+
+    /// <summary>a: weight times d log P / d W of a child.</summary>
+    public ref double Slope(int child) => ref rows.Row((4 * Children) + child);
+
+    /// <summary>f: what a node hands on to each child, times the child's p.</summary>
+    public ref double Flow(int node) => ref rows.Row((5 * Children) + node);
+
+    /// <summary>D = d W / d l of a node for given values of its children: entropy E (utility-scaled), log-sum L (unscaled).</summary>
+    public ref double Tilt(int node) => ref rows.Row((5 * Children) + plan.Nodes + node);
+
+    /// <summary>Weight times log P of the choice.</summary>
+    public ref double LogProbability => ref rows.Row((5 * Children) + (2 * plan.Nodes));
+
+    /// <summary>Weight times log P of the choice, lane by lane.</summary>
+    public ReadOnlySpan<double> LogProbabilities => rows.Lanes((5 * Children) + (2 * plan.Nodes), Lanes);
+
+    /// <summary>The strip's lanes of a stored column.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    public ref double Column(int stored) => ref Unsafe.Add(
+        ref MemoryMarshal.GetReference(plan.Design.Data.AsSpan()), Block.DataOffset + (stored * Block.Lanes) + FirstLane);
+
+    /// <summary>Takes over parameters.</summary>
+    public void Begin(ReadOnlySpan<double> parameters)
+    {
+        parameters.CopyTo(Theta);
+        for (var n = 0; n < plan.Nodes; n++) Dissimilarity[n] = plan.NodeParameter[n] is var q && q >= 0 ? Theta[q] : 1;
+    }
+
+    /// <summary>Loads a strip. Lanes with weight 0 count as if nothing were offered.</summary>
+    /// <param name="block">Its block.</param>
+    /// <param name="firstLane">First lane, a multiple of 8.</param>
+    /// <param name="lanes">Number of lanes, a multiple of 8.</param>
+    /// <param name="weights">Gives the lanes their weights.</param>
+    /// <returns>False where every lane has weight 0; then nothing else is loaded.</returns>
+    public bool Load(DesignBlock block, int firstLane, int lanes, in LaneWeights weights)
+    {
+        Block = block;
+        FirstLane = firstLane;
+        Lanes = lanes;
+        weights.Fill(plan.Design, block.FirstSituation + firstLane, block.FirstSituation + block.Situations, rows.Lanes(RootOnPath, lanes));
+        if (!FindLiveLanes()) return false;
+        for (var j = 0; j < plan.J; j++)
+        {
+            SumUtility(j);
+            ApplyMasks(j);
+        }
+
+        return true;
+    }
+
+    private int RootOnPath => (3 * Children) + plan.J + plan.Root;
+
+    private bool FindLiveLanes()
+    {
+        ref var weight = ref OnPath(plan.J + plan.Root);
+        var any = 0;
+        for (var lane = 0; lane < Lanes; lane += Tile)
+        {
+            var isZero = Vector512.Equals(Vector512.LoadUnsafe(ref weight, (nuint)lane), Vector512<double>.Zero);
+            var mask = (byte)~isZero.ExtractMostSignificantBits();
+            live[lane / Tile] = mask;
+            any |= mask;
+        }
+
+        return any != 0;
+    }
+
+    /// <summary>V = sum of coefficient times covariate, four columns at a time.</summary>
+    private void SumUtility(int alternative)
+    {
+        var leaf = plan.Leaves[alternative];
+        ref var value = ref Value(alternative);
+        var constant = 0.0;
+        foreach (var k in leaf.Constants) constant += Theta[k];
+        MemoryMarshal.CreateSpan(ref value, Lanes).Fill(constant);
+
+        var i = 0;
+        for (; i + 4 <= leaf.Stored.Length; i += 4)
+        {
+            ref var x0 = ref Column(leaf.FirstStored + i);
+            ref var x1 = ref Column(leaf.FirstStored + i + 1);
+            ref var x2 = ref Column(leaf.FirstStored + i + 2);
+            ref var x3 = ref Column(leaf.FirstStored + i + 3);
+            var b0 = Vector512.Create(Theta[leaf.Stored[i]]);
+            var b1 = Vector512.Create(Theta[leaf.Stored[i + 1]]);
+            var b2 = Vector512.Create(Theta[leaf.Stored[i + 2]]);
+            var b3 = Vector512.Create(Theta[leaf.Stored[i + 3]]);
+            for (nuint lane = 0; lane < (nuint)Lanes; lane += Tile)
+            {
+                var left = Vector512.FusedMultiplyAdd(b0, Vector512.LoadUnsafe(ref x0, lane), Vector512.LoadUnsafe(ref value, lane));
+                var right = b1 * Vector512.LoadUnsafe(ref x1, lane);
+                left = Vector512.FusedMultiplyAdd(b2, Vector512.LoadUnsafe(ref x2, lane), left);
+                right = Vector512.FusedMultiplyAdd(b3, Vector512.LoadUnsafe(ref x3, lane), right);
+                (left + right).StoreUnsafe(ref value, lane);
+            }
+        }
+
+        for (; i < leaf.Stored.Length; i++)
+        {
+            ref var x = ref Column(leaf.FirstStored + i);
+            var b = Vector512.Create(Theta[leaf.Stored[i]]);
+            for (nuint lane = 0; lane < (nuint)Lanes; lane += Tile)
+                Vector512.FusedMultiplyAdd(b, Vector512.LoadUnsafe(ref x, lane), Vector512.LoadUnsafe(ref value, lane)).StoreUnsafe(ref value, lane);
+        }
+    }
+
+    private void ApplyMasks(int alternative)
+    {
+        ref var value = ref Value(alternative);
+        ref var onPath = ref OnPath(alternative);
+        ref var weight = ref OnPath(plan.J + plan.Root);
+        var mask = Block.MaskOffset + (FirstLane / Tile * plan.J) + alternative;
+        var offered = plan.Design.Offered.AsSpan();
+        var chosen = plan.Design.ChosenMask.AsSpan();
+        var missing = Vector512.Create(NotOffered);
+        for (var lane = 0; lane < Lanes; lane += Tile, mask += plan.J)
+        {
+            var alive = live[lane / Tile];
+            var v = Vector512.LoadUnsafe(ref value, (nuint)lane);
+            Vector512.ConditionalSelect(LanesOf((byte)(offered[mask] & alive)), v, missing).StoreUnsafe(ref value, (nuint)lane);
+            var w = Vector512.LoadUnsafe(ref weight, (nuint)lane);
+            Vector512.ConditionalSelect(LanesOf((byte)(chosen[mask] & alive)), w, Vector512<double>.Zero).StoreUnsafe(ref onPath, (nuint)lane);
+        }
+    }
+
+    /// <summary>All bits of each lane whose bit is set.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    private static Vector512<double> LanesOf(byte mask)
+    {
+        var bits = Vector512.Create(1L, 2, 4, 8, 16, 32, 64, 128);
+        return Vector512.Equals(Vector512.Create((long)mask) & bits, bits).AsDouble();
+    }
+}

@@ -1,0 +1,104 @@
+using PanelChoice.Design;
+
+namespace PanelChoice.Likelihood;
+
+/// <summary>
+/// Everything one thread needs to evaluate strips: their memory, the recursion and the sums. One instance is a work space: it is not for use
+/// by several threads at once.
+/// </summary>
+internal sealed class StripWork
+{
+    private const int Tile = ChoiceDesign.TileLanes;
+    private readonly StripPlan plan;
+    private readonly Strip strip;
+    private readonly StripProbabilities probabilities;
+    private readonly StripGradient gradient;
+    private StripHessian? hessian;
+    private double value;
+
+    /// <summary>A work space for the plan's design.</summary>
+    public StripWork(StripPlan plan)
+    {
+        this.plan = plan;
+        strip = new Strip(plan);
+        probabilities = new StripProbabilities(plan, strip);
+        gradient = new StripGradient(plan, strip, probabilities);
+    }
+
+    private StripHessian Hessian => hessian ??= new StripHessian(plan, strip, probabilities);
+
+    /// <summary>Takes over parameters.</summary>
+    public void Begin(ReadOnlySpan<double> parameters) => strip.Begin(parameters);
+
+    /// <summary>Adds a block to the sums.</summary>
+    public void AddBlock(DesignBlock block, in LaneWeights weights, Derivatives derivatives)
+    {
+        for (var lane = 0; lane < block.Lanes; lane += strip.Lanes)
+        {
+            if (!Load(block, lane, block.Lanes, weights)) continue;
+            probabilities.Up();
+            foreach (var log in strip.LogProbabilities) value += log;
+            if (derivatives == Derivatives.None) continue;
+            probabilities.Down();
+            gradient.Add();
+            if (derivatives == Derivatives.Hessian) Hessian.Add();
+        }
+    }
+
+    /// <summary>Hands over the sums since the last time: value, then K first and K x K second derivatives as far as they were asked for.</summary>
+    public void Flush(Span<double> sums, Derivatives derivatives)
+    {
+        sums[0] += value;
+        value = 0;
+        if (derivatives >= Derivatives.Gradient) gradient.Flush(sums.Slice(1, plan.K));
+        if (derivatives == Derivatives.Hessian) Hessian.Flush(1, sums[(1 + plan.K)..]);
+    }
+
+    /// <summary>Writes log P of a block's situations.</summary>
+    public void LogProbabilities(DesignBlock block, Span<double> log)
+    {
+        for (var lane = 0; lane < block.Situations; lane += strip.Lanes)
+        {
+            Load(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
+            probabilities.Up();
+            var count = Math.Min(strip.Lanes, block.Situations - lane);
+            strip.LogProbabilities[..count].CopyTo(log[(block.FirstSituation + lane)..]);
+        }
+    }
+
+    /// <summary>Writes the derivatives of log P of a block's situations, situations x K.</summary>
+    public void Scores(DesignBlock block, Span<double> scores)
+    {
+        for (var lane = 0; lane < block.Situations; lane += strip.Lanes)
+        {
+            Load(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
+            probabilities.Up();
+            probabilities.Down();
+            var count = Math.Min(strip.Lanes, block.Situations - lane);
+            gradient.WriteLanes(scores.Slice((block.FirstSituation + lane) * plan.K, count * plan.K));
+        }
+    }
+
+    /// <summary>Adds minus the second derivatives of the log-likelihood of a range of situations of one block to a K x K matrix.</summary>
+    public void AddInformation(DesignBlock block, int firstSituation, int endSituation, Span<double> information)
+    {
+        var end = (endSituation - block.FirstSituation + Tile - 1) / Tile * Tile;
+        for (var lane = (firstSituation - block.FirstSituation) / Tile * Tile; lane < end; lane += strip.Lanes)
+        {
+            Load(block, lane, end, LaneWeights.One(firstSituation, endSituation));
+            probabilities.Up();
+            probabilities.Down();
+            Hessian.Add();
+        }
+
+        Hessian.Flush(-1, information);
+    }
+
+    /// <summary>Loads the next strip of the lanes up to an end, cut so that the strips are of about equal length.</summary>
+    private bool Load(DesignBlock block, int lane, int end, in LaneWeights weights)
+    {
+        var strips = (end - lane + plan.StripLanes - 1) / plan.StripLanes;
+        var tiles = ((end - lane) / Tile + strips - 1) / strips;
+        return strip.Load(block, lane, tiles * Tile, weights);
+    }
+}

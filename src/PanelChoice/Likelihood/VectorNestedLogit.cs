@@ -1,0 +1,119 @@
+using System.Collections.Concurrent;
+using System.Runtime.InteropServices;
+using System.Runtime.Intrinsics;
+using PanelChoice.Design;
+using PanelChoice.Numerics;
+using PanelChoice.Study;
+
+namespace PanelChoice.Likelihood;
+
+/// <summary>
+/// The kernel that <c>estimate</c> runs: eight situations at a time, one in each lane of a vector. The blocks of a design are cut into strips
+/// that stay in the first-level cache (<see cref="Strip"/>); a strip goes up and down the tree (<see cref="StripProbabilities"/>), and its
+/// derivatives are summed (<see cref="StripGradient"/>, <see cref="StripHessian"/>). Formulas: <see cref="TreeProbabilities"/> and
+/// <see cref="ScalarNestedLogit"/>, against which it is checked.
+/// <para>
+/// Chunks of blocks are fixed and their sums are added in chunk order, so the bits depend on the design and the width of the machine's vectors
+/// alone; the width is in the kernel's name. Where the machine has no 512-bit vectors, a tile of eight lanes is worked in halves or quarters.
+/// </para>
+/// </summary>
+internal sealed class VectorNestedLogit : IChoiceLikelihood
+{
+    /// <summary>Below this many situations handing work to another thread costs more than it brings.</summary>
+    internal const int SituationsForThreads = 50_000;
+
+    private readonly StripPlan plan;
+    private readonly int threads;
+    private readonly ConcurrentBag<StripWork> idle = [];
+
+    /// <summary>The kernel on a design.</summary>
+    /// <param name="design">The design.</param>
+    /// <param name="form">The form.</param>
+    /// <param name="threads">Threads, 1 or more; the result does not depend on it.</param>
+    public VectorNestedLogit(ChoiceDesign design, NestedLogitForm form, int threads)
+    {
+        Design = design;
+        plan = new StripPlan(design, form);
+        this.threads = design.Situations < SituationsForThreads ? 1 : threads;
+    }
+
+    public ChoiceDesign Design { get; }
+
+    public string Kernel { get; } =
+        Vector512.IsHardwareAccelerated ? "vector512" : Vector256.IsHardwareAccelerated ? "vector256" : "vector128";
+
+    private int K => plan.K;
+
+    public LikelihoodEvaluation Evaluate(ReadOnlySpan<double> parameters, ReadOnlySpan<double> personWeight, Derivatives derivatives)
+    {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Undefined(K, derivatives);
+        var weight = personWeight.ToArray();
+        var gradient = derivatives >= Derivatives.Gradient ? K : 0;
+        var hessian = derivatives == Derivatives.Hessian ? K * K : 0;
+        var length = 1 + gradient + hessian;
+        var parts = new double[FixedChunks.Count(Design.Blocks.Length) * length];
+        Run(Design.Blocks.Length, parameters, (work, chunk, first, end) =>
+        {
+            for (var b = first; b < end; b++) work.AddBlock(Design.Blocks[b], LaneWeights.OfPersons(weight), derivatives);
+            work.Flush(parts.AsSpan(chunk * length, length), derivatives);
+        });
+
+        var total = new double[length];
+        for (var i = 0; i < parts.Length; i++) total[i % length] += parts[i];
+        return new LikelihoodEvaluation(
+            total[0],
+            ImmutableCollectionsMarshal.AsImmutableArray(total[1..(1 + gradient)]),
+            ImmutableCollectionsMarshal.AsImmutableArray(total[(1 + gradient)..]));
+    }
+
+    public double[] Scores(ReadOnlySpan<double> parameters)
+    {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Situations * K);
+        var scores = new double[Design.Situations * K];
+        Run(Design.Blocks.Length, parameters, (work, _, first, end) =>
+        {
+            for (var b = first; b < end; b++) work.Scores(Design.Blocks[b], scores);
+        });
+        return scores;
+    }
+
+    public double[] LogProbabilities(ReadOnlySpan<double> parameters)
+    {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Situations);
+        var log = new double[Design.Situations];
+        Run(Design.Blocks.Length, parameters, (work, _, first, end) =>
+        {
+            for (var b = first; b < end; b++) work.LogProbabilities(Design.Blocks[b], log);
+        });
+        return log;
+    }
+
+    public double[] PersonInformation(ReadOnlySpan<double> parameters)
+    {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Persons * K * K);
+        var information = new double[Design.Persons * K * K];
+        Run(Design.Persons, parameters, (work, _, first, end) =>
+        {
+            for (var person = first; person < end; person++)
+            {
+                var from = Design.PersonStart[person];
+                work.AddInformation(
+                    Design.Blocks[Design.BlockOf[from]], from, Design.PersonStart[person + 1], information.AsSpan(person * K * K, K * K));
+            }
+        });
+        return information;
+    }
+
+    /// <summary>Runs the action for every chunk of items with a work space that holds the parameters.</summary>
+    private void Run(int items, ReadOnlySpan<double> parameters, Action<StripWork, int, int, int> action)
+    {
+        var theta = parameters.ToArray();
+        FixedChunks.Run(items, threads, (chunk, first, end) =>
+        {
+            if (!idle.TryTake(out var work)) work = new StripWork(plan);
+            work.Begin(theta);
+            action(work, chunk, first, end);
+            idle.Add(work);
+        });
+    }
+}
