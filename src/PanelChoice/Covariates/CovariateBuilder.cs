@@ -75,7 +75,7 @@ public static class CovariateBuilder
         var needsRule = terms.FirstOrDefault(t => TermDirection.StepsBack(t.Source) is not null || TermDirection.StepsAhead(t.Source) is not null);
         if (study.History.Previous is null && needsRule is not null)
             problems.Add(new Problem(
-                "history.previous_missing", study.File, $"term '{needsRule.Name}' looks at another occasion, and [history] does not say which is the previous one",
+                "study.no_previous", study.File, $"term '{needsRule.Name}' looks at another occasion, and [history] does not say which is the previous one",
                 "state previous = \"recorded\", \"step\", \"day\", \"workday\" or \"week\"")
             {
                 Line = needsRule.Line,
@@ -89,7 +89,7 @@ public static class CovariateBuilder
         if (pairs is null) return;
         var rule = study.History.Previous.ToString()!.ToLowerInvariant();
         var remedy = panel.Table.OccasionKind == OccasionKind.Date ? "use \"recorded\", \"day\", \"workday\" or \"week\"" : "use \"recorded\" or \"step\"";
-        problems.Add(new Problem("history.pairing", study.File, $"previous = \"{rule}\" {pairs}", remedy));
+        problems.Add(new Problem("study.previous_does_not_fit", study.File, $"previous = \"{rule}\" {pairs}", remedy));
     }
 
     private static Problem EmptySample(ChoicePanel panel, ImmutableArray<LeftOut> leftOut)

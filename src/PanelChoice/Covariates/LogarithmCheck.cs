@@ -1,3 +1,4 @@
+using System.Collections.Immutable;
 using System.Globalization;
 using PanelChoice.Panels;
 using PanelChoice.Study;
@@ -7,37 +8,40 @@ namespace PanelChoice.Covariates;
 /// <summary>Lists the cells whose logarithm a term needs and which do not have one.</summary>
 internal static class LogarithmCheck
 {
-    private const int Shown = 20;
+    private const string Id = "term.log_not_positive";
 
     /// <summary>Looks at every recorded occasion's offered rows of the alternatives that the term enters.</summary>
-    public static IEnumerable<Problem> Problems(ChoicePanel panel, IEnumerable<PlannedTerm> terms)
+    public static ImmutableArray<Problem> Problems(ChoicePanel panel, IEnumerable<PlannedTerm> terms)
     {
-        foreach (var column in terms.Where(t => t.Specification.Log).GroupBy(t => ((ColumnSource)t.Specification.Source).Column, StringComparer.Ordinal))
+        var problems = new ProblemList();
+        var cells = terms.Where(t => t.Specification.Log)
+            .Select(t => (t.Specification.Name, ((ColumnSource)t.Specification.Source).Column, t.Applies))
+            .SelectMany(t => Rows(panel, t.Column, t.Applies).Select(row => (Row: row, t.Column, t.Name)))
+            .OrderBy(c => c.Row).DistinctBy(c => (c.Row, c.Column));
+        foreach (var (row, column, name) in cells)
         {
-            var applies = column.SelectMany(t => t.Applies).ToHashSet();
-            var name = column.First().Specification.Name;
-            var values = panel.Table.Numbers[column.Key];
-            var wrong = new List<int>();
-            for (var o = 0; o < panel.Occasions; o++)
-                foreach (var j in applies)
-                {
-                    var cell = (o * panel.Alternatives.Length) + j;
-                    if (panel.Offered[cell] && panel.Row[cell] is var row && row >= 0 && values[row] <= 0) wrong.Add(row);
-                }
-
-            wrong.Sort();
-            foreach (var row in wrong.Take(Shown))
-                yield return At(panel, column.Key, $"term '{name}' takes a logarithm, which only a positive value has") with
-                {
-                    Row = panel.Table.SourceRow[row],
-                    Value = values[row].ToString("R", CultureInfo.InvariantCulture),
-                };
-            if (wrong.Count > Shown)
-                yield return At(panel, column.Key, string.Create(
-                    CultureInfo.InvariantCulture, $"{wrong.Count} offered values in all have no logarithm; the first {Shown} are listed"));
+            if (!problems.Count(Id)) continue;
+            problems.List(new Problem(
+                Id, panel.Table.File, $"term '{name}' takes a logarithm, which only a positive value has",
+                "correct the value, mark the row as not offered, or take transform = \"log\" away")
+            {
+                Row = panel.Table.SourceRow[row],
+                Column = column,
+                Value = panel.Table.Numbers[column][row].ToString("R", CultureInfo.InvariantCulture),
+            });
         }
+
+        return ProblemList.InRowOrder(problems);
     }
 
-    private static Problem At(ChoicePanel panel, string column, string what) =>
-        new("term.log_not_positive", panel.Table.File, what, "correct the value, mark the row as not offered, or take transform = \"log\" away") { Column = column };
+    private static IEnumerable<int> Rows(ChoicePanel panel, string column, ImmutableArray<int> applies)
+    {
+        var values = panel.Table.Numbers[column];
+        for (var o = 0; o < panel.Occasions; o++)
+            foreach (var j in applies)
+            {
+                var cell = (o * panel.Alternatives.Length) + j;
+                if (panel.Offered[cell] && panel.Row[cell] is var row && row >= 0 && values[row] <= 0) yield return row;
+            }
+    }
 }

@@ -47,7 +47,7 @@ internal sealed class TermPlanner(StudySpecification study, ChoicePanel panel, L
         var index = panel.Alternatives.IndexOf(name);
         if (index >= 0) return index;
         Report(
-            term, "term.unknown_alternative", $"term '{term.Name}' names '{name}' under {key}, which is no alternative of the data",
+            term, "study.unknown_alternative", $"term '{term.Name}' names '{name}' under {key}, which is no alternative of the data",
             ClosestName.Remedy(name, panel.Alternatives));
         return null;
     }

@@ -29,7 +29,7 @@ public class TermProblemTests
         var lines = string.Join('\n', Enumerable.Range(1, 25).Select(i => $"ann {i} bus minutes=0,2,3"));
         var problems = Built.Problems(Diary.Panel("bus ferry tram", lines), NoRule, Studies.Column("minutes") with { Log = true }).ToList();
         Assert.Equal(21, problems.Count);
-        Assert.Contains("25 offered values in all", problems[^1].Sentence, StringComparison.Ordinal);
+        Assert.Contains("25 problems of this kind in all", problems[^1].Sentence, StringComparison.Ordinal);
     }
 
     [Fact]
@@ -79,7 +79,7 @@ public class TermProblemTests
         var problems = Built.Problems(
             Diary.Panel("bus ferry tram", Ann), NoRule,
             Studies.Column("minutes") with { Alternatives = ["fery", "bus"], Line = 3 }, Studies.Column("ticket").Each("rickshaw")).ToList();
-        Assert.Equal(["term.unknown_alternative", "term.unknown_alternative"], problems.Select(p => p.Id));
+        Assert.Equal(["study.unknown_alternative", "study.unknown_alternative"], problems.Select(p => p.Id));
         Assert.Contains("did you mean 'ferry'?", problems[0].Sentence, StringComparison.Ordinal);
         Assert.Equal(3, problems[0].Line);
         Assert.Contains("bus, ferry, tram", problems[1].Sentence, StringComparison.Ordinal);
@@ -122,7 +122,7 @@ public class TermProblemTests
     public void A_term_that_looks_back_needs_a_stated_rule()
     {
         var problem = Assert.Single(Built.Problems(Diary.Panel("bus ferry tram", Ann), NoRule, Studies.Term("last", new LastChoiceSource(1))));
-        Assert.Equal("history.previous_missing", problem.Id);
+        Assert.Equal("study.no_previous", problem.Id);
     }
 
     [Theory]
@@ -133,7 +133,7 @@ public class TermProblemTests
     public void A_rule_that_does_not_fit_the_occasions_is_refused(PreviousRule rule, string lines, string says)
     {
         var problem = Assert.Single(Built.Problems(Diary.Panel("bus ferry tram", lines), Studies.History(rule), Studies.Term("last", new LastChoiceSource(1))));
-        Assert.Equal("history.pairing", problem.Id);
+        Assert.Equal("study.previous_does_not_fit", problem.Id);
         Assert.Contains(says, problem.Sentence, StringComparison.Ordinal);
     }
 
