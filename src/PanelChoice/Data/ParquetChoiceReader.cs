@@ -15,7 +15,7 @@ internal static class ParquetChoiceReader
         // Bytes without a logical type are text: some writers leave the mark out.
         var options = new ParquetOptions { TreatByteArrayAsString = true };
         if (!TryRead(() => ParquetDecoding.Wait(ParquetReader.CreateAsync(file, options, true)), name, columns, out var reader)) return;
-        var fields = reader.Schema.Fields;
+        if (!TryRead(() => reader.Schema.Fields, name, columns, out var fields)) return;
         var places = columns.Needed.Locate(name, [.. fields.Select(f => f.Name.Trim())], columns.Problems);
         foreach (var needed in columns.Needed.All)
             if (places.TryGetValue(needed.Name, out var place) && ParquetDecoding.DecoderOf(fields[place]) is null)
@@ -29,15 +29,16 @@ internal static class ParquetChoiceReader
     private static void ReadGroup(
         ParquetReader reader, int number, IReadOnlyList<Field> fields, ImmutableDictionary<string, int> places, string name, ChoiceColumns columns)
     {
-        var group = reader.OpenRowGroupReader(number);
+        if (!TryRead(() => reader.OpenRowGroupReader(number), name, columns, out var group)) return;
         var begin = columns.Rows;
-        var rows = (int)group.RowCount;
-        for (var i = 0; i < rows; i++) columns.BeginRow(begin + i + 1);
+        var rows = group.RowCount;
         // A column that is read in several ways is decoded once; the offered column stays the first.
         foreach (var readings in columns.Readings.GroupBy(r => r.Source, r => r.Into, StringComparer.Ordinal))
         {
             var field = fields[places[readings.Key]];
             if (!TryRead(() => ParquetDecoding.DecoderOf(field)!(group, (DataField)field), name, columns, out var put)) return;
+            // Rows begin once a column of them could be decoded, because a damaged file may claim any number of rows.
+            while (columns.Rows < begin + rows) columns.BeginRow(columns.Rows + 1);
             foreach (var into in readings)
                 for (var i = 0; i < rows; i++) put(into, columns.PlaceOf(begin + i), i);
         }

@@ -11,7 +11,7 @@ internal delegate void CellPutter(CellColumn into, CellPlace at, int index);
 /// <summary>Decodes one column of one row group.</summary>
 internal delegate CellPutter ColumnDecoder(ParquetRowGroupReader group, DataField field);
 
-/// <summary>How each type that Parquet stores becomes a cell; a column of any type is read as nullable, because an empty cell may stand anywhere.</summary>
+/// <summary>How each type that Parquet stores becomes a cell.</summary>
 internal static class ParquetDecoding
 {
     private static readonly Dictionary<Type, ColumnDecoder> Decoders = new()
@@ -43,22 +43,35 @@ internal static class ParquetDecoding
     /// <summary>Waits for the library, whose interface is asynchronous throughout while a file on disk is not.</summary>
     public static T Wait<T>(Task<T> task) => task.GetAwaiter().GetResult();
 
+    /// <summary>
+    /// A required column has to be read as such: the library takes the definition levels of one that is read as nullable from a buffer that
+    /// nobody filled, so that cells come out empty at random.
+    /// </summary>
     private static ColumnDecoder DecoderOf<T>(Action<CellColumn, CellPlace, T> put)
         where T : struct => (group, field) =>
     {
-        var values = new T?[group.RowCount];
-        group.ReadAsync(field, values.AsMemory()).AsTask().GetAwaiter().GetResult();
+        if (!field.IsNullable)
+        {
+            var all = new T[group.RowCount];
+            group.ReadAsync(field, all.AsMemory()).AsTask().GetAwaiter().GetResult();
+            return (into, at, index) => put(into, at, all[index]);
+        }
+
+        var some = new T?[group.RowCount];
+        group.ReadAsync(field, some.AsMemory()).AsTask().GetAwaiter().GetResult();
         return (into, at, index) =>
         {
-            if (values[index] is { } value) put(into, at, value);
+            if (some[index] is { } value) put(into, at, value);
             else into.Empty(at);
         };
     };
 
+    /// <summary>Whole numbers keep all their digits, because ids of twenty digits must not run together.</summary>
     private static void PutDecimal(CellColumn into, CellPlace at, decimal value)
     {
-        if (value == decimal.Truncate(value) && value is >= long.MinValue and <= long.MaxValue) into.Whole(at, (long)value);
-        else into.Number(at, (double)value);
+        if (value != decimal.Truncate(value)) into.Number(at, (double)value);
+        else if (value is >= long.MinValue and <= long.MaxValue) into.Whole(at, (long)value);
+        else PutText(into, at, value.ToString("F0", CultureInfo.InvariantCulture));
     }
 
     private static void PutText(CellColumn into, CellPlace at, ReadOnlySpan<char> text)
