@@ -39,7 +39,7 @@ public sealed record NullValue(double Value, int? Parameter, string? Withheld);
 /// <param name="Information">F x F: minus the Hessian of the weighted log-likelihood, row by row.</param>
 /// <param name="ClusterInformation">Makes its G parts, G x F x F, row by row; called only by estimators that need them.</param>
 /// <param name="ClusterBy">What a cluster is: "person", or the cluster column.</param>
-/// <param name="Clusters">Names of the G clusters.</param>
+/// <param name="Clusters">Names of the G clusters as sentences may give them: stand-ins where ids must not be passed on.</param>
 /// <param name="ClusterOccasions">Occasions in each cluster.</param>
 /// <param name="IsWeighted">Whether sampling weights other than 1 are in the log-likelihood.</param>
 /// <param name="MeanWeight">Mean weight over occasions; 1 when unweighted.</param>
@@ -70,13 +70,17 @@ public sealed record InferenceInput(
     /// <summary>What a fitted model offers to the covariance estimators.</summary>
     /// <param name="model">The fitted model.</param>
     /// <param name="refitter">Estimates it again.</param>
-    public static InferenceInput From(FittedModel model, IRefitter refitter)
+    /// <param name="clusterNames">Names of the design's clusters for use in sentences that are passed on; their own names when left out.</param>
+    /// <exception cref="ArgumentException">There are not as many names as clusters.</exception>
+    public static InferenceInput From(FittedModel model, IRefitter refitter, ImmutableArray<string> clusterNames = default)
     {
         ArgumentNullException.ThrowIfNull(model);
         ArgumentNullException.ThrowIfNull(refitter);
         var design = model.Design;
         var layout = model.Layout;
         var free = layout.Free;
+        if (!clusterNames.IsDefault && clusterNames.Length != design.Clusters.Length)
+            throw new ArgumentException("There are not as many names as clusters.", nameof(clusterNames));
         var clusterOf = design.PersonOf.Select(p => design.ClusterOf[p]).ToImmutableArray();
         var occasions = new int[design.Clusters.Length];
         foreach (var g in clusterOf) occasions[g]++;
@@ -93,7 +97,7 @@ public sealed record InferenceInput(
             [.. free.SelectMany(r => free.Select(c => -model.Hessian[(r * layout.Count) + c]))],
             () => ClusterParts(model),
             design.ClusterBy,
-            design.Clusters,
+            clusterNames.IsDefault ? design.Clusters : clusterNames,
             ImmutableCollectionsMarshal.AsImmutableArray(occasions),
             weighted,
             weighted ? design.PersonOf.Average(p => design.PersonWeight[p]) : 1,

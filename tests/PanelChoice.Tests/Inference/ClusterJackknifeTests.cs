@@ -128,6 +128,11 @@ public class ClusterJackknifeTests
         Assert.Null(result.Parameters[place].ByKind[CovarianceKind.Jackknife].StandardError);
         Assert.Equal(1, result.Jackknife!.Failures);
 
+        // Only the name that was handed over is in any sentence, so that ids can be masked.
+        var masked = StandardErrors.Compute(
+            InferenceInput.From(model, refitter, [.. Enumerable.Range(0, Persons).Select(g => $"c{g}")]), Settings(JackknifeKind.Auto), WorkContext.Quiet);
+        Assert.StartsWith("Without person c4 ", masked.Covariances[CovarianceKind.Jackknife].RefusedReasons[0], StringComparison.Ordinal);
+
         // The dummy is 0 for everybody else, so that the others' figures are those of a model without it.
         var f = design.Layout.Free.Length;
         var without = Small(25, Persons, 8).Pick([.. Enumerable.Range(0, Persons).Where(p => p != 4)]).Design();
