@@ -6,6 +6,9 @@ namespace PanelChoice.Tests.Reference;
 /// <summary>Compares figures with expected ones and tells all that disagree at once.</summary>
 internal sealed class Agreement(double relative)
 {
+    /// <summary>The same sum in another order.</summary>
+    public const double SameSum = 1e-12;
+
     /// <summary>A log-likelihood: half a unit of the 11th significant digit, whatever the first one is.</summary>
     public const double LogLikelihood = 5e-12;
 

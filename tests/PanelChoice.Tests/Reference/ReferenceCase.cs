@@ -1,6 +1,7 @@
 using System.Collections.Immutable;
 using System.Text.Json;
 using PanelChoice.Inference;
+using Xunit;
 
 namespace PanelChoice.Tests.Reference;
 
@@ -15,6 +16,17 @@ internal sealed class ReferenceCase
     ];
 
     private readonly JsonElement results;
+
+    /// <summary>The cases whose sample and results are described alike.</summary>
+    public static TheoryData<string> Described =>
+    [
+        "a_modechoice_conditional_logit", "a2_modechoice_weighted", "b_modechoice_nested", "c_union_pooled_dynamic_logit",
+        "c2_ohio_pooled_dynamic_logit", "e0_commuter_by_occasion_no_nests", "e_commuter_by_occasion", "e2_commuter_by_occasion_weighted",
+        "e3_commuter_three_levels",
+    ];
+
+    /// <summary>The kinds of covariance that have expected values.</summary>
+    public static IEnumerable<CovarianceKind> CovarianceKinds => Kinds.Select(k => k.Kind);
 
     private ReferenceCase(JsonElement root)
     {
