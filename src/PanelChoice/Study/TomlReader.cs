@@ -1,3 +1,4 @@
+using Tomlyn;
 using Tomlyn.Parsing;
 using Tomlyn.Syntax;
 
@@ -12,9 +13,22 @@ internal static class TomlReader
     /// <param name="firstError">Line of the first syntax error, from which on the tree is not to be trusted; null when there is none.</param>
     public static TomlTable Read(string text, StudyProblems problems, out int? firstError)
     {
-        var document = SyntaxParser.Parse(text, "study", false);
-        firstError = ReportSyntax(document, problems);
         var root = new TomlTable(new Place(1, 1)) { Origin = TableOrigin.Header };
+        DocumentSyntax document;
+        try
+        {
+            document = SyntaxParser.Parse(text, "study", false);
+        }
+        catch (TomlException e)
+        {
+            // The parser gives up on brackets nested beyond any use, and says where.
+            firstError = 1;
+            var place = new Place(Math.Max(1, e.Line ?? 1), Math.Max(1, e.Column ?? 1));
+            problems.Add("study.syntax", place, $"this is not TOML that can be read: {e.Message}", "nest lists and tables no deeper than the study file asks for");
+            return root;
+        }
+
+        firstError = ReportSyntax(document, problems);
         AddAll(document.KeyValues, root, "", problems, true);
         foreach (var table in document.Tables) AddTable(table, root, problems);
 

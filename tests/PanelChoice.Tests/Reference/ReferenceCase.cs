@@ -18,12 +18,14 @@ internal sealed class ReferenceCase
     private readonly JsonElement results;
 
     /// <summary>The cases whose sample and results are described alike.</summary>
-    public static TheoryData<string> Described =>
+    public static readonly string[] DescribedNames =
     [
         "a_modechoice_conditional_logit", "a2_modechoice_weighted", "b_modechoice_nested", "c_union_pooled_dynamic_logit",
         "c2_ohio_pooled_dynamic_logit", "e0_commuter_by_occasion_no_nests", "e_commuter_by_occasion", "e2_commuter_by_occasion_weighted",
         "e3_commuter_three_levels",
     ];
+
+    public static TheoryData<string> Described => [.. DescribedNames];
 
     /// <summary>The kinds of covariance that have expected values.</summary>
     public static IEnumerable<CovarianceKind> CovarianceKinds => Kinds.Select(k => k.Kind);

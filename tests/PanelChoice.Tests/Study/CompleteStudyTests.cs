@@ -173,7 +173,7 @@ public class CompleteStudyTests
     public void A_damaged_study_is_a_list_of_problems_or_a_study_but_never_an_exception(int seed)
     {
         const string Signs = "[]{}=\"'.,# \n\\10-+eTx\t";
-        for (var i = 0; i < 500; i++)
+        for (var i = 0; i < 250; i++)
         {
             var random = new PanelChoice.Numerics.CounterRandom(seed, "damaged study", i);
             var text = new StringBuilder(Crossing);

@@ -260,6 +260,15 @@ public class StudyProblemTests
             [("study.unknown_key", 1), ("study.syntax", 9), ("study.syntax", 12)], read.Problems.Select(p => (p.Id, p.Line!.Value)));
     }
 
+    [Theory]
+    [InlineData("[", "]")]
+    [InlineData("{a=", "}")]
+    public void Brackets_nested_without_end_are_a_problem_not_a_crash(string open, string close)
+    {
+        var deep = $"a = {string.Concat(Enumerable.Repeat(open, 5000))}1{string.Concat(Enumerable.Repeat(close, 5000))}\n";
+        Assert.Equal("study.syntax", Assert.Single(StudyText.Read(deep + Small).Problems).Id);
+    }
+
     [Fact]
     public void A_study_file_that_is_not_there_is_one_problem()
     {
