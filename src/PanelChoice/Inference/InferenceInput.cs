@@ -65,7 +65,7 @@ public sealed record InferenceInput(
     IRefitter Refitter)
 {
     /// <summary>Number of occasions.</summary>
-    public int Occasions { get; } = ClusterOccasions.Sum();
+    public int Occasions => ClusterOccasions.Sum();
 
     /// <summary>What a fitted model offers to the covariance estimators.</summary>
     /// <param name="model">The fitted model.</param>
