@@ -8,6 +8,7 @@ namespace PanelChoice.Diagnostics;
 /// <summary>All scores of one fitted design.</summary>
 /// <param name="Decays">The detector's scores, in the order of <see cref="PersonHistory.Decays"/>.</param>
 /// <param name="DecayCovariance">V of the decays, row by row.</param>
+/// <param name="RawDecayCovariance">A_mm of the decays: what V would be if the parameters were known; shows what the estimation effect is worth.</param>
 /// <param name="Lags">Lags 1, 2, ...</param>
 /// <param name="Alternatives">Running sum of each alternative.</param>
 /// <param name="Nests">Running sum of each nest, in the order of the layout's nests.</param>
@@ -16,7 +17,8 @@ namespace PanelChoice.Diagnostics;
 /// <param name="Date">The date score; null without a shared calendar.</param>
 /// <param name="FreeParameters">K.</param>
 internal sealed record ScoreBattery(
-    ImmutableArray<CorrectedScore> Decays, ImmutableArray<double> DecayCovariance, ImmutableArray<CorrectedScore> Lags,
+    ImmutableArray<CorrectedScore> Decays, ImmutableArray<double> DecayCovariance, ImmutableArray<double> RawDecayCovariance,
+    ImmutableArray<CorrectedScore> Lags,
     ImmutableArray<CorrectedScore> Alternatives, ImmutableArray<CorrectedScore> Nests, CorrectedScore LastPrediction,
     CorrectedScore InformationTrace, CorrectedScore? Date, int FreeParameters)
 {
@@ -58,6 +60,7 @@ internal sealed record ScoreBattery(
         return new ScoreBattery(
             [.. Enumerable.Range(0, size).Select(r => Score(MomentLayout.Decay(r)))],
             [.. covariance],
+            [.. sums.DecayCovariance],
             [.. Enumerable.Range(1, lags).Select(h => Score(MomentLayout.Lag(h)))],
             [.. Enumerable.Range(0, layout.Alternatives).Select(j => Score(layout.Alternative(j)))],
             [.. Enumerable.Range(0, layout.Nests).Select(m => Score(layout.Nest(m)))],
