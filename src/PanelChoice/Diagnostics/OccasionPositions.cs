@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using PanelChoice.Covariates;
 using PanelChoice.Data;
 using PanelChoice.Panels;
 using PanelChoice.Study;
@@ -10,13 +11,12 @@ namespace PanelChoice.Diagnostics;
 /// calendar rule; otherwise whole numbers are steps and dates are workdays (when no date is a Saturday or Sunday) or days. Where the typical
 /// distance is above one such unit the recorded order counts instead: decays by the calendar would then see no neighbours at all.
 /// </summary>
-/// <param name="Position">Position of each situation; 0 is the person's first recorded occasion (week: the first week of any date).</param>
+/// <param name="Position">Position of each situation; 0 or more, rising within a person's stream.</param>
 /// <param name="Stream">Only situations of one stream have a distance: the day of the week under the weekly rule, else 0.</param>
 /// <param name="Streams">Number of streams.</param>
 /// <param name="Unit">"recorded occasion", "step", "day", "workday" or "week".</param>
 internal sealed record OccasionPositions(ImmutableArray<long> Position, ImmutableArray<int> Stream, int Streams, string Unit)
 {
-    private const int WorkdaysInWeek = 5;
     private const int DaysInWeek = 7;
 
     /// <summary>Positions of the used occasions of a panel.</summary>
@@ -31,38 +31,31 @@ internal sealed record OccasionPositions(ImmutableArray<long> Position, Immutabl
         {
             case PreviousRule.Step: return Calendar(panel, used, "step", o => o);
             case PreviousRule.Day: return Calendar(panel, used, "day", o => o);
-            case PreviousRule.Workday: return Calendar(panel, used, "workday", Workdays(history.Holidays));
+            case PreviousRule.Workday: return Calendar(panel, used, "workday", new WorkingCalendar(history.Holidays).Number);
             case PreviousRule.Week: return Weeks(panel, used);
         }
 
         var dates = panel.Table.OccasionKind == OccasionKind.Date;
-        var workdays = dates && panel.Occasion.All(o => o % DaysInWeek < WorkdaysInWeek);
-        Func<long, long> map = workdays ? Workdays([]) : o => o;
+        var calendar = new WorkingCalendar([]);
+        var workdays = dates && panel.Occasion.All(calendar.IsWorkingDay);
+        Func<long, long> map = workdays ? calendar.Number : o => o;
         return panel.Table.OccasionKind == OccasionKind.None || MedianDistance(panel, map) > 1
             ? Recorded(panel, used)
             : Calendar(panel, used, !dates ? "step" : workdays ? "workday" : "day", map);
     }
 
-    /// <summary>Number of workdays before a day number (day 0, 1 January of year 1, was a Monday), holidays taken out.</summary>
-    internal static Func<long, long> Workdays(ImmutableArray<DateOnly> holidays)
-    {
-        var off = holidays.IsDefault
-            ? []
-            : holidays.Select(d => (long)d.DayNumber).Where(d => d % DaysInWeek < WorkdaysInWeek).Distinct().Order().ToArray();
-        return day =>
-        {
-            var found = Array.BinarySearch(off, day);
-            return (day / DaysInWeek * WorkdaysInWeek) + Math.Min(day % DaysInWeek, WorkdaysInWeek) - (found < 0 ? ~found : found);
-        };
-    }
-
     private static OccasionPositions Calendar(ChoicePanel panel, ImmutableArray<int> used, string unit, Func<long, long> map)
     {
-        var position = used.Select(o => map(panel.Occasion[o]) - map(panel.Occasion[panel.PersonStart[panel.PersonOf[o]]])).ToImmutableArray();
-        // Two occasions less than a step apart have no distance on this calendar; then only the order is left.
-        for (var t = 1; t < used.Length; t++)
-            if (panel.PersonOf[used[t]] == panel.PersonOf[used[t - 1]] && position[t] <= position[t - 1]) return Recorded(panel, used);
-        return new OccasionPositions(position, [.. new int[used.Length]], 1, unit);
+        var position = new long[used.Length];
+        var first = 0L;
+        for (var t = 0; t < used.Length; t++)
+        {
+            var at = map(panel.Occasion[used[t]]);
+            if (t == 0 || panel.PersonOf[used[t]] != panel.PersonOf[used[t - 1]]) first = at;
+            position[t] = at - first;
+        }
+
+        return new OccasionPositions([.. position], [.. new int[used.Length]], 1, unit);
     }
 
     private static OccasionPositions Weeks(ChoicePanel panel, ImmutableArray<int> used) => new(

@@ -85,8 +85,9 @@ internal sealed record SimulatedCommutes(StudySpecification Study, CovariateSet 
                 "same as last time", null, all, [.. used.SelectMany(o => Enumerable.Range(0, J).Select(j => chosen[o - 1] == j ? 1.0 : 0))],
                 false, CovariateRole.PastChoice, null, null, 4));
         double[] truth = [.. Constants.Skip(1), -0.6, -0.8, 0.5, .. lastChoice ? new[] { process.Habit } : [], 0.6, 0.7];
+        var study = StudyOf(lastChoice);
         return new SimulatedCommutes(
-            StudyOf(lastChoice), new CovariateSet(panel, used, [.. covariates], [], [], []), SyntheticPanel.TreeOf(Names, Nests), [.. truth]);
+            study, new CovariateSet(panel, used, [.. covariates], [], [], []), NestTreeBuilder.Build(study, Names).Value!, [.. truth]);
     }
 
     private static double[][] DateShocks(int days, CommuteProcess process, CounterRandom random)
