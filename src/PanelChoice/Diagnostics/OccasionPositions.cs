@@ -1,5 +1,4 @@
 using System.Collections.Immutable;
-using PanelChoice.Covariates;
 using PanelChoice.Data;
 using PanelChoice.Panels;
 using PanelChoice.Study;

@@ -1,8 +1,7 @@
 using System.Collections.Immutable;
-using PanelChoice.Covariates;
-using PanelChoice.Design;
 using PanelChoice.Diagnostics;
 using PanelChoice.Estimation;
+using PanelChoice.Likelihood;
 using PanelChoice.Numerics;
 using PanelChoice.Study;
 using PanelChoice.Tests.Support;
@@ -144,7 +143,7 @@ public class IndependenceBatteryTests
         var cost = made.Covariates.Covariates[4];
         var doubled = made with { Covariates = made.Covariates with { Covariates = made.Covariates.Covariates.Insert(5, cost with { Term = "cost again" }) } };
         var design = doubled.Design;
-        var likelihood = Likelihood.LikelihoodKernel.Create(design, NestedLogitForm.UtilityScaled, 1);
+        var likelihood = LikelihoodKernel.Create(design, NestedLogitForm.UtilityScaled, 1);
         var model = Model(made) with { Likelihood = likelihood, Parameters = made.Truth.Insert(5, 0) };
         var result = IndependenceBattery.Run(doubled.Study, doubled.Covariates, model, WorkContext.Quiet);
         Assert.Equal(Verdict.NotApplicable, result.Verdict);
