@@ -57,8 +57,7 @@ internal sealed record Curvature(double Condition, ImmutableArray<int> Weakest, 
         IChoiceLikelihood likelihood, MinusLogLikelihood function, double[] direction, double[] parameters, double[] personWeight)
     {
         var design = likelihood.Design;
-        var v = function.Direction(direction);
-        for (var k = design.Layout.Coefficients; k < v.Length; k++) v[k] *= parameters[k];
+        var v = function.Direction(function.Coordinates(parameters), direction);
         var scores = likelihood.Scores(parameters);
         double along = 0, apart = 0;
         for (var s = 0; s < design.Situations; s++)

@@ -16,7 +16,7 @@ internal static class LinearIndex
         var parts = new double[FixedChunks.Count(design.Blocks.Length)];
         FixedChunks.Run(design.Blocks.Length, threads, (chunk, first, end) =>
         {
-            Walk(design, v, first, end, null, (_, index, offered) =>
+            Walk(design, v, first, end, null, (_, index, _, offered) =>
             {
                 double sum = 0, squares = 0;
                 var count = 0;
@@ -48,7 +48,7 @@ internal static class LinearIndex
     /// <param name="parameters">K parameters, of which only the dissimilarities matter.</param>
     /// <param name="v">A direction of the coefficients.</param>
     /// <param name="personWeight">Weight of each person.</param>
-    /// <param name="tolerance">Slopes this small, as a share of the largest index of the situation, are rounding.</param>
+    /// <param name="tolerance">Slopes this small, as a share of the largest term of the situation, are rounding.</param>
     public static bool NeverGoesAgainstChoices(
         ChoiceDesign design, NestedLogitForm form, ReadOnlySpan<double> parameters, double[] v, double[] personWeight, double tolerance)
     {
@@ -63,14 +63,9 @@ internal static class LinearIndex
         var value = new double[J + nodes.Length];
         var largest = new double[nodes.Length];
 
-        return Walk(design, v, 0, design.Blocks.Length, personWeight, (situation, index, offered) =>
+        return Walk(design, v, 0, design.Blocks.Length, personWeight, (situation, index, size, offered) =>
         {
-            var size = 0.0;
-            for (var j = 0; j < J; j++)
-            {
-                value[j] = offered[j] ? index[j] : double.NegativeInfinity;
-                if (offered[j]) size = Math.Max(size, Math.Abs(index[j]));
-            }
+            for (var j = 0; j < J; j++) value[j] = offered[j] ? index[j] : double.NegativeInfinity;
 
             for (var n = 0; n < nodes.Length; n++)
             {
@@ -85,8 +80,8 @@ internal static class LinearIndex
         });
     }
 
-    /// <summary>Calls back with each situation's index and availability until the callback says false.</summary>
-    private static bool Walk(ChoiceDesign design, double[] v, int firstBlock, int endBlock, double[]? personWeight, Func<int, double[], bool[], bool> each)
+    /// <summary>Calls back with each situation's index, its largest single term and availability until the callback says false.</summary>
+    private static bool Walk(ChoiceDesign design, double[] v, int firstBlock, int endBlock, double[]? personWeight, Func<int, double[], double, bool[], bool> each)
     {
         var J = design.Alternatives;
         var used = design.Columns.Where(c => v[c.Parameter] != 0).ToArray();
@@ -102,9 +97,16 @@ internal static class LinearIndex
                 var mask = block.MaskOffset + (lane / ChoiceDesign.TileLanes * J);
                 for (var j = 0; j < J; j++) offered[j] = (design.Offered[mask + j] >> (lane % ChoiceDesign.TileLanes) & 1) != 0;
                 Array.Clear(index);
+                var size = 0.0;
                 foreach (var c in used)
-                    index[c.Alternative] += v[c.Parameter] * (c.Storage < 0 ? 1 : design.Data[block.DataOffset + (c.Storage * block.Lanes) + lane]);
-                if (!each(situation, index, offered)) return false;
+                {
+                    if (!offered[c.Alternative]) continue;
+                    var term = v[c.Parameter] * (c.Storage < 0 ? 1 : design.Data[block.DataOffset + (c.Storage * block.Lanes) + lane]);
+                    index[c.Alternative] += term;
+                    size = Math.Max(size, Math.Abs(term));
+                }
+
+                if (!each(situation, index, size, offered)) return false;
             }
         }
 

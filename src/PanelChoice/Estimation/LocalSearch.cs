@@ -84,8 +84,9 @@ internal sealed class LocalSearch(
             for (var i = 0; i < active.Length; i++)
             {
                 if (active[i] < coefficients) continue;
-                var runsDown = at.Point[i] < Math.Log(NearZero) && at.At.Gradient[i] > 0;
-                var runsUp = at.Point[i] > Math.Log(VeryLarge) && at.At.Gradient[i] < 0;
+                var l = MinusLogLikelihood.Dissimilarity(at.Point[i]);
+                var runsDown = l < NearZero && at.At.Gradient[i] > 0;
+                var runsUp = l > VeryLarge && at.At.Gradient[i] < 0;
                 if (!runsDown && !runsUp) continue;
                 (kind, about) = (SearchEndKind.Boundary, [active[i]]);
                 return true;
@@ -162,7 +163,7 @@ internal sealed class LocalSearch(
 
         if (longest < 0.3) return null;
         for (var i = 0; i < step.Length; i++) step[i] = Math.Abs(step[i]) < 1e-3 * longest ? 0 : step[i] / longest;
-        var v = function.Direction(step);
+        var v = function.Direction(at.Point, step);
         return LinearIndex.NeverGoesAgainstChoices(likelihood.Design, form, function.Parameters(at.Point), v, personWeight, DirectionRounding) ? v : null;
     }
 }

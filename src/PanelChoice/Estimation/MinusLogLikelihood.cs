@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using MathNet.Numerics;
 using PanelChoice.Design;
 using PanelChoice.Likelihood;
 using PanelChoice.Optimisation;
@@ -7,8 +8,9 @@ namespace PanelChoice.Estimation;
 
 /// <summary>
 /// Minus the log-likelihood, the only place that turns its sign, as a function of the coordinates the optimiser works in: a coefficient
-/// times the scale of its column, and the logarithm of a dissimilarity. It is divided by the mean weight of a situation, so that the Newton
-/// decrement means standard errors whatever the unit of the weights.
+/// times the scale of its column, and log(exp(l) - 1) for a dissimilarity l. That is log l for small l, where the likelihood answers to
+/// ratios, and l itself for large l, where constants follow l in proportion and a logarithm would bend their common path. The value is divided by the
+/// mean weight of a situation, so that the Newton decrement means standard errors whatever the unit of the weights.
 /// </summary>
 internal sealed class MinusLogLikelihood
 {
@@ -61,7 +63,7 @@ internal sealed class MinusLogLikelihood
         for (var i = 0; i < x.Length; i++)
         {
             var k = Active[i];
-            x[i] = IsDissimilarity(k) ? Math.Log(parameters[k]) : parameters[k] * scale[k];
+            x[i] = IsDissimilarity(k) ? Coordinate(parameters[k]) : parameters[k] * scale[k];
         }
 
         return x;
@@ -74,19 +76,28 @@ internal sealed class MinusLogLikelihood
         for (var i = 0; i < x.Length; i++)
         {
             var k = Active[i];
-            parameters[k] = IsDissimilarity(k) ? Math.Exp(x[i]) : x[i] / scale[k];
+            parameters[k] = IsDissimilarity(k) ? Dissimilarity(x[i]) : x[i] / scale[k];
         }
 
         return parameters;
     }
 
-    /// <summary>A direction in coordinates as a direction of the K parameters (of their logarithms where they are dissimilarities).</summary>
-    public double[] Direction(ReadOnlySpan<double> step)
+    /// <summary>A direction in coordinates as a direction of the K parameters.</summary>
+    /// <param name="x">The point.</param>
+    /// <param name="step">The direction there, in coordinates.</param>
+    public double[] Direction(ReadOnlySpan<double> x, ReadOnlySpan<double> step)
     {
+        var parameters = Parameters(x);
         var direction = new double[all.Length];
-        for (var i = 0; i < step.Length; i++) direction[Active[i]] = IsDissimilarity(Active[i]) ? step[i] : step[i] / scale[Active[i]];
+        for (var i = 0; i < step.Length; i++) direction[Active[i]] = step[i] * Slope(i, parameters);
         return direction;
     }
+
+    /// <summary>The coordinate of a dissimilarity: log(exp(l) - 1), written so that neither end overflows.</summary>
+    public static double Coordinate(double l) => l > 30 ? l + SpecialFunctions.Log1p(-Math.Exp(-l)) : Math.Log(SpecialFunctions.Expm1(l));
+
+    /// <summary>The dissimilarity at a coordinate: log(1 + exp(x)).</summary>
+    public static double Dissimilarity(double x) => x > 30 ? x + SpecialFunctions.Log1p(Math.Exp(-x)) : SpecialFunctions.Log1p(Math.Exp(x));
 
     /// <summary>The log-likelihood that belongs to a value of this function.</summary>
     public double LogLikelihood(double value) => -value * unit;
@@ -102,18 +113,19 @@ internal sealed class MinusLogLikelihood
         var hessian = new double[n * n];
         for (var i = 0; i < n; i++)
         {
-            // Derivative of the parameter by its coordinate; for log l its second derivative is l as well.
             var di = Slope(i, parameters);
             gradient[i] = -at.Gradient[Active[i]] * di / unit;
             for (var j = 0; j < n; j++)
                 hessian[(i * n) + j] = -at.Hessian[(Active[i] * K) + Active[j]] * di * Slope(j, parameters) / unit;
-            if (IsDissimilarity(Active[i])) hessian[(i * n) + i] += gradient[i];
+            // The second derivative of l by its coordinate is s (1 - s), s its slope.
+            if (IsDissimilarity(Active[i])) hessian[(i * n) + i] += gradient[i] * (1 - di);
         }
 
         return new SmoothValue(-at.Value / unit, gradient, hessian);
     }
 
-    private double Slope(int i, double[] parameters) => IsDissimilarity(Active[i]) ? parameters[Active[i]] : 1 / scale[Active[i]];
+    /// <summary>Derivative of a parameter by its coordinate.</summary>
+    private double Slope(int i, double[] parameters) => IsDissimilarity(Active[i]) ? -SpecialFunctions.Expm1(-parameters[Active[i]]) : 1 / scale[Active[i]];
 
     private bool IsDissimilarity(int k) => k >= likelihood.Design.Layout.Coefficients;
 }
