@@ -278,6 +278,21 @@ public class StudyProblemTests
     }
 
     [Fact]
+    public void A_study_file_that_another_program_holds_is_a_problem_with_the_reason()
+    {
+        var path = Path.GetTempFileName();
+        try
+        {
+            using var held = new FileStream(path, FileMode.Open, FileAccess.ReadWrite, FileShare.None);
+            Assert.Equal("study.unreadable", Assert.Single(StudyFileReader.Read(path).Problems).Id);
+        }
+        finally
+        {
+            File.Delete(path);
+        }
+    }
+
+    [Fact]
     public void A_folder_is_not_a_study_file()
     {
         var problem = Assert.Single(StudyFileReader.Read(Path.GetTempPath()).Problems);
