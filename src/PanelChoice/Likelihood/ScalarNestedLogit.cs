@@ -175,17 +175,20 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
 
         public void Load(int situation)
         {
-            for (var c = 0; c < J; c++)
+            var block = design.Blocks[design.BlockOf[situation]];
+            var lane = situation - block.FirstSituation;
+            var (tile, bit) = Math.DivRem(lane, ChoiceDesign.TileLanes);
+            for (var j = 0; j < J; j++)
             {
-                offered[c] = design.IsOffered(situation, c);
-                utility[c] = 0;
-                Array.Clear(y[c]);
+                offered[j] = (design.Offered[block.MaskOffset + (tile * J) + j] >> bit & 1) != 0;
+                utility[j] = 0;
+                Array.Clear(y[j]);
             }
 
             foreach (var column in design.Columns)
             {
                 if (!offered[column.Alternative]) continue;
-                var x = design.Value(situation, column);
+                var x = column.Storage < 0 ? 1 : design.Data[block.DataOffset + (column.Storage * block.Lanes) + lane];
                 y[column.Alternative][column.Parameter] = x;
                 utility[column.Alternative] += theta[column.Parameter] * x;
             }

@@ -21,17 +21,18 @@ internal sealed class Strip
     private const int Tile = ChoiceDesign.TileLanes;
     private readonly StripPlan plan;
     private readonly StripRows rows;
-    private readonly byte[] live;
 
     /// <summary>A work space for the plan's design.</summary>
     public Strip(StripPlan plan)
     {
         this.plan = plan;
         rows = new StripRows(RowCount(plan.J, plan.Nodes), plan.StripLanes);
-        live = new byte[plan.StripLanes / Tile];
         Theta = new double[plan.K];
         Dissimilarity = new double[plan.Nodes];
     }
+
+    /// <summary>Distance between the rows of two child numbers that follow each other.</summary>
+    public int Stride => rows.Stride;
 
     /// <summary>The parameters.</summary>
     public double[] Theta { get; }
@@ -51,7 +52,7 @@ internal sealed class Strip
     private int Children => plan.J + plan.Nodes;
 
     /// <summary>Rows that a strip needs for J alternatives and the given number of inner nodes.</summary>
-    public static int RowCount(int alternatives, int nodes) => (5 * (alternatives + nodes)) + (2 * nodes) + 1;
+    public static int RowCount(int alternatives, int nodes) => (5 * (alternatives + nodes)) + (2 * nodes) + 4;
 
     /// <summary>W of a child; V for an alternative.</summary>
     public ref double Value(int child) => ref rows.Row(child);
@@ -80,6 +81,15 @@ internal sealed class Strip
     /// <summary>Weight times log P of the choice, lane by lane.</summary>
     public ReadOnlySpan<double> LogProbabilities => rows.Lanes((5 * Children) + (2 * plan.Nodes), Lanes);
 
+    /// <summary>For the node at work: the largest value among its children.</summary>
+    public ref double Largest => ref rows.Row((5 * Children) + (2 * plan.Nodes) + 1);
+
+    /// <summary>For the node at work: the sum of its children's exponentials.</summary>
+    public ref double Sum => ref rows.Row((5 * Children) + (2 * plan.Nodes) + 2);
+
+    /// <summary>For the node at work: the logarithm of that sum.</summary>
+    public ref double LogOfSum => ref rows.Row((5 * Children) + (2 * plan.Nodes) + 3);
+
     /// <summary>The strip's lanes of a stored column.</summary>
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public ref double Column(int stored) => ref Unsafe.Add(
@@ -103,33 +113,15 @@ internal sealed class Strip
         Block = block;
         FirstLane = firstLane;
         Lanes = lanes;
-        weights.Fill(plan.Design, block.FirstSituation + firstLane, block.FirstSituation + block.Situations, rows.Lanes(RootOnPath, lanes));
-        if (!FindLiveLanes()) return false;
-        for (var j = 0; j < plan.J; j++)
-        {
-            SumUtility(j);
-            ApplyMasks(j);
-        }
-
+        var weight = rows.Lanes(RootOnPath, lanes);
+        weights.Fill(plan.Design, block.FirstSituation + firstLane, block.FirstSituation + block.Situations, weight);
+        if (!weight.ContainsAnyExcept(0.0)) return false;
+        for (var j = 0; j < plan.J; j++) SumUtility(j);
+        ApplyMasks();
         return true;
     }
 
     private int RootOnPath => (3 * Children) + plan.J + plan.Root;
-
-    private bool FindLiveLanes()
-    {
-        ref var weight = ref OnPath(plan.J + plan.Root);
-        var any = 0;
-        for (var lane = 0; lane < Lanes; lane += Tile)
-        {
-            var isZero = Vector512.Equals(Vector512.LoadUnsafe(ref weight, (nuint)lane), Vector512<double>.Zero);
-            var mask = (byte)~isZero.ExtractMostSignificantBits();
-            live[lane / Tile] = mask;
-            any |= mask;
-        }
-
-        return any != 0;
-    }
 
     /// <summary>V = sum of coefficient times covariate, four columns at a time.</summary>
     private void SumUtility(int alternative)
@@ -170,30 +162,40 @@ internal sealed class Strip
         }
     }
 
-    private void ApplyMasks(int alternative)
+    /// <summary>Values of what is not offered, and weights of what is chosen.</summary>
+    private void ApplyMasks()
     {
-        ref var value = ref Value(alternative);
-        ref var onPath = ref OnPath(alternative);
-        ref var weight = ref OnPath(plan.J + plan.Root);
-        var mask = Block.MaskOffset + (FirstLane / Tile * plan.J) + alternative;
-        var offered = plan.Design.Offered.AsSpan();
-        var chosen = plan.Design.ChosenMask.AsSpan();
+        var J = plan.J;
+        var stride = (nuint)Stride;
+        var first = Block.MaskOffset + (FirstLane / Tile * J);
+        var offered = plan.Design.Offered.AsSpan(first, Lanes / Tile * J);
+        var chosen = plan.Design.ChosenMask.AsSpan(first, Lanes / Tile * J);
+        ref var weight = ref OnPath(J + plan.Root);
+        ref var value = ref Value(0);
+        ref var onPath = ref OnPath(0);
         var missing = Vector512.Create(NotOffered);
-        for (var lane = 0; lane < Lanes; lane += Tile, mask += plan.J)
+        for (nuint lane = 0; lane < (nuint)Lanes; lane += Tile)
         {
-            var alive = live[lane / Tile];
-            var v = Vector512.LoadUnsafe(ref value, (nuint)lane);
-            Vector512.ConditionalSelect(LanesOf((byte)(offered[mask] & alive)), v, missing).StoreUnsafe(ref value, (nuint)lane);
-            var w = Vector512.LoadUnsafe(ref weight, (nuint)lane);
-            Vector512.ConditionalSelect(LanesOf((byte)(chosen[mask] & alive)), w, Vector512<double>.Zero).StoreUnsafe(ref onPath, (nuint)lane);
+            var w = Vector512.LoadUnsafe(ref weight, lane);
+            var live = ~Vector512.Equals(w, Vector512<double>.Zero).ExtractMostSignificantBits();
+            var place = lane;
+            for (var j = 0; j < J; j++, place += stride)
+            {
+                var v = Vector512.LoadUnsafe(ref value, place);
+                Vector512.ConditionalSelect(LanesOf(offered[j] & live), v, missing).StoreUnsafe(ref value, place);
+                Vector512.ConditionalSelect(LanesOf(chosen[j] & live), w, Vector512<double>.Zero).StoreUnsafe(ref onPath, place);
+            }
+
+            offered = offered[J..];
+            chosen = chosen[J..];
         }
     }
 
     /// <summary>All bits of each lane whose bit is set.</summary>
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private static Vector512<double> LanesOf(byte mask)
+    private static Vector512<double> LanesOf(ulong mask)
     {
-        var bits = Vector512.Create(1L, 2, 4, 8, 16, 32, 64, 128);
-        return Vector512.Equals(Vector512.Create((long)mask) & bits, bits).AsDouble();
+        var bits = Vector512.Create(1UL, 2, 4, 8, 16, 32, 64, 128);
+        return Vector512.Equals(Vector512.Create(mask) & bits, bits).AsDouble();
     }
 }

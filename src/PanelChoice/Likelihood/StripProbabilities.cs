@@ -1,4 +1,5 @@
 using System.Runtime.CompilerServices;
+using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using PanelChoice.Design;
 
@@ -17,17 +18,18 @@ internal sealed class StripProbabilities
 {
     private const int Tile = ChoiceDesign.TileLanes;
 
-    /// <summary>exp(-700) is about 1e-304: what lies lower counts as 0. The library's exp takes a path twenty times slower from about -708 on.</summary>
-    private const double LowestExponent = -700;
-
     private readonly StripPlan plan;
     private readonly Strip strip;
+
+    /// <summary>Place of each node's children: their distance from the first child number's lane in any group of rows.</summary>
+    private readonly nuint[][] places;
 
     /// <summary>The recursion on a strip.</summary>
     public StripProbabilities(StripPlan plan, Strip strip)
     {
         this.plan = plan;
         this.strip = strip;
+        places = [.. plan.Children.Select(children => children.Select(c => (nuint)(c * strip.Stride)).ToArray())];
         PathSum = new Vector512<double>[plan.Nodes];
     }
 
@@ -37,19 +39,18 @@ internal sealed class StripProbabilities
     /// <summary>Values, probabilities, tilts and log P.</summary>
     public void Up()
     {
-        System.Runtime.InteropServices.MemoryMarshal.CreateSpan(ref strip.LogProbability, strip.Lanes).Clear();
+        MemoryMarshal.CreateSpan(ref strip.LogProbability, strip.Lanes).Clear();
         for (var n = 0; n < plan.Nodes; n++)
         {
-            if (plan.Children[n].Length == 2) UpPair(n);
-            else UpMany(n);
+            PathSum[n] = plan.Children[n].Length == 2 ? UpPair(n) : UpMany(n);
+            SetValue(n);
         }
     }
 
     /// <summary>First derivatives by the values of all children, and the nodes' flows.</summary>
     public void Down()
     {
-        var root = plan.J + plan.Root;
-        ref var weight = ref strip.OnPath(root);
+        ref var weight = ref strip.OnPath(plan.J + plan.Root);
         ref var flow = ref strip.Flow(plan.Root);
         for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile) (-Vector512.LoadUnsafe(ref weight, lane)).StoreUnsafe(ref flow, lane);
         for (var n = plan.Root; n >= 0; n--)
@@ -60,120 +61,152 @@ internal sealed class StripProbabilities
             }
     }
 
-    /// <summary>s of a node.</summary>
-    public double InnerScale(int node) => plan.IsScaled ? 1 / strip.Dissimilarity[node] : 1;
+    private double InnerScale(int node) => plan.IsScaled ? 1 / strip.Dissimilarity[node] : 1;
 
-    private void UpMany(int n)
+    private Vector512<double> UpMany(int n)
     {
-        var children = plan.Children[n];
+        var lanes = (nuint)strip.Lanes;
+        ref var largest = ref strip.Largest;
+        ref var sum = ref strip.Sum;
+        ref var value = ref strip.Value(0);
+        ref var t = ref strip.LogConditional(0);
+        ref var p = ref strip.Conditional(0);
+        ReadOnlySpan<nuint> children = places[n];
         var scale = Vector512.Create(InnerScale(n));
-        var sumOfPath = Vector512<double>.Zero;
-        ref var onPathHere = ref strip.OnPath(plan.J + n);
-        for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
+        for (nuint lane = 0; lane < lanes; lane += Tile)
         {
-            var max = Vector512.LoadUnsafe(ref strip.Value(children[0]), lane);
-            for (var i = 1; i < children.Length; i++) max = Vector512.MaxNative(max, Vector512.LoadUnsafe(ref strip.Value(children[i]), lane));
+            var max = Vector512.LoadUnsafe(ref value, children[0] + lane);
+            foreach (var c in children) max = Vector512.MaxNative(max, Vector512.LoadUnsafe(ref value, c + lane));
+            max.StoreUnsafe(ref largest, lane);
+            foreach (var c in children) ((Vector512.LoadUnsafe(ref value, c + lane) - max) * scale).StoreUnsafe(ref t, c + lane);
+        }
 
-            var sum = Vector512<double>.Zero;
-            foreach (var c in children)
-            {
-                var distance = (Vector512.LoadUnsafe(ref strip.Value(c), lane) - max) * scale;
-                var power = Exp(distance);
-                distance.StoreUnsafe(ref strip.LogConditional(c), lane);
-                power.StoreUnsafe(ref strip.Conditional(c), lane);
-                sum += power;
-            }
+        foreach (var c in children) VectorFunctions.Exp(ref Unsafe.Add(ref t, c), ref Unsafe.Add(ref p, c), lanes);
+        for (nuint lane = 0; lane < lanes; lane += Tile)
+        {
+            var total = Vector512<double>.Zero;
+            foreach (var c in children) total += Vector512.LoadUnsafe(ref p, c + lane);
+            total.StoreUnsafe(ref sum, lane);
+        }
 
-            var log = Vector512.Log(sum);
-            var inverse = Vector512<double>.One / sum;
+        ref var log = ref strip.LogOfSum;
+        VectorFunctions.Log(ref sum, ref log, lanes);
+
+        var sumOfPath = Vector512<double>.Zero;
+        var isInner = n != plan.Root;
+        ref var o = ref strip.OnPath(0);
+        ref var oOfNode = ref strip.OnPath(plan.J + n);
+        ref var tilt = ref strip.Tilt(n);
+        ref var logProbability = ref strip.LogProbability;
+        for (nuint lane = 0; lane < lanes; lane += Tile)
+        {
+            var logHere = Vector512.LoadUnsafe(ref log, lane);
+            var inverse = Vector512<double>.One / Vector512.LoadUnsafe(ref sum, lane);
             var entropy = Vector512<double>.Zero;
             var path = Vector512<double>.Zero;
             var onPath = Vector512<double>.Zero;
             foreach (var c in children)
             {
-                var t = Vector512.LoadUnsafe(ref strip.LogConditional(c), lane) - log;
-                var p = Vector512.LoadUnsafe(ref strip.Conditional(c), lane) * inverse;
-                var o = Vector512.LoadUnsafe(ref strip.OnPath(c), lane);
-                t.StoreUnsafe(ref strip.LogConditional(c), lane);
-                p.StoreUnsafe(ref strip.Conditional(c), lane);
-                entropy -= p * t;
-                path = Vector512.FusedMultiplyAdd(o, t, path);
-                onPath += o;
+                var tHere = Vector512.LoadUnsafe(ref t, c + lane) - logHere;
+                var pHere = Vector512.LoadUnsafe(ref p, c + lane) * inverse;
+                var oHere = Vector512.LoadUnsafe(ref o, c + lane);
+                tHere.StoreUnsafe(ref t, c + lane);
+                pHere.StoreUnsafe(ref p, c + lane);
+                entropy -= pHere * tHere;
+                path = Vector512.FusedMultiplyAdd(oHere, tHere, path);
+                onPath += oHere;
             }
 
-            Finish(n, lane, max, log, entropy, path);
-            if (n != plan.Root) onPath.StoreUnsafe(ref onPathHere, lane);
+            entropy.StoreUnsafe(ref tilt, lane);
+            (Vector512.LoadUnsafe(ref logProbability, lane) + path).StoreUnsafe(ref logProbability, lane);
+            if (isInner) onPath.StoreUnsafe(ref oOfNode, lane);
             sumOfPath += path;
         }
 
-        PathSum[n] = sumOfPath;
+        return sumOfPath;
     }
 
     /// <summary>Two children need one exponential: that of minus their distance.</summary>
-    private void UpPair(int n)
+    private Vector512<double> UpPair(int n)
     {
+        var lanes = (nuint)strip.Lanes;
+        ref var largest = ref strip.Largest;
+        ref var sum = ref strip.Sum;
+        var (c0, c1) = (places[n][0], places[n][1]);
+        ref var value = ref strip.Value(0);
+        ref var t = ref strip.LogConditional(0);
+        ref var p = ref strip.Conditional(0);
         var scale = Vector512.Create(InnerScale(n));
-        var sumOfPath = Vector512<double>.Zero;
-        var (c0, c1) = (plan.Children[n][0], plan.Children[n][1]);
-        ref var value0 = ref strip.Value(c0);
-        ref var value1 = ref strip.Value(c1);
-        ref var t0Row = ref strip.LogConditional(c0);
-        ref var t1Row = ref strip.LogConditional(c1);
-        ref var p0Row = ref strip.Conditional(c0);
-        ref var p1Row = ref strip.Conditional(c1);
-        ref var o0Row = ref strip.OnPath(c0);
-        ref var o1Row = ref strip.OnPath(c1);
-        ref var onPathHere = ref strip.OnPath(plan.J + n);
-        for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
+        for (nuint lane = 0; lane < lanes; lane += Tile)
         {
-            var w0 = Vector512.LoadUnsafe(ref value0, lane);
-            var w1 = Vector512.LoadUnsafe(ref value1, lane);
+            var w0 = Vector512.LoadUnsafe(ref value, c0 + lane);
+            var w1 = Vector512.LoadUnsafe(ref value, c1 + lane);
             var distance = (w0 - w1) * scale;
-            var power = Exp(-Vector512.Abs(distance));
-            var sum = Vector512<double>.One + power;
-            var log = Vector512.Log(sum);
-            var larger = Vector512<double>.One / sum;
-            var smaller = power * larger;
+            Vector512.MaxNative(w0, w1).StoreUnsafe(ref largest, lane);
+            distance.StoreUnsafe(ref t, c0 + lane);
+            (-Vector512.Abs(distance)).StoreUnsafe(ref t, c1 + lane);
+        }
+
+        VectorFunctions.Exp(ref Unsafe.Add(ref t, c1), ref Unsafe.Add(ref p, c1), lanes);
+        for (nuint lane = 0; lane < lanes; lane += Tile)
+            (Vector512<double>.One + Vector512.LoadUnsafe(ref p, c1 + lane)).StoreUnsafe(ref sum, lane);
+        ref var log = ref strip.LogOfSum;
+        VectorFunctions.Log(ref sum, ref log, lanes);
+
+        var sumOfPath = Vector512<double>.Zero;
+        var isInner = n != plan.Root;
+        ref var o = ref strip.OnPath(0);
+        ref var oOfNode = ref strip.OnPath(plan.J + n);
+        ref var tilt = ref strip.Tilt(n);
+        ref var logProbability = ref strip.LogProbability;
+        for (nuint lane = 0; lane < lanes; lane += Tile)
+        {
+            var logHere = Vector512.LoadUnsafe(ref log, lane);
+            var larger = Vector512<double>.One / Vector512.LoadUnsafe(ref sum, lane);
+            var smaller = Vector512.LoadUnsafe(ref p, c1 + lane) * larger;
+            var distance = Vector512.LoadUnsafe(ref t, c0 + lane);
             var isFirstLarger = Vector512.GreaterThanOrEqual(distance, Vector512<double>.Zero);
             var p0 = Vector512.ConditionalSelect(isFirstLarger, larger, smaller);
             var p1 = Vector512.ConditionalSelect(isFirstLarger, smaller, larger);
-            var t0 = Vector512.MinNative(distance, Vector512<double>.Zero) - log;
-            var t1 = Vector512.MinNative(-distance, Vector512<double>.Zero) - log;
-            var o0 = Vector512.LoadUnsafe(ref o0Row, lane);
-            var o1 = Vector512.LoadUnsafe(ref o1Row, lane);
-            t0.StoreUnsafe(ref t0Row, lane);
-            t1.StoreUnsafe(ref t1Row, lane);
-            p0.StoreUnsafe(ref p0Row, lane);
-            p1.StoreUnsafe(ref p1Row, lane);
+            var t0 = Vector512.MinNative(distance, Vector512<double>.Zero) - logHere;
+            var t1 = Vector512.MinNative(-distance, Vector512<double>.Zero) - logHere;
+            var o0 = Vector512.LoadUnsafe(ref o, c0 + lane);
+            var o1 = Vector512.LoadUnsafe(ref o, c1 + lane);
             var path = Vector512.FusedMultiplyAdd(o0, t0, o1 * t1);
-            Finish(n, lane, Vector512.MaxNative(w0, w1), log, -(p0 * t0) - (p1 * t1), path);
-            if (n != plan.Root) (o0 + o1).StoreUnsafe(ref onPathHere, lane);
+            t0.StoreUnsafe(ref t, c0 + lane);
+            t1.StoreUnsafe(ref t, c1 + lane);
+            p0.StoreUnsafe(ref p, c0 + lane);
+            p1.StoreUnsafe(ref p, c1 + lane);
+            (-Vector512.FusedMultiplyAdd(p0, t0, p1 * t1)).StoreUnsafe(ref tilt, lane);
+            (Vector512.LoadUnsafe(ref logProbability, lane) + path).StoreUnsafe(ref logProbability, lane);
+            if (isInner) (o0 + o1).StoreUnsafe(ref oOfNode, lane);
             sumOfPath += path;
         }
 
-        PathSum[n] = sumOfPath;
+        return sumOfPath;
     }
 
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private void Finish(int n, nuint lane, Vector512<double> max, Vector512<double> log, Vector512<double> entropy, Vector512<double> path)
+    /// <summary>W of the node; in the unscaled form its tilt is the log-sum and not the entropy.</summary>
+    private void SetValue(int n)
     {
         var l = Vector512.Create(strip.Dissimilarity[n]);
+        ref var largest = ref strip.Largest;
+        ref var log = ref strip.LogOfSum;
         ref var value = ref strip.Value(plan.J + n);
-        ref var tilt = ref strip.Tilt(n);
         if (plan.IsScaled)
         {
-            Vector512.FusedMultiplyAdd(l, log, max).StoreUnsafe(ref value, lane);
-            entropy.StoreUnsafe(ref tilt, lane);
-        }
-        else
-        {
-            var logSum = max + log;
-            (l * logSum).StoreUnsafe(ref value, lane);
-            logSum.StoreUnsafe(ref tilt, lane);
+            for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
+                Vector512.FusedMultiplyAdd(l, Vector512.LoadUnsafe(ref log, lane), Vector512.LoadUnsafe(ref largest, lane)).StoreUnsafe(ref value, lane);
+            return;
         }
 
-        ref var logProbability = ref strip.LogProbability;
-        (Vector512.LoadUnsafe(ref logProbability, lane) + path).StoreUnsafe(ref logProbability, lane);
+        ref var tilt = ref strip.Tilt(n);
+        for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
+        {
+            var logSum = Vector512.LoadUnsafe(ref largest, lane) + Vector512.LoadUnsafe(ref log, lane);
+            logSum.StoreUnsafe(ref tilt, lane);
+            (l * logSum).StoreUnsafe(ref value, lane);
+        }
     }
 
     private void DownTo(int c, int n)
@@ -200,13 +233,5 @@ internal sealed class StripProbabilities
         for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
             Vector512.FusedMultiplyAdd(
                 ofPath, Vector512.LoadUnsafe(ref o, lane), ofSlope * Vector512.LoadUnsafe(ref slope, lane)).StoreUnsafe(ref flow, lane);
-    }
-
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private static Vector512<double> Exp(Vector512<double> x)
-    {
-        var lowest = Vector512.Create(LowestExponent);
-        var power = Vector512.Exp(Vector512.MaxNative(x, lowest));
-        return Vector512.ConditionalSelect(Vector512.GreaterThan(x, lowest), power, Vector512<double>.Zero);
     }
 }
