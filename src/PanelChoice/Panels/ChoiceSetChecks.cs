@@ -68,11 +68,12 @@ internal sealed class ChoiceSetChecks(StudySpecification study, ChoiceTable tabl
                     () => $"{WhoAndWhen(row)} chose '{NameOf(row)}', which is marked as not offered", "mark it as offered, or correct the choice");
         }
 
+        if (chosen >= 0) return;
         var firstRow = rows[0];
-        if (chosen < 0)
-            Note(
-                "data.none_chosen", firstRow, study.Panel.Chosen, null,
-                () => $"{WhoAndWhen(firstRow)} chose nothing, here or in the rows that belong to it", "mark the chosen row, or take the occasion out");
+        foreach (var row in rows) firstRow = Math.Min(firstRow, row);
+        Note(
+            "data.none_chosen", firstRow, study.Panel.Chosen, null,
+            () => $"{WhoAndWhen(firstRow)} chose nothing, here or in the rows that belong to it", "mark the chosen row, or take the occasion out");
     }
 
     private void CheckWeight(ReadOnlySpan<int> rows, string column)

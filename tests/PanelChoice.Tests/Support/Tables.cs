@@ -43,15 +43,15 @@ internal static class Tables
     /// <summary>Asserts that two panels hold the same persons, occasions, choice sets and attributes, wherever their rows stand in the files.</summary>
     public static void AssertSame(ChoicePanel expected, ChoicePanel actual)
     {
-        Assert.Equal(expected.Persons, actual.Persons);
-        Assert.Equal(expected.Alternatives, actual.Alternatives);
+        Assert.Equal(expected.Persons.AsEnumerable(), actual.Persons);
+        Assert.Equal(expected.Alternatives.AsEnumerable(), actual.Alternatives);
         Assert.Equal(expected.PersonStart.AsEnumerable(), actual.PersonStart.AsEnumerable());
         Assert.Equal(expected.PersonOf.AsEnumerable(), actual.PersonOf.AsEnumerable());
         Assert.Equal(expected.Occasion.AsEnumerable(), actual.Occasion.AsEnumerable());
         Assert.Equal(expected.Offered.AsEnumerable(), actual.Offered.AsEnumerable());
         Assert.Equal(expected.Chosen.AsEnumerable(), actual.Chosen.AsEnumerable());
         Assert.Equal(expected.Weight.AsEnumerable(), actual.Weight.AsEnumerable());
-        Assert.Equal(expected.Clusters, actual.Clusters);
+        Assert.Equal(expected.Clusters.AsEnumerable(), actual.Clusters);
         Assert.Equal(expected.ClusterOf.AsEnumerable(), actual.ClusterOf.AsEnumerable());
         Assert.Equal(expected.Row.Select(r => r < 0), actual.Row.Select(r => r < 0));
         foreach (var name in expected.Table.Numbers.Keys)
