@@ -19,7 +19,8 @@ internal static class DemoStudy
         """
         # The same town, people and days as in marrowick-habit, made without habit and without lasting
         # tastes. The model is the same too: its habit term should come out near 0, its pooled and
-        # clustered standard errors should agree, and the verdict should stay quiet.
+        # clustered standard errors should agree, and the verdict should stay quiet (one panel in twenty
+        # like this one would alarm by chance: that is what a level of 0.05 means).
         """);
 
     private static string Text(string title, string file, string about) => $$"""
@@ -32,7 +33,7 @@ internal static class DemoStudy
         occasion    = "day"                   # a date, so every term that looks back can follow the calendar
         alternative = "mode"
         chosen      = "taken"
-        offered     = "running"               # 0 where a mode was not there: no car, no boat in a storm
+        offered     = "running"               # 0 where a mode could not be taken: no car, wrong tide, no seat left
 
         [history]
         previous        = "workday"           # Friday is the day before Monday; an absence is a gap, not a yesterday

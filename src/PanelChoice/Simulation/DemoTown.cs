@@ -13,10 +13,10 @@ internal sealed class DemoTown
     public const int Commuters = 160;
 
     private const long Seed = 20310303;
-    private const double StormWind = 12;
 
     private readonly Cell[] cells;
 
+    /// <summary>The town and all its days.</summary>
     public DemoTown()
     {
         Days = WorkingDays();
@@ -60,7 +60,7 @@ internal sealed class DemoTown
         var hasCycle = random.NextDouble() < 0.75;
         var nearUpperQuay = random.NextDouble() < 0.8;
         var hasTicket = random.NextDouble() < 0.35;
-        var parking = Round(4 * random.NextDouble(), 1);
+        var parking = Round(3 * random.NextDouble(), 1);
 
         // Most people answer nearly every day; some join late, and a third are away for a week.
         var recorded = Enumerable.Repeat(true, Days.Count).ToArray();
@@ -80,6 +80,8 @@ internal sealed class DemoTown
             var (isWet, wind) = Weather[d];
             var rain = isWet ? 1 : 0;
             var carIsFree = random.NextDouble() > 0.06;
+            var tideSuits = random.NextDouble() > 0.04;
+            var hasSeat = random.NextDouble() > 0.1;
             double Spread(double shape, double mean) => Gamma.Sample(random, shape, shape / mean);
             void Set(int mode, bool runs, double minutes, double cost, double delay) =>
                 cells[(((person * Days.Count) + d) * DemoTruth.Modes.Length) + mode] = new Cell(runs, Round(minutes, 1), Round(cost, 2), Round(delay, 1));
@@ -87,8 +89,8 @@ internal sealed class DemoTown
             Set(DemoTruth.Bus, true, 9 + (2.6 * c.Kilometres) + Spread(2, 4 + (2 * rain)), 1.6 + (0.08 * c.Kilometres), Spread(1.2, 4 + (3 * rain)));
             Set(DemoTruth.Cycle, c.HasCycle && c.Kilometres < 12, 4 + (3.6 * c.Kilometres) + Spread(2, 2), 0, 0);
             Set(DemoTruth.Drive, c.HasCar && carIsFree, 6 + (1.7 * c.Kilometres) + Spread(2, 4 + (2 * rain)), 1.5 + c.Parking + (0.28 * c.Kilometres), Spread(1.2, 3.5 + (2 * rain)));
-            Set(DemoTruth.Ferry, d != 17, c.QuayMinutes + 14 + Spread(2, 3), c.HasTicket ? 0.6 : 2.4, Spread(1.2, 2 + (0.3 * wind)));
-            Set(DemoTruth.Hydrofoil, c.NearUpperQuay && wind < StormWind, c.QuayMinutes + 7 + Spread(2, 2), c.HasTicket ? 2.2 : 4.6, Spread(1.2, 2.5));
+            Set(DemoTruth.Ferry, tideSuits, c.QuayMinutes + 14 + Spread(2, 3), c.HasTicket ? 0.6 : 2.4, Spread(1.2, 2 + (0.3 * wind)));
+            Set(DemoTruth.Hydrofoil, c.NearUpperQuay && hasSeat, c.QuayMinutes + 7 + Spread(2, 2), c.HasTicket ? 2.2 : 4.6, Spread(1.2, 2.5));
         }
     }
 

@@ -33,7 +33,7 @@ internal sealed record DemoTruth(
     public const int Hydrofoil = 4;
 
     /// <summary>Lasting tastes and habit.</summary>
-    public static DemoTruth Habitual { get; } = new([0, 0.4, 0.5, 0.3, 0.4], -0.06, -0.3, -0.05, 0.6, -1.2, 0.9, 0.5, 0.7, 0.9);
+    public static DemoTruth Habitual { get; } = new([0, 0.2, 1.2, 0.1, 0.4], -0.06, -0.3, -0.05, 0.6, -1.2, 0.9, 0.5, 0.7, 0.9);
 
     /// <summary>The same town without either.</summary>
     public static DemoTruth Quiet { get; } = Habitual with { Habit = 0, TasteDeviation = 0 };
