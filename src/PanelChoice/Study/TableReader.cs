@@ -75,7 +75,8 @@ internal sealed class TableReader(TomlTable table, string name, StudyProblems pr
             case null: return null;
             case TomlWhole whole when whole.Value >= least && whole.Value <= int.MaxValue: return (int)whole.Value;
             case TomlWhole whole:
-                OutOfRange(key, whole, $"a whole number from {least.ToString(CultureInfo.InvariantCulture)} to {int.MaxValue.ToString(CultureInfo.InvariantCulture)}");
+                OutOfRange(key, whole, string.Create(
+                    CultureInfo.InvariantCulture, $"a whole number of {(whole.Value < least ? $"{least} or more" : $"at most {int.MaxValue}")}"));
                 return null;
             case var other:
                 WrongType(key, other, "a whole number", $"write {key} = {Math.Max(1, least).ToString(CultureInfo.InvariantCulture)} or another whole number, without quotes");

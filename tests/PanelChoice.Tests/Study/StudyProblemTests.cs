@@ -61,7 +61,7 @@ public class StudyProblemTests
         { Small + "[history]\nprevious = \"day\"\nholidays = [\"2031-04-14\"]\n", "study.needs_key", 12, 1, "only with previous = \"workday\"" },
         { Small + "[history]\nholidays = [\"2031-04-14\"]\n", "study.needs_key", 11, 1, "only with previous = \"workday\"" },
         { Small + "[history]\nprevious = \"step\"\nlongest_gap = 3\n", "study.needs_key", 12, 1, "only with previous = \"recorded\"" },
-        { Small + "[history]\nprevious = \"recorded\"\nlongest_gap = 0\n", "study.out_of_range", 12, 15, "from 1" },
+        { Small + "[history]\nprevious = \"recorded\"\nlongest_gap = 0\n", "study.out_of_range", 12, 15, "1 or more" },
         { Small + "[history]\nprevious = \"recorded\"\nlongest_gap = 1.5\n", "study.wrong_type", 12, 15, "a whole number" },
         { Small + "[history]\nwithout_history = \"keep\"\n", "study.unknown_value", 11, 19, "use \"drop\" or \"zero\"" },
         // [[nest]]
@@ -93,19 +93,19 @@ public class StudyProblemTests
         { Panel + Term + "column = 3\n", "study.wrong_type", 9, 10, "must be text" },
         { Panel + Term + "constant = 1\nalternatives = [\"a\"]\n", "study.wrong_type", 9, 12, "true or false" },
         { Panel + Term + "last_choice = true\n" + Step, "study.wrong_type", 9, 15, "write last_choice = 1" },
-        { Panel + Term + "last_choice = 0\n" + Step, "study.out_of_range", 9, 15, "from 1" },
-        { Panel + Term + "last_choice = 99999999999\n" + Step, "study.out_of_range", 9, 15, "from 1" },
-        { Panel + Term + "last_nest = 0\n" + Step + Nest, "study.out_of_range", 9, 13, "from 1" },
+        { Panel + Term + "last_choice = 0\n" + Step, "study.out_of_range", 9, 15, "1 or more" },
+        { Panel + Term + "last_choice = 99999999999\n" + Step, "study.out_of_range", 9, 15, "at most 2147483647" },
+        { Panel + Term + "last_nest = 0\n" + Step + Nest, "study.out_of_range", 9, 13, "1 or more" },
         { Panel + Term + "last_nest = 1\n" + Step, "study.needs_key", 9, 1, "the study has no nests" },
         { Panel + Term + "stock = 1\n", "study.out_of_range", 9, 9, "between 0 and 1" },
         { Panel + Term + "stock = nan\n", "study.out_of_range", 9, 9, "between 0 and 1" },
         { Panel + Term + "past_share = \"true\"\n", "study.wrong_type", 9, 14, "without quotes" },
         { Panel + Term + "first_choice = 1\n", "study.wrong_type", 9, 16, "true or false" },
-        { Panel + Term + "column = \"x\"\nlag = 0\n" + Step, "study.out_of_range", 10, 7, "from 1" },
+        { Panel + Term + "column = \"x\"\nlag = 0\n" + Step, "study.out_of_range", 10, 7, "1 or more" },
         { Panel + Term + "column = \"x\"\nlag = 1.0\n" + Step, "study.wrong_type", 10, 7, "a whole number" },
-        { Panel + Term + "column = \"x\"\nlead = 0\n" + Step, "study.out_of_range", 10, 8, "from 1" },
-        { Panel + Term + "column = \"x\"\nchange = 0\n" + Step, "study.out_of_range", 10, 10, "from 1" },
-        { Panel + Term + "column = \"x\"\nchosen_then = 0\n" + Step, "study.out_of_range", 10, 15, "from 1" },
+        { Panel + Term + "column = \"x\"\nlead = 0\n" + Step, "study.out_of_range", 10, 8, "1 or more" },
+        { Panel + Term + "column = \"x\"\nchange = 0\n" + Step, "study.out_of_range", 10, 10, "1 or more" },
+        { Panel + Term + "column = \"x\"\nchosen_then = 0\n" + Step, "study.out_of_range", 10, 15, "1 or more" },
         { Panel + Term + "column = \"x\"\nperson_mean = 1\n", "study.wrong_type", 10, 15, "true or false" },
         { Panel + Term + "column = \"x\"\nlag = 1\nchange = 1\n" + Step, "study.several_moments", 11, 1, "lag, change" },
         { Panel + Term + "last_choice = 1\nlag = 1\n" + Step, "study.needs_key", 10, 1, "'lag' works on a 'column'" },
@@ -146,7 +146,7 @@ public class StudyProblemTests
         { Panel.Replace("occasion = \"day\"\n", "") + Term + "last_choice = 1\n", "study.no_occasion", 6, 1, "names no 'occasion'" },
         // [estimate], [inference], [diagnostics]
         { Small + "[estimate]\nform = \"unscaledd\"\n", "study.unknown_value", 11, 8, "did you mean \"unscaled\"?" },
-        { Small + "[estimate]\nstarts = 0\n", "study.out_of_range", 11, 10, "from 1" },
+        { Small + "[estimate]\nstarts = 0\n", "study.out_of_range", 11, 10, "1 or more" },
         { Small + "[estimate]\nseed = \"x\"\n", "study.wrong_type", 11, 8, "a whole number" },
         { Small + "[inference]\ncluster = 1\n", "study.wrong_type", 11, 11, "must be text" },
         { Small + "[inference]\nsecond_cluster = \"occasion\"\n", "study.not_supported", 11, 1, "not supported yet" },
@@ -154,16 +154,16 @@ public class StudyProblemTests
         { Small + "[inference]\nconfidence = 0.0\n", "study.out_of_range", 11, 14, "between 0 and 1" },
         { Small + "[inference]\njackknife = \"yes\"\n", "study.unknown_value", 11, 13, "\"one_step\"" },
         { Small + "[inference]\nbootstrap = 3\n", "study.wrong_type", 11, 1, "write [inference.bootstrap] once" },
-        { Small + "[inference.bootstrap]\nreplicates = -1\n", "study.out_of_range", 11, 14, "from 0" },
+        { Small + "[inference.bootstrap]\nreplicates = -1\n", "study.out_of_range", 11, 14, "0 or more" },
         { Small + "[inference.bootstrap]\nreplicates = \"auto\"\n", "study.not_supported", 11, 1, "not supported yet" },
         { Small + "[inference.bootstrap]\nreplicates = \"many\"\n", "study.wrong_type", 11, 14, "a whole number" },
         { Small + "[inference.bootstrap]\nblocks = \"moving\"\n", "study.not_supported", 11, 1, "moving blocks are not supported yet" },
         { Small + "[inference.bootstrap]\nblocks = \"clusters\"\n", "study.unknown_value", 11, 10, "did you mean \"cluster\"?" },
         { Small + "[inference.bootstrap]\nlength = 5\n", "study.not_supported", 11, 1, "not supported yet" },
         { Small + "[inference.bootstrap]\nseed = 1.5\n", "study.wrong_type", 11, 8, "a whole number" },
-        { Small + "[diagnostics]\nlags = 0\n", "study.out_of_range", 11, 8, "from 1" },
+        { Small + "[diagnostics]\nlags = 0\n", "study.out_of_range", 11, 8, "1 or more" },
         { Small + "[diagnostics]\nlevel = 1.0\n", "study.out_of_range", 11, 9, "between 0 and 1" },
-        { Small + "[diagnostics]\ndraws = 0\n", "study.out_of_range", 11, 9, "from 1" },
+        { Small + "[diagnostics]\ndraws = 0\n", "study.out_of_range", 11, 9, "1 or more" },
         { Small + "[diagnostics]\nseed = true\n", "study.wrong_type", 11, 8, "a whole number" },
         { Small + "[[test]]\nname = \"x\"\n", "study.not_supported", 10, 1, "[[test]] is not supported yet" },
         { Small + "[[taste]]\nname = \"x\"\n", "study.not_supported", 10, 1, "[[taste]] is not supported yet" },
@@ -320,6 +320,6 @@ public class StudyProblemTests
     {
         var problem = Assert.Single(StudyText.Read(Small + "[estimate]\nstarts = 0\n").Problems);
         Assert.EndsWith(
-            "study.toml, line 11, column 10, value '0': 'starts' in [estimate] must be a whole number from 1 to 2147483647; change the value.", problem.Sentence, StringComparison.Ordinal);
+            "study.toml, line 11, column 10, value '0': 'starts' in [estimate] must be a whole number of 1 or more; change the value.", problem.Sentence, StringComparison.Ordinal);
     }
 }
