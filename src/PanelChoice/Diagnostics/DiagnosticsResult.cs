@@ -47,7 +47,7 @@ public sealed record Detector(double Statistic, double PValue, ImmutableArray<De
 
 /// <summary>Score for shocks shared by everybody on the same occasion.</summary>
 /// <param name="Z">One-sided z.</param>
-/// <param name="PValue">One-sided p-value.</param>
+/// <param name="PValue">One-sided p-value; it allows for the skewness of the null distribution, so it is not the normal tail beyond z.</param>
 public sealed record DateScore(double Z, double PValue);
 
 /// <summary>Dependence at one lag: one-step effect size.</summary>

@@ -1,5 +1,4 @@
 using System.Collections.Immutable;
-using MathNet.Numerics.Distributions;
 using PanelChoice.Covariates;
 using PanelChoice.Data;
 using PanelChoice.Design;
@@ -63,7 +62,7 @@ public static class IndependenceBattery
         if (DecayGridDetector.Of(battery, study.Diagnostics.Draws, study.Diagnostics.Seed) is not { } detector)
             return NotApplicable("Not tested: no two occasions of a person leave any variance to compare residuals by.");
         work.Report(Step, 2, 3);
-        var date = battery.Date is { IsDefined: true } d ? new DateScore(d.Z, Normal.CDF(0, 1, -d.Z)) : null;
+        var date = battery.Date is { IsDefined: true } d ? new DateScore(d.Z, d.PValue) : null;
         var verdict = VerdictRule.Judge(detector.PValue, date?.PValue, study.Diagnostics.Level);
         AddNotes(notes, study, design, positions, detector, verdict, dates is not null && date is null);
 

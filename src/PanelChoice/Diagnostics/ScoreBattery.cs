@@ -14,13 +14,13 @@ namespace PanelChoice.Diagnostics;
 /// <param name="Nests">Running sum of each nest, in the order of the layout's nests.</param>
 /// <param name="LastPrediction">The last occasion's predicted probabilities: moved by true habit, not by taste or correlated errors.</param>
 /// <param name="InformationTrace">The information trace.</param>
-/// <param name="Date">The date score; null without a shared calendar.</param>
+/// <param name="Date">The date score; null without a shared calendar or without any date of two persons.</param>
 /// <param name="FreeParameters">K.</param>
 internal sealed record ScoreBattery(
     ImmutableArray<CorrectedScore> Decays, ImmutableArray<double> DecayCovariance, ImmutableArray<double> RawDecayCovariance,
     ImmutableArray<CorrectedScore> Lags,
     ImmutableArray<CorrectedScore> Alternatives, ImmutableArray<CorrectedScore> Nests, CorrectedScore LastPrediction,
-    CorrectedScore InformationTrace, CorrectedScore? Date, int FreeParameters)
+    CorrectedScore InformationTrace, DateMoment? Date, int FreeParameters)
 {
     /// <summary>
     /// Average variance inflation of the pooled covariance: tr(A_ss^-1 sum of s_n s_n') / K over persons n, which is
@@ -66,7 +66,7 @@ internal sealed record ScoreBattery(
             [.. Enumerable.Range(0, layout.Nests).Select(m => Score(layout.Nest(m)))],
             Score(layout.LastPrediction),
             Score(layout.InformationTrace),
-            byDate is { SharedDates: > 0 } ? CorrectedScore.Of(byDate.Sums, 0, white.TotalScore) : null,
+            byDate is { Pairs.Dates: > 0 } ? byDate.Pairs.Moment(white.TotalScore) : null,
             sums.Parameters);
     }
 

@@ -141,27 +141,40 @@ internal sealed class BruteForce
         return (raw, rawVariance, bias, raw - (ams * Inverse * total) + bias, rawVariance - (ams * Inverse * ams));
     }
 
-    /// <summary>The date score over all unordered pairs of persons of a date.</summary>
-    public (double Raw, double RawVariance, double Bias, double Value, double Variance) Date()
+    /// <summary>
+    /// The date score over all unordered pairs of persons of a date; mean, variance and third cumulant from the full matrices A and
+    /// Omega - E A_ss^-1 E' over all situations.
+    /// </summary>
+    public (double Raw, double RawVariance, double Bias, double Value, double Variance, double ThirdCumulant) Date()
     {
-        double raw = 0, rawVariance = 0, bias = 0;
+        var n = Rows.Count;
+        double raw = 0, rawVariance = 0;
         var ams = Vector<double>.Build.Dense(theta.Length);
         var total = Vector<double>.Build.Dense(theta.Length);
-        for (var t = 0; t < Rows.Count; t++)
+        var a = Matrix<double>.Build.Dense(n * J, n * J);
+        var omega = Matrix<double>.Build.Dense(n * J, n * J);
+        var e = Matrix<double>.Build.Dense(n * J, theta.Length);
+        for (var t = 0; t < n; t++)
         {
             total += Vector<double>.Build.Dense(ObservedScore(t));
-            for (var s = 0; s < t; s++)
+            omega.SetSubMatrix(t * J, t * J, Omega(t));
+            e.SetSubMatrix(t * J, 0, Cov(t));
+            for (var s = 0; s < n; s++)
             {
-                if (Rows[s].Date != Rows[t].Date) continue;
+                if (s == t || Rows[s].Date != Rows[t].Date) continue;
+                for (var j = 0; j < J; j++) a[(t * J) + j, (s * J) + j] = 1;
+                if (s > t) continue;
                 raw += Dot(Observed(s), Observed(t));
                 rawVariance += (Omega(s) * Omega(t)).Trace();
-                bias += (Cov(s) * Inverse * Cov(t).Transpose()).Trace();
                 ams += (Cov(s).Transpose() * Vector<double>.Build.Dense(Observed(t)))
                     + (Cov(t).Transpose() * Vector<double>.Build.Dense(Observed(s)));
             }
         }
 
-        return (raw, rawVariance, bias, raw - (ams * Inverse * total) + bias, rawVariance - (ams * Inverse * ams));
+        var fitted = a * (omega - (e * Inverse * e.Transpose()));
+        var bias = -fitted.Trace() / 2;
+        return (
+            raw, rawVariance, bias, raw - (ams * Inverse * total) + bias, (fitted * fitted).Trace() / 2, (fitted * fitted * fitted).Trace());
     }
 
     /// <summary>Cov(g, s) of a row.</summary>

@@ -42,6 +42,23 @@ public class VerdictTests
         Assert.NotEqual(DecayGridDetector.PValue(1, identity, 999, 7), DecayGridDetector.PValue(1, identity, 999, 8));
     }
 
+    [Theory]
+    [InlineData(4)]
+    [InlineData(20)]
+    [InlineData(80)]
+    public void The_date_scores_tail_is_that_of_a_chi_squared_variable_where_the_score_is_one(int freedom)
+    {
+        // The cube-root transform is good to about three digits of the tail; the normal tail would be off by a fifth at 20 degrees of freedom.
+        const double cubeRootAccuracy = 0.02;
+        foreach (var z in new[] { 1.0, 1.645, 2.5 })
+        {
+            var exact = 1 - MathNet.Numerics.Distributions.ChiSquared.CDF(freedom, freedom + (z * Math.Sqrt(2 * freedom)));
+            Assert.InRange(DateMoment.UpperTail(z, Math.Sqrt(8.0 / freedom)) / exact, 1 - cubeRootAccuracy, 1 + cubeRootAccuracy);
+        }
+
+        Assert.Equal(MathNet.Numerics.Distributions.Normal.CDF(0, 1, -1.5), DateMoment.UpperTail(1.5, 0));
+    }
+
     [Fact]
     public void Measured_rates_are_quoted_for_the_nearest_simulated_size()
     {

@@ -43,7 +43,13 @@ internal static class NewtonFit
                 there = inside ? likelihood.Evaluate(next, weight, Derivatives.Hessian) : new LikelihoodEvaluation(double.NegativeInfinity, [], []);
             }
             while (!(there.Value > here.Value) && length > 1e-6);
-            if (!(there.Value > here.Value)) break;
+            if (!(there.Value > here.Value))
+            {
+                // In a large panel rounding of the log-likelihood hides the last steps; they move no estimate by a thousandth of its error.
+                if (gradient * step < 1e-6) status = FitStatus.Converged;
+                break;
+            }
+
             (theta, here) = (next, there);
         }
 
