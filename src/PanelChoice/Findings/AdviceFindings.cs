@@ -56,8 +56,8 @@ internal static class AdviceFindings
             return new Finding(
                 "advice.cluster", FindingTopic.Advice, FindingSeverity.Information,
                 $"Report the clustered standard errors and their {confidence} intervals, from the t distribution with {clusters.DegreesOfFreedom} "
-                + $"degrees of freedom. They rest on {PlainNumber.Count(clusters.Count)} {by}, whatever ties one's occasions together "
-                + "(Liang and Zeger 1986; Cameron and Miller 2015). The pooled ones assume that there is no such tie.",
+                + $"degrees of freedom. They rest on {PlainNumber.Count(clusters.Count)} {by} and hold whatever ties the occasions inside one together "
+                + "(Liang and Zeger 1986; Cameron and Miller 2015); the pooled ones hold only where nothing does.",
                 [new FindingFigure("clusters", clusters.Count)]);
         var few = $"There are only {clusters.Count} {by}: with fewer than {FindingsInput.FewClusters} the clustered standard error tends to be too small.";
         return inference.Covariances.GetValueOrDefault(CovarianceKind.Jackknife)?.Matrix is null

@@ -24,7 +24,9 @@ internal static class IndependenceFindings
         if (diagnostics is { Verdict: Verdict.Dependence, Cause: not null, HitRate: { } rate })
             yield return new Finding(
                 "independence.hit_rate", FindingTopic.Independence, FindingSeverity.Notice,
-                $"How far to trust the cause: the rule named the right one in {PlainNumber.PercentInWords(rate.Rate)} of simulated panels ({rate.Source.TrimEnd('.')}).",
+                "How far to trust the cause: the rule that names it was "
+                + (rate.Source.StartsWith("right", StringComparison.Ordinal) ? "" : $"right in {PlainNumber.PercentInWords(rate.Rate)} of ")
+                + rate.Source.TrimEnd('.') + ".",
                 [new FindingFigure("rate", rate.Rate)]);
         for (var i = 0; i < diagnostics.Notes.Length; i++)
             yield return new Finding("independence.note", FindingTopic.Independence, FindingSeverity.Notice, diagnostics.Notes[i], []);

@@ -65,12 +65,15 @@ internal static class NestFindings
         if (Math.Abs(value - parent) <= 1e-12)
             return new Finding(
                 "nests.dissolved", FindingTopic.Nests, FindingSeverity.Information, $"{head} It equals {parentName}, so the nest changes nothing.", figures);
+        var certain = p < 1 - input.Study.Inference.Confidence;
         if (value < parent)
             return new Finding(
                 "nests.consistent", FindingTopic.Nests, FindingSeverity.Information,
-                $"{head} Its members replace each other more readily than others do; it lies below {parentName}{test}, which is consistent with utility maximisation.",
+                $"{head} It lies below {parentName}{test}, which is consistent with utility maximisation"
+                + (p is null || certain
+                    ? ": its members replace each other more readily than others do."
+                    : ", but within error of it: these data do not show that its members replace each other more readily than others do."),
                 figures);
-        var certain = p < 1 - input.Study.Inference.Confidence;
         return new Finding(
             certain ? "nests.inconsistent" : "nests.above", FindingTopic.Nests, certain ? FindingSeverity.Warning : FindingSeverity.Notice,
             $"{head} It lies above {parentName}{test}"

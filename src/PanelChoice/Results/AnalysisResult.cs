@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using PanelChoice.Covariates;
 using PanelChoice.Diagnostics;
 using PanelChoice.Findings;
 
@@ -95,7 +96,30 @@ public sealed record ResultWarning(string Id, string Sentence);
 /// <param name="Alternatives">The alternatives over the occasions used.</param>
 public sealed record SampleSummary(
     long RowsRead, int PersonsRead, int OccasionsRead, ImmutableArray<LeftOutCount> LeftOut, int Persons, int Occasions,
-    ImmutableArray<AlternativeCount> Alternatives);
+    ImmutableArray<AlternativeCount> Alternatives)
+{
+    /// <summary>The book-keeping of a covariate set's sample.</summary>
+    /// <param name="covariates">The covariates.</param>
+    public static SampleSummary Of(CovariateSet covariates)
+    {
+        ArgumentNullException.ThrowIfNull(covariates);
+        var panel = covariates.Panel;
+        var alternatives = panel.Alternatives.Length;
+        var offered = new int[alternatives];
+        var chosen = new int[alternatives];
+        foreach (var occasion in covariates.Used)
+        {
+            chosen[panel.Chosen[occasion]]++;
+            for (var j = 0; j < alternatives; j++) if (panel.Offered[(occasion * alternatives) + j]) offered[j]++;
+        }
+
+        return new SampleSummary(
+            panel.Table.Rows, panel.Persons.Length, panel.Occasions,
+            [.. covariates.LeftOut.Select(l => new LeftOutCount(l.Reason, l.Occasions))],
+            covariates.Used.Select(o => panel.PersonOf[o]).Distinct().Count(), covariates.Used.Length,
+            [.. Enumerable.Range(0, alternatives).Select(j => new AlternativeCount(panel.Alternatives[j], offered[j], chosen[j]))]);
+    }
+}
 
 /// <summary>Occasions left out for one reason.</summary>
 /// <param name="Reason">The reason in plain words.</param>

@@ -53,15 +53,15 @@ internal static class ParameterEntries
             entry.SameAs,
             entry.Standing is null ? RoleWord(parameter.Role) : null,
             book.Number($"{path}.estimate", entry.Value(model.Parameters.AsSpan()), "The search left the range of finite numbers."),
-            new StandardErrors(
+            new StandardErrorsByKind(
                 Error("pooled", CovarianceKind.Pooled), Error("outer_product", CovarianceKind.OuterProduct), Error("robust", CovarianceKind.Robust),
                 Error("cluster", CovarianceKind.Cluster), Error("jackknife", CovarianceKind.Jackknife), Error("two_way", CovarianceKind.TwoWay),
                 Error("bootstrap", CovarianceKind.Bootstrap)),
-            new Intervals(
+            new IntervalsByKind(
                 Range("pooled", CovarianceKind.Pooled), Range("robust", CovarianceKind.Robust), Range("cluster", CovarianceKind.Cluster),
                 Range("jackknife", CovarianceKind.Jackknife), Range("two_way", CovarianceKind.TwoWay), Range("bootstrap", CovarianceKind.Bootstrap),
                 book.Interval($"{path}.interval.bootstrap_percentile", figures?.BootstrapPercentile, figures?.PercentileReason ?? Missing(CovarianceKind.Bootstrap))),
-            new PValues(
+            new PValuesByKind(
                 PValue("pooled", CovarianceKind.Pooled), PValue("robust", CovarianceKind.Robust), PValue("cluster", CovarianceKind.Cluster),
                 PValue("jackknife", CovarianceKind.Jackknife), PValue("two_way", CovarianceKind.TwoWay), PValue("bootstrap", CovarianceKind.Bootstrap)),
             book.Number($"{path}.bootstrap_error", figures?.BootstrapError, Missing(CovarianceKind.Bootstrap)),

@@ -19,7 +19,7 @@ namespace PanelChoice.Results;
 /// <param name="EquivalentOccasions">Independent occasions that would be worth as much.</param>
 public sealed record ParameterResult(
     string Name, string? Alternative, string Kind, string Status, string? SameAs, string? Role, double? Estimate,
-    StandardErrors StandardErrors, Intervals Intervals, PValues PValues, double? BootstrapError, double? SeRatio, double? EquivalentOccasions)
+    StandardErrorsByKind StandardErrors, IntervalsByKind Intervals, PValuesByKind PValues, double? BootstrapError, double? SeRatio, double? EquivalentOccasions)
 {
     /// <summary>The kind of a utility coefficient.</summary>
     public const string Coefficient = "coefficient";
@@ -42,7 +42,7 @@ public sealed record ParameterResult(
 /// <param name="Jackknife">Delete one cluster.</param>
 /// <param name="TwoWay">Two-way clustered.</param>
 /// <param name="Bootstrap">Bootstrap.</param>
-public sealed record StandardErrors(
+public sealed record StandardErrorsByKind(
     double? Pooled, double? OuterProduct, double? Robust, double? Cluster, double? Jackknife, double? TwoWay, double? Bootstrap);
 
 /// <summary>Intervals of one parameter; null where one does not exist.</summary>
@@ -53,7 +53,7 @@ public sealed record StandardErrors(
 /// <param name="TwoWay">t(min G - 1).</param>
 /// <param name="Bootstrap">t(G - 1) with the bootstrap standard error.</param>
 /// <param name="BootstrapPercentile">Percentiles of the replicates.</param>
-public sealed record Intervals(
+public sealed record IntervalsByKind(
     Interval? Pooled, Interval? Robust, Interval? Cluster, Interval? Jackknife, Interval? TwoWay, Interval? Bootstrap, Interval? BootstrapPercentile);
 
 /// <summary>Two-sided p-values of one parameter; null where one does not exist.</summary>
@@ -63,7 +63,7 @@ public sealed record Intervals(
 /// <param name="Jackknife">t(G - 1).</param>
 /// <param name="TwoWay">t(min G - 1).</param>
 /// <param name="Bootstrap">t(G - 1).</param>
-public sealed record PValues(double? Pooled, double? Robust, double? Cluster, double? Jackknife, double? TwoWay, double? Bootstrap);
+public sealed record PValuesByKind(double? Pooled, double? Robust, double? Cluster, double? Jackknife, double? TwoWay, double? Bootstrap);
 
 /// <summary>
 /// The covariance matrices, each square and symmetric over the result's parameters in their order (rows of fixed parameters are 0), or null.

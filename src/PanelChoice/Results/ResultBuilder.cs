@@ -54,29 +54,9 @@ internal static class ResultBuilder
     public static InputStamps Inputs(StudySpecification study, string dataFile, string dataSha256) =>
         new(new FileStamp(Path.GetFileName(study.File), study.Sha256), new FileStamp(dataFile, dataSha256));
 
-    /// <summary>Book-keeping of the sample.</summary>
-    public static SampleSummary Sample(CovariateSet covariates)
-    {
-        var panel = covariates.Panel;
-        var alternatives = panel.Alternatives.Length;
-        var offered = new int[alternatives];
-        var chosen = new int[alternatives];
-        foreach (var occasion in covariates.Used)
-        {
-            chosen[panel.Chosen[occasion]]++;
-            for (var j = 0; j < alternatives; j++) if (panel.Offered[(occasion * alternatives) + j]) offered[j]++;
-        }
-
-        return new SampleSummary(
-            panel.Table.Rows, panel.Persons.Length, panel.Occasions,
-            [.. covariates.LeftOut.Select(l => new LeftOutCount(l.Reason, l.Occasions))],
-            covariates.Used.Select(o => panel.PersonOf[o]).Distinct().Count(), covariates.Used.Length,
-            [.. Enumerable.Range(0, alternatives).Select(j => new AlternativeCount(panel.Alternatives[j], offered[j], chosen[j]))]);
-    }
-
     private static SampleSummary Sample(CovariateSet covariates, ChoiceDesign design)
     {
-        var sample = Sample(covariates);
+        var sample = SampleSummary.Of(covariates);
         return sample.Persons == design.Persons && sample.Occasions == design.Situations
             ? sample
             : throw new InvalidOperationException("The design and the covariates hold different samples.");

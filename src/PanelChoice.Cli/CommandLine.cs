@@ -1,0 +1,125 @@
+using System.CommandLine;
+using System.CommandLine.Invocation;
+using System.Reflection;
+using PanelChoice.Cli.Commands;
+
+namespace PanelChoice.Cli;
+
+/// <summary>The commands, their options, and what becomes of everything that can go wrong.</summary>
+internal static class CommandLine
+{
+    private const string Closing = "Run 'panelchoice --help' to see the commands.";
+
+    /// <summary>Runs one command line.</summary>
+    /// <param name="args">Arguments without the program's name.</param>
+    /// <param name="terminal">Where to write.</param>
+    /// <param name="cancellation">Set by the user's interrupt.</param>
+    /// <returns>The exit code.</returns>
+    public static int Run(IReadOnlyList<string> args, Terminal terminal, CancellationToken cancellation)
+    {
+        // Response files would make an argument such as @home mean something else than it says.
+        var parsed = Root(terminal, cancellation).Parse(args, new ParserConfiguration { ResponseFileTokenReplacer = null });
+        if (parsed.Errors.Count > 0)
+        {
+            foreach (var message in parsed.Errors.Select(e => e.Message).Distinct()) terminal.Problem(message);
+            terminal.Error.WriteLine(Closing);
+            return ExitCode.Usage;
+        }
+
+        try
+        {
+            return parsed.Invoke(new InvocationConfiguration
+            {
+                Output = terminal.Out, Error = terminal.Error, EnableDefaultExceptionHandler = false, ProcessTerminationTimeout = null,
+            });
+        }
+        catch (OperationCanceledException) when (cancellation.IsCancellationRequested)
+        {
+            terminal.Problem("stopped before it was done; nothing was written.");
+            return ExitCode.Interrupted;
+        }
+        catch (OutputException unwritable)
+        {
+            terminal.Problem(unwritable.Message);
+            return ExitCode.CannotWrite;
+        }
+#pragma warning disable CA1031 // The last line of defence: whatever is wrong inside, the user sees one line and a code that says so.
+        catch (Exception fault)
+#pragma warning restore CA1031
+        {
+            var inner = fault is AggregateException { InnerExceptions: [var only] } ? only : fault;
+            terminal.Problem($"internal error ({inner.GetType().Name}): {inner.Message}");
+            return ExitCode.Internal;
+        }
+    }
+
+    private static RootCommand Root(Terminal terminal, CancellationToken cancellation)
+    {
+        var root = new RootCommand("From a raw panel of repeated travel choices to estimates, honest standard errors and a verdict on independence.");
+        foreach (var option in root.Options.OfType<VersionOption>()) option.Action = new TellVersion();
+        var threads = new Option<int>("--threads")
+        {
+            Description = "Threads to use; no figure depends on it. Default: all processors.", HelpName = "N", Recursive = true,
+            DefaultValueFactory = _ => Environment.ProcessorCount,
+            CustomParser = result =>
+            {
+                var text = result.Tokens[0].Value;
+                if (int.TryParse(text, System.Globalization.NumberStyles.None, System.Globalization.CultureInfo.InvariantCulture, out var n) && n >= 1) return n;
+                result.AddError($"--threads needs a whole number of 1 or more, not '{text}'.");
+                return 0;
+            },
+        };
+        var quiet = new Option<bool>("--quiet") { Description = "Print no tables and no progress; problems are still told.", Recursive = true };
+        var noColour = new Option<bool>("--no-color") { Description = "Plain text even on a terminal; the variable NO_COLOR does the same.", Recursive = true };
+        root.Add(threads);
+        root.Add(quiet);
+        root.Add(noColour);
+        RunOptions Options(ParseResult r) => new(
+            r.GetValue(threads), r.GetValue(quiet), terminal.OutIsTerminal && terminal.AllowsColour && !r.GetValue(noColour), terminal, cancellation);
+
+        root.Add(Build(Options));
+        root.Add(Estimate(Options));
+        return root;
+    }
+
+    private static Command Build(Func<ParseResult, RunOptions> options)
+    {
+        var study = Study();
+        var output = new Option<string>("--out") { Description = "Write the covariates to this file (.csv or .parquet).", HelpName = "FILE" };
+        output.Validators.Add(result =>
+        {
+            var file = result.GetValueOrDefault<string>();
+            if (file is not null && !BuildCommand.Writes(file)) result.AddError($"--out needs a file that ends in .csv or .parquet, not '{file}'.");
+        });
+        var command = new Command("build", "Builds the covariates: lagged choices, lagged attributes, habit stocks and the rest.") { study, output };
+        command.SetAction(r => BuildCommand.Run(r.GetRequiredValue(study), r.GetValue(output), options(r)));
+        return command;
+    }
+
+    private static Command Estimate(Func<ParseResult, RunOptions> options)
+    {
+        var study = Study();
+        var output = new Option<string>("--out")
+        {
+            Description = "Write result.json, coefficients.csv and replicates.parquet to this folder.", HelpName = "DIR",
+        };
+        var strict = Strict();
+        var command = new Command("estimate", "The main job: fit, standard errors side by side, diagnostics, verdict.") { study, output, strict };
+        command.SetAction(r => EstimateCommand.Run(r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict), options(r)));
+        return command;
+    }
+
+    private static Argument<string> Study() => new("STUDY") { Description = "The study file (TOML)." };
+
+    private static Option<bool> Strict() => new("--strict") { Description = "End with exit code 3 when dependence is flagged." };
+
+    private sealed class TellVersion : SynchronousCommandLineAction
+    {
+        public override int Invoke(ParseResult parseResult)
+        {
+            var version = typeof(PanelAnalysis).Assembly.GetCustomAttribute<AssemblyInformationalVersionAttribute>()!.InformationalVersion.Split('+')[0];
+            parseResult.InvocationConfiguration.Output.WriteLine("panelchoice " + version);
+            return ExitCode.Done;
+        }
+    }
+}

@@ -1,0 +1,27 @@
+using PanelChoice.Study;
+
+namespace PanelChoice.Cli;
+
+/// <summary>Reads a study and goes on with it, or tells every problem in a line of its own.</summary>
+internal static class StudyRun
+{
+    /// <summary>Reads the study and hands it on.</summary>
+    /// <param name="path">The study file.</param>
+    /// <param name="options">Where to write.</param>
+    /// <param name="next">What to do with the study; gives a record or problems.</param>
+    /// <param name="done">What to do with the record; gives the exit code.</param>
+    public static int With<T>(string path, RunOptions options, Func<StudySpecification, Checked<T>> next, Func<StudySpecification, T, int> done)
+        where T : class
+    {
+        var study = StudyFileReader.Read(path);
+        if (study.Value is not { } specification) return Reject(options, study.Problems);
+        var outcome = next(specification);
+        return outcome.Value is { } value ? done(specification, value) : Reject(options, outcome.Problems);
+    }
+
+    private static int Reject(RunOptions options, IReadOnlyCollection<Problem> problems)
+    {
+        foreach (var problem in problems) options.Terminal.Problem(problem.Sentence);
+        return problems.Any(p => p.Id is "study.not_found" or "data.not_found") ? ExitCode.NotFound : ExitCode.Rejected;
+    }
+}
