@@ -1,0 +1,52 @@
+using System.Diagnostics;
+using PanelChoice.Cli;
+
+namespace PanelChoice.Tests.EndToEnd;
+
+/// <summary>What a command line came to.</summary>
+/// <param name="Code">Exit code.</param>
+/// <param name="Out">Standard output.</param>
+/// <param name="Error">Standard error.</param>
+internal sealed record Outcome(int Code, string Out, string Error);
+
+/// <summary>Runs the command line: as a process of its own where that matters, inside this one where it would only be slow.</summary>
+internal static class CommandLineProcess
+{
+    private static readonly string Dll = Path.Combine(AppContext.BaseDirectory, "PanelChoice.Cli.dll");
+
+    /// <summary>Runs the built program with both streams piped.</summary>
+    public static Outcome Run(string folder, params string[] args) => Run(folder, new Dictionary<string, string>(), args);
+
+    /// <summary>Runs the built program with both streams piped and some variables set.</summary>
+    public static Outcome Run(string folder, IReadOnlyDictionary<string, string> variables, params string[] args)
+    {
+        using var process = Start(folder, variables, args);
+        var error = process.StandardError.ReadToEndAsync();
+        var output = process.StandardOutput.ReadToEnd();
+        process.WaitForExit();
+        return new Outcome(process.ExitCode, output, error.Result);
+    }
+
+    /// <summary>Starts the built program with both streams piped.</summary>
+    public static Process Start(string folder, IReadOnlyDictionary<string, string> variables, params string[] args)
+    {
+        var start = new ProcessStartInfo("dotnet", [Dll, .. args])
+        {
+            WorkingDirectory = folder, RedirectStandardOutput = true, RedirectStandardError = true, RedirectStandardInput = true, UseShellExecute = false,
+        };
+        foreach (var (name, value) in variables) start.Environment[name] = value;
+        return Process.Start(start)!;
+    }
+
+    /// <summary>Runs the same code inside this process, as if both streams were piped.</summary>
+    public static Outcome InProcess(params string[] args) => InProcess(terminal: false, CancellationToken.None, args);
+
+    /// <summary>Runs the same code inside this process.</summary>
+    public static Outcome InProcess(bool terminal, CancellationToken cancellation, params string[] args)
+    {
+        using var output = new StringWriter { NewLine = "\n" };
+        using var error = new StringWriter { NewLine = "\n" };
+        var code = CommandLine.Run(args, new Terminal(output, error, terminal, false, AllowsColour: terminal), cancellation);
+        return new Outcome(code, output.ToString(), error.ToString());
+    }
+}

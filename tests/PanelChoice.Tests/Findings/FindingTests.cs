@@ -1,0 +1,200 @@
+using System.Collections.Immutable;
+using PanelChoice.Covariates;
+using PanelChoice.Diagnostics;
+using PanelChoice.Estimation;
+using PanelChoice.Findings;
+using PanelChoice.Inference;
+using PanelChoice.Study;
+using PanelChoice.Tests.Support;
+using Xunit;
+
+namespace PanelChoice.Tests.Findings;
+
+/// <summary>Which findings are drawn from which figures, and in which words.</summary>
+public class FindingTests
+{
+    private static readonly FindingsInput Fifty = HandMadeStages.Fifty;
+
+    [Fact]
+    public void Nothing_found_is_never_called_independent()
+    {
+        var said = Say(Fifty with { Diagnostics = HandMadeStages.Quiet }, FindingTopic.Independence);
+        Assert.Equal("independence.none_found", said[0].Id);
+        Assert.Contains("No sign of dependence", said[0].Sentence, StringComparison.Ordinal);
+        Assert.Contains("no proof", said[0].Sentence, StringComparison.Ordinal);
+        Assert.DoesNotContain(said, f => f.Sentence.Contains("are independent", StringComparison.Ordinal));
+    }
+
+    [Theory]
+    [InlineData(DependenceCause.Taste, "lasting taste")]
+    [InlineData(DependenceCause.Habit, "habit that the terms do not hold")]
+    [InlineData(DependenceCause.HabitAndTaste, "habit and lasting taste together")]
+    [InlineData(DependenceCause.SerialErrors, "fade slowly")]
+    [InlineData(DependenceCause.Unclear, "cause cannot be told")]
+    public void Dependence_is_said_with_its_likely_cause(DependenceCause cause, string words)
+    {
+        var verdict = Say(Fifty with { Diagnostics = HandMadeStages.Taste with { Cause = cause } }, FindingTopic.Independence)[0];
+        Assert.Equal(FindingSeverity.Warning, verdict.Severity);
+        Assert.Contains(words, verdict.Sentence, StringComparison.Ordinal);
+        Assert.Contains("detector p = 0.0001", verdict.Sentence, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void Where_only_the_date_score_passes_people_are_moved_by_the_same_days()
+    {
+        var verdict = Say(Fifty with { Diagnostics = HandMadeStages.Taste with { Cause = null, CommonDays = true } }, FindingTopic.Independence)[0];
+        Assert.Contains("people are moved by the same days", verdict.Sentence, StringComparison.Ordinal);
+        Assert.DoesNotContain("Its likely cause", verdict.Sentence, StringComparison.Ordinal);
+        Assert.Contains(FindingList.Of(Fifty with { Diagnostics = HandMadeStages.Taste with { Cause = null, CommonDays = true } }), f => f.Id == "advice.common_days");
+    }
+
+    [Fact]
+    public void Common_days_beside_another_cause_are_said_as_well()
+    {
+        var verdict = Say(Fifty with { Diagnostics = HandMadeStages.Taste with { CommonDays = true } }, FindingTopic.Independence)[0];
+        Assert.Contains("lasting taste", verdict.Sentence, StringComparison.Ordinal);
+        Assert.Contains("moved by the same days", verdict.Sentence, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void Where_nothing_can_be_tested_the_reason_is_given()
+    {
+        var none = HandMadeStages.Quiet with { Verdict = Verdict.NotApplicable, Reason = "Each person has one occasion." };
+        Assert.Contains("Each person has one occasion.", Say(Fifty with { Diagnostics = none }, FindingTopic.Independence)[0].Sentence, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void With_forty_clusters_or_more_the_clustered_error_is_advised_and_below_the_jackknife()
+    {
+        Assert.Contains(FindingList.Of(Fifty), f => f.Id == "advice.cluster" && f.Sentence.Contains("49 degrees of freedom", StringComparison.Ordinal));
+        var few = FindingList.Of(HandMadeStages.Fourteen);
+        Assert.Contains(few, f => f.Id == "advice.jackknife" && f.Sentence.Contains("13 degrees of freedom", StringComparison.Ordinal));
+        Assert.Contains(few, f => f.Id == "precision.jackknife");
+        Assert.DoesNotContain(few, f => f.Id == "advice.cluster");
+    }
+
+    [Fact]
+    public void With_few_clusters_and_no_jackknife_the_clustered_intervals_are_called_a_lower_bound()
+    {
+        var stages = HandMadeStages.Fourteen;
+        var refused = stages.Inference.Covariances[CovarianceKind.Jackknife] with { Matrix = null, Refusal = "A refit failed." };
+        var few = FindingList.Of(stages with
+        {
+            Inference = stages.Inference with { Covariances = stages.Inference.Covariances.SetItem(CovarianceKind.Jackknife, refused) },
+        });
+        Assert.Contains(few, f => f.Id == "advice.few_no_jackknife");
+        Assert.Contains(few, f => f.Id == "precision.refused" && f.Sentence.Contains("A refit failed.", StringComparison.Ordinal));
+    }
+
+    [Fact]
+    public void What_a_clustered_error_does_not_repair_is_said_where_dependence_was_found_and_only_there()
+    {
+        Assert.Contains(FindingList.Of(Fifty), f => f.Id == "advice.not_repaired");
+        Assert.DoesNotContain(FindingList.Of(Fifty with { Diagnostics = HandMadeStages.Quiet }), f => f.Id == "advice.not_repaired");
+    }
+
+    [Fact]
+    public void The_three_cautions_are_always_said()
+    {
+        foreach (var stages in new[] { Fifty, HandMadeStages.Fourteen, Fifty with { Model = Fifty.Model with { Status = FitStatus.Stopped } } })
+            Assert.Equal(
+                ["caution.interval", "caution.personal_data", "caution.forecast"],
+                FindingList.Of(stages).Where(f => f.Topic == FindingTopic.Caution).Select(f => f.Id));
+    }
+
+    [Fact]
+    public void A_habit_term_is_told_with_its_interval_and_direction()
+    {
+        var habit = Say(Fifty, FindingTopic.Past).Single(f => f.Id == "past.habit");
+        Assert.Contains("'same as last time', the alternative taken last time: ", habit.Sentence, StringComparison.Ordinal);
+        Assert.Contains("more attractive now", habit.Sentence, StringComparison.Ordinal);
+        Assert.Equal(3, habit.Figures.Length);
+        // In a nested model the coefficient does not multiply the odds against every other alternative, so no odds are given.
+        Assert.DoesNotContain("odds", habit.Sentence, StringComparison.Ordinal);
+    }
+
+    [Theory]
+    [InlineData(-1.0, "less attractive now")]
+    [InlineData(0.0, "do not show which way")]
+    [InlineData(1.0, "more attractive now")]
+    public void The_direction_follows_the_interval_not_the_estimate(double centre, string words)
+    {
+        var habit = Say(WithFigures(5, new KindFigures(0.1, new Interval(centre - 0.2, centre + 0.2), 0.5, null)), FindingTopic.Past)[0];
+        Assert.Contains(words, habit.Sentence, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void Odds_are_given_only_in_plain_logit()
+    {
+        var stages = WithFigures(5, new KindFigures(0.1, new Interval(0.5, 1), 0.01, null));
+        var plain = PastFindings.Of(stages with { Study = stages.Study with { Nests = [] } }).First();
+        Assert.Contains($"by {PlainNumber.Ratio(Math.Exp(stages.Model.Parameters[5]))} (1.65 to 2.72)", plain.Sentence, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void A_model_that_does_not_look_back_says_so()
+    {
+        var layout = Fifty.Model.Layout;
+        var present = Fifty.Model.Layout with { Parameters = [.. layout.Parameters.Select(p => p with { Role = CovariateRole.Present })] };
+        var likelihood = new PanelChoice.Likelihood.ScalarNestedLogit(Fifty.Model.Design with { Layout = present }, NestedLogitForm.UtilityScaled, 1);
+        Assert.Equal("past.none", Say(Fifty with { Model = Fifty.Model with { Likelihood = likelihood } }, FindingTopic.Past).Single().Id);
+    }
+
+    [Theory]
+    [InlineData(0.6, 0.001, "nests.consistent", "more readily than others do")]
+    [InlineData(0.9, 0.4, "nests.consistent", "do not show")]
+    [InlineData(1.2, 0.3, "nests.above", "within error of it")]
+    [InlineData(1.9, 0.001, "nests.inconsistent", "not consistent with utility maximisation")]
+    [InlineData(1.0, 1.0, "nests.dissolved", "changes nothing")]
+    public void A_nest_is_judged_against_its_limit(double l, double p, string id, string words)
+    {
+        var at = Fifty.Layout.Nests[0].Parameter;
+        var stages = WithFigures(at, new KindFigures(0.1, new Interval(l * 0.8, l * 1.25), p, null));
+        stages = stages with { Model = stages.Model with { Parameters = stages.Model.Parameters.SetItem(at, l) } };
+        var said = Say(stages, FindingTopic.Nests)[0];
+        Assert.Equal(id, said.Id);
+        Assert.Contains(words, said.Sentence, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void The_headline_on_precision_gives_habit_median_and_largest_and_says_that_it_describes()
+    {
+        var said = Say(Fifty, FindingTopic.Precision);
+        Assert.Equal(["precision.habit", "precision.overall"], said.Take(2).Select(f => f.Id));
+        var ratios = Fifty.Inference.Parameters.Select(p => p.SeRatio!.Value).Order().ToList();
+        Assert.Equal(ratios[^1], said[1].Figures.Single(f => f.Name == "largest").Value);
+        Assert.Contains("the test is the detector", said[1].Sentence, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void A_person_that_moves_a_term_is_named_by_pseudonym()
+    {
+        var stages = Fifty with
+        {
+            Inference = Fifty.Inference with { Clusters = Fifty.Inference.Clusters with { MostInfluential = [new Influence(3, 5, 4)] } },
+        };
+        var said = FindingList.Of(stages).Single(f => f.Id == "precision.influential");
+        Assert.Matches("^Without person [0-9a-f]{6,} ", said.Sentence);
+    }
+
+    [Fact]
+    public void Pseudonyms_are_stable_differ_between_files_and_between_ids()
+    {
+        var ids = Enumerable.Range(0, 5000).Select(i => "id " + i).ToImmutableArray();
+        var one = Pseudonyms.Of("aa", ids);
+        Assert.Equal(one.AsEnumerable(), Pseudonyms.Of("aa", ids).AsEnumerable());
+        Assert.Equal(ids.Length, one.Distinct().Count());
+        Assert.Empty(one.Intersect(Pseudonyms.Of("ab", ids)).Skip(5));
+        Assert.DoesNotContain(ids, id => one.Contains(id));
+    }
+
+    private static ImmutableArray<Finding> Say(FindingsInput stages, FindingTopic topic) => [.. FindingList.Of(stages).Where(f => f.Topic == topic)];
+
+    private static FindingsInput WithFigures(int parameter, KindFigures figures) => Fifty with
+    {
+        Inference = Fifty.Inference with
+        {
+            Parameters = [.. Fifty.Inference.Parameters.Select(p => p.Parameter == parameter ? p with { ByKind = p.ByKind.SetItem(CovarianceKind.Cluster, figures) } : p)],
+        },
+    };
+}
