@@ -77,9 +77,19 @@ internal static class CommandLine
         RunOptions Options(ParseResult r) => new(
             r.GetValue(threads), r.GetValue(quiet), terminal.OutIsTerminal && terminal.AllowsColour && !r.GetValue(noColour), terminal, cancellation);
 
+        root.Add(Check(Options));
         root.Add(Build(Options));
         root.Add(Estimate(Options));
         return root;
+    }
+
+    private static Command Check(Func<ParseResult, RunOptions> options)
+    {
+        var study = Study();
+        var json = new Option<string>("--json") { Description = "Also write the profile to this file.", HelpName = "FILE" };
+        var command = new Command("check", "Reads and checks the panel and prints its profile.") { study, json };
+        command.SetAction(r => CheckCommand.Run(r.GetRequiredValue(study), r.GetValue(json), options(r)));
+        return command;
     }
 
     private static Command Build(Func<ParseResult, RunOptions> options)

@@ -102,6 +102,7 @@ public class BadInputTests
     }
 
     [Theory]
+    [InlineData("check")]
     [InlineData("build")]
     public void Check_and_build_reject_the_same_data(string command)
     {

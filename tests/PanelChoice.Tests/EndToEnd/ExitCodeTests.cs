@@ -46,6 +46,7 @@ public class ExitCodeTests
     [InlineData("estimate", "study.toml", "--threads", "-1")]
     [InlineData("estimate", "study.toml", "and", "another")]
     [InlineData("build", "study.toml", "--out", "table.xlsx")]
+    [InlineData("check", "study.toml", "--strict")]
     public void A_command_line_that_makes_no_sense_ends_with_64(params string[] args)
     {
         var outcome = CommandLineProcess.InProcess(args);
@@ -59,6 +60,7 @@ public class ExitCodeTests
     public void No_argument_at_all_ends_with_64() => Assert.Equal(64, CommandLineProcess.InProcess().Code);
 
     [Theory]
+    [InlineData("check")]
     [InlineData("build")]
     [InlineData("estimate")]
     public void A_study_that_is_not_there_ends_with_66_and_one_line(string command)
@@ -93,6 +95,7 @@ public class ExitCodeTests
 
     [Theory]
     [InlineData("build", "--out", "nowhere/covariates.csv")]
+    [InlineData("check", "--json", "nowhere/profile.json")]
     [InlineData("estimate", "--out", "study.toml/below")]
     public void An_output_that_cannot_be_written_ends_with_73(string command, string option, string path)
     {
@@ -143,7 +146,7 @@ public class ExitCodeTests
     {
         var help = CommandLineProcess.InProcess("--help");
         Assert.Equal(0, help.Code);
-        Assert.All(["build", "estimate", "--threads", "--quiet", "--no-color"], word => Assert.Contains(word, help.Out, StringComparison.Ordinal));
+        Assert.All(["check", "build", "estimate", "--threads", "--quiet", "--no-color"], word => Assert.Contains(word, help.Out, StringComparison.Ordinal));
         var version = CommandLineProcess.InProcess("--version");
         Assert.Equal(0, version.Code);
         Assert.Matches(@"^panelchoice \d+\.\d+\.\d+\n$", version.Out);

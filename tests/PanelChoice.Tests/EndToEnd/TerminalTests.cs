@@ -9,6 +9,7 @@ public class TerminalTests
     private const char Escape = '\u001b';
 
     [Theory]
+    [InlineData("check")]
     [InlineData("build")]
     [InlineData("estimate")]
     public void Nothing_is_wider_than_80_columns_even_with_long_names(string command)
