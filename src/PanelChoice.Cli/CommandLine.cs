@@ -80,6 +80,7 @@ internal static class CommandLine
         root.Add(Check(Options));
         root.Add(Build(Options));
         root.Add(Estimate(Options));
+        root.Add(Demo(Options));
         return root;
     }
 
@@ -116,6 +117,18 @@ internal static class CommandLine
         var strict = Strict();
         var command = new Command("estimate", "The main job: fit, standard errors side by side, diagnostics, verdict.") { study, output, strict };
         command.SetAction(r => EstimateCommand.Run(r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict), options(r)));
+        return command;
+    }
+
+    private static Command Demo(Func<ParseResult, RunOptions> options)
+    {
+        var folder = new Argument<string>("DIR")
+        {
+            Description = "Folder for the demo; it is made when it does not exist.", Arity = ArgumentArity.ZeroOrOne, DefaultValueFactory = _ => "panelchoice-demo",
+        };
+        var strict = Strict();
+        var command = new Command("demo", "Writes two invented panels with their study files and runs 'estimate' on both.") { folder, strict };
+        command.SetAction(r => DemoCommand.Run(r.GetRequiredValue(folder), r.GetValue(strict), options(r)));
         return command;
     }
 

@@ -30,7 +30,7 @@ internal static class ProfileReport
                 + $"mean {PlainNumber.Rounded(weights.Mean, null)}.");
         if (profile.Clusters.By != "person")
             letter.Gap().Paragraph(
-                $"Clusters ('{profile.Clusters.By}'): {PlainNumber.Count(profile.Clusters.Count)}, of {Range(profile.Clusters.Occasions)} occasions.");
+                $"Clusters ('{profile.Clusters.By}'): {PlainNumber.Count(profile.Clusters.Count)}; occasions in one: {Range(profile.Clusters.Occasions)}.");
         letter.Heading("What is offered and chosen");
         Alternatives(letter, profile);
         if (profile.LastChoice is { } last) LastChoice(letter, profile, last, input.Panel);
@@ -46,7 +46,7 @@ internal static class ProfileReport
     {
         var text = $"{PlainNumber.Counted(profile.Rows, "row")}, {PlainNumber.Counted(profile.Occasions, "occasion")}, {PlainNumber.Counted(profile.Persons, "person")}";
         if (profile.FirstOccasion is { } first) text += $", from {first} to {profile.LastOccasion}";
-        text += $". A person has {Range(profile.OccasionsPerPerson)} occasions. An occasion offers {Range(profile.OfferedAlternatives)} alternatives";
+        text += $". Occasions of a person: {Range(profile.OccasionsPerPerson)}. Alternatives offered on an occasion: {Range(profile.OfferedAlternatives)}";
         return text + (profile.SingleAlternativeOccasions > 0
             ? $"; {PlainNumber.Counted(profile.SingleAlternativeOccasions, "occasion")} with a single one can only serve as history."
             : ".");
@@ -66,7 +66,7 @@ internal static class ProfileReport
     private static string Range(Spread spread) =>
         spread.Smallest == spread.Largest
             ? PlainNumber.Count(spread.Smallest)
-            : $"{PlainNumber.Count(spread.Smallest)} to {PlainNumber.Count(spread.Largest)} (in the middle {spread.Median.ToString("0.#", System.Globalization.CultureInfo.InvariantCulture)})";
+            : $"{PlainNumber.Count(spread.Smallest)} to {PlainNumber.Count(spread.Largest)} (median {spread.Median.ToString("0.#", System.Globalization.CultureInfo.InvariantCulture)})";
 
     private static void Alternatives(Letter letter, PanelProfile profile) => letter.Table(
         [

@@ -146,7 +146,7 @@ public class ExitCodeTests
     {
         var help = CommandLineProcess.InProcess("--help");
         Assert.Equal(0, help.Code);
-        Assert.All(["check", "build", "estimate", "--threads", "--quiet", "--no-color"], word => Assert.Contains(word, help.Out, StringComparison.Ordinal));
+        Assert.All(["check", "build", "estimate", "demo", "--threads", "--quiet", "--no-color"], word => Assert.Contains(word, help.Out, StringComparison.Ordinal));
         var version = CommandLineProcess.InProcess("--version");
         Assert.Equal(0, version.Code);
         Assert.Matches(@"^panelchoice \d+\.\d+\.\d+\n$", version.Out);
