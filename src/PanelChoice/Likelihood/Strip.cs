@@ -6,8 +6,8 @@ using PanelChoice.Design;
 namespace PanelChoice.Likelihood;
 
 /// <summary>
-/// A strip is a run of tiles of one block, short enough that everything about it stays in the first-level cache. This is its memory, and
-/// the step that fills it from the design: weights, utilities, choices. Child numbers are those of <see cref="Study.NestTree"/>.
+/// A strip is a block, or a run of tiles of a long one, short enough that everything about it stays in a core's cache. This is its memory,
+/// and the step that fills it from the design: weights, utilities, choices. Child numbers are those of <see cref="Study.NestTree"/>.
 /// One instance is a work space: it is not for use by several threads at once.
 /// </summary>
 internal sealed class Strip

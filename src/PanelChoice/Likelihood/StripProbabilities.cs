@@ -7,7 +7,7 @@ namespace PanelChoice.Likelihood;
 
 /// <summary>
 /// The tree recursion on a strip: values and probabilities from the alternatives up, first derivatives from the root down. Node outside,
-/// tile of lanes inside: short loops over rows in the first-level cache. Letters as in <see cref="TreeProbabilities"/> and
+/// tile of lanes inside: short loops over rows that stay in the cache. Letters as in <see cref="TreeProbabilities"/> and
 /// <see cref="Strip"/>; s is 1/l_m (utility-scaled) or 1 (unscaled), o is the situation's weight on the path to the choice, else 0.
 /// <code>
 /// up     t_c = s (W_c - max) - log sum      p_c = exp t_c      W_m = max + l log sum | l (max + log sum)     log P = sum over nodes of o_c t_c

@@ -9,7 +9,7 @@ namespace PanelChoice.Likelihood;
 
 /// <summary>
 /// The kernel that <c>estimate</c> runs: eight situations at a time, one in each lane of a vector. The blocks of a design are cut into strips
-/// that stay in the first-level cache (<see cref="Strip"/>); a strip goes up and down the tree (<see cref="StripProbabilities"/>), and its
+/// that stay in the cache (<see cref="Strip"/>); a strip goes up and down the tree (<see cref="StripProbabilities"/>), and its
 /// derivatives are summed (<see cref="StripGradient"/>, <see cref="StripHessian"/>). Formulas: <see cref="TreeProbabilities"/> and
 /// <see cref="ScalarNestedLogit"/>, against which it is checked.
 /// <para>

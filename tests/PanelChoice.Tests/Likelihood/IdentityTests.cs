@@ -59,13 +59,15 @@ public class IdentityTests
     public void The_dissimilarity_of_a_nest_with_one_offered_alternative_has_derivatives_exactly_zero(DoNotSize<int> seed) => ForEachKernel(kernel =>
     {
         var made = RandomTreeCase.Make(seed.Item, isOrdered: true);
-        var design = made.Design(NestedLogitForm.UtilityScaled);
-        var found = Evaluate(kernel, NestedLogitForm.UtilityScaled, made);
-        var K = made.Point.Length;
-        foreach (var nest in design.Layout.Nests.Where(n => n.WideSituations == 0))
+        foreach (var nest in made.Nests.Select(n => n.Name))
         {
-            Assert.Equal(0, found.Gradient[nest.Parameter]);
-            for (var k = 0; k < K; k++) Assert.Equal(0, found.Hessian[(nest.Parameter * K) + k]);
+            var narrow = made.WithOneOfferedUnder(nest);
+            var place = narrow.Design(NestedLogitForm.UtilityScaled).Layout.Nests.Single(n => n.Name == nest);
+            Assert.Equal(0, place.WideSituations);
+            var found = Evaluate(kernel, NestedLogitForm.UtilityScaled, narrow);
+            var K = made.Point.Length;
+            Assert.Equal(0, found.Gradient[place.Parameter]);
+            for (var k = 0; k < K; k++) Assert.Equal(0, found.Hessian[(place.Parameter * K) + k]);
         }
     });
 

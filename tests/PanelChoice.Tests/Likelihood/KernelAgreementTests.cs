@@ -96,6 +96,23 @@ public class KernelAgreementTests
         Assert.InRange(Kernels.Distance(expected.Hessian, found.Hessian), 0, 1e-11);
     }
 
+    [Theory]
+    [MemberData(nameof(Kernels.Table), MemberType = typeof(Kernels))]
+    public void A_person_with_weight_zero_does_no_harm_even_where_its_utilities_overflow(string kernel, NestedLogitForm form)
+    {
+        var made = RandomTreeCase.Make(6, 8, 6);
+        var first = made.OccasionsOf[0];
+        int[] everything = [.. Enumerable.Range(0, made.Names.Length)];
+        double[][] huge = [.. made.Chosen.Select((_, s) => everything.Select(j => s < first ? (j + 1) * 1e200 : 0).ToArray())];
+        var overflowing = made with { Terms = [.. made.Terms, new RandomTerm(everything, false, huge)], Coefficients = [.. made.Coefficients, 1e200] };
+        double[] weight = [.. made.Weight.Select((w, p) => p == 0 ? 0 : w + 1)];
+        var expected = Kernels.Create(kernel, made.Design(form), form).Evaluate(made.Point, weight, Derivatives.Hessian);
+        var found = Kernels.Create(kernel, overflowing.Design(form), form).Evaluate(overflowing.Point, weight, Derivatives.Hessian);
+        Assert.InRange(Kernels.Distance([expected.Value], [found.Value]), 0, 1e-13);
+        Assert.InRange(Kernels.Distance(expected.Gradient, found.Gradient.RemoveAt(made.Coefficients.Length)), 0, 1e-12);
+        Assert.All(found.Hessian, h => Assert.True(double.IsFinite(h)));
+    }
+
     /// <summary>Several blocks, and a last person longer than a block, so that blocks are cut into strips.</summary>
     private static IEnumerable<RandomTreeCase> LargerCases()
     {

@@ -121,6 +121,21 @@ internal sealed record RandomTreeCase(
         };
     }
 
+    /// <summary>The same case with at most one alternative offered below a nest: the chosen one where it lies there, else the first.</summary>
+    public RandomTreeCase WithOneOfferedUnder(string nest)
+    {
+        var tree = Tree;
+        var under = tree.AlternativesUnder(Enumerable.Range(0, tree.Nodes.Length).First(n => tree.Nodes[n].Name == nest)).ToHashSet();
+        return this with
+        {
+            Offered = [.. Offered.Select((row, s) =>
+            {
+                var kept = under.Contains(Chosen[s]) ? Chosen[s] : Enumerable.Range(0, row.Length).FirstOrDefault(j => under.Contains(j) && row[j], -1);
+                return row.Select((o, j) => o && (!under.Contains(j) || j == kept)).ToArray();
+            })],
+        };
+    }
+
     private CovariateSet Covariates()
     {
         var covariates = Terms.Select((t, k) => new Covariate(
