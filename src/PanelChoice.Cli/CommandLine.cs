@@ -1,7 +1,9 @@
 using System.CommandLine;
+using System.CommandLine.Help;
 using System.CommandLine.Invocation;
 using System.Reflection;
 using PanelChoice.Cli.Commands;
+using PanelChoice.Cli.Report;
 
 namespace PanelChoice.Cli;
 
@@ -21,7 +23,7 @@ internal static class CommandLine
         var parsed = Root(terminal, cancellation).Parse(args, new ParserConfiguration { ResponseFileTokenReplacer = null });
         if (parsed.Errors.Count > 0)
         {
-            foreach (var message in parsed.Errors.Select(e => e.Message).Distinct()) terminal.Problem(message);
+            foreach (var message in Messages(parsed)) terminal.Problem(message);
             terminal.Error.WriteLine(Closing);
             return ExitCode.Usage;
         }
@@ -53,13 +55,23 @@ internal static class CommandLine
         }
     }
 
+    // A mistyped command is told as such; that therefore no command was given goes without saying.
+    private static List<string> Messages(ParseResult parsed)
+    {
+        var messages = parsed.Errors.Select(e => e.Message).Distinct().ToList();
+        var unknown = messages.Where(m => m.StartsWith("Unrecognized", StringComparison.Ordinal)).ToList();
+        return unknown.Count > 0 && parsed.CommandResult.Command is RootCommand ? unknown : messages;
+    }
+
     private static RootCommand Root(Terminal terminal, CancellationToken cancellation)
     {
         var root = new RootCommand("From a raw panel of repeated travel choices to estimates, honest standard errors and a verdict on independence.");
+        root.HelpName = "panelchoice";
         foreach (var option in root.Options.OfType<VersionOption>()) option.Action = new TellVersion();
+        foreach (var option in root.Options.OfType<HelpOption>()) option.Action = new HelpAction { MaxWidth = Letter.Width };
         var threads = new Option<int>("--threads")
         {
-            Description = "Threads to use; no figure depends on it. Default: all processors.", HelpName = "N", Recursive = true,
+            Description = "Threads to use; no figure depends on it.", HelpName = "N", Recursive = true,
             DefaultValueFactory = _ => Environment.ProcessorCount,
             CustomParser = result =>
             {
@@ -75,7 +87,7 @@ internal static class CommandLine
         root.Add(quiet);
         root.Add(noColour);
         RunOptions Options(ParseResult r) => new(
-            r.GetValue(threads), r.GetValue(quiet), terminal.OutIsTerminal && terminal.AllowsColour && !r.GetValue(noColour), terminal, cancellation);
+            r.GetValue(threads), r.GetValue(quiet), r.GetValue(noColour), terminal, cancellation);
 
         root.Add(Check(Options));
         root.Add(Build(Options));

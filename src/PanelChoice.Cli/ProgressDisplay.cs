@@ -17,12 +17,14 @@ internal static class ProgressDisplay
         if (options.Quiet || !options.Terminal.ErrorIsTerminal) return work(new WorkContext(options.Threads, null, options.Cancellation));
         var console = AnsiConsole.Create(new AnsiConsoleSettings
         {
-            ColorSystem = options.Colour ? ColorSystemSupport.Detect : ColorSystemSupport.NoColors,
+            Ansi = AnsiSupport.Yes,
+            Interactive = InteractionSupport.Yes,
+            ColorSystem = options.Terminal.AllowsColour && !options.NoColour ? ColorSystemSupport.Standard : ColorSystemSupport.NoColors,
             Out = new AnsiConsoleOutput(options.Terminal.Error),
         });
         return console.Progress()
             .AutoClear(true)
-            .Columns(new TaskDescriptionColumn { Alignment = Justify.Left }, new ProgressBarColumn { Width = 24 }, new RateColumn(), new TimeLeftColumn())
+            .Columns(new TaskDescriptionColumn { Alignment = Justify.Left }, new ProgressBarColumn { Width = 16 }, new RateColumn(), new TimeLeftColumn())
             .Start(display => work(new WorkContext(options.Threads, new Steps(display), options.Cancellation)));
     }
 
@@ -36,7 +38,8 @@ internal static class ProgressDisplay
         {
             lock (gate)
             {
-                if (!tasks.TryGetValue(value.Step, out var task))
+                // A step that starts anew (a second fit, say) gets a line of its own.
+                if (!tasks.TryGetValue(value.Step, out var task) || (task.IsFinished && value.Done < value.Total))
                     tasks[value.Step] = task = display.AddTask(Markup.Escape(value.Step), new ProgressTaskSettings { MaxValue = Math.Max(1, value.Total) });
                 task.MaxValue = Math.Max(1, value.Total);
                 // Reports of several threads may arrive out of order; a bar never goes back.
@@ -48,18 +51,23 @@ internal static class ProgressDisplay
 
     private sealed class RateColumn : ProgressColumn
     {
+        protected override bool NoWrap => true;
+
         public override IRenderable Render(RenderOptions options, ProgressTask task, TimeSpan deltaTime)
         {
             var counts = string.Create(CultureInfo.InvariantCulture, $"{task.Value:#,0} of {task.MaxValue:#,0}");
             var seconds = task.ElapsedTime?.TotalSeconds ?? 0;
-            return new Text(seconds > 0.5 && task.Value > 0
-                ? string.Create(CultureInfo.InvariantCulture, $"{counts}, {task.Value / seconds:0.#} per second")
+            var rate = task.Value / Math.Max(seconds, 1e-3);
+            return new Text(seconds > 0.5 && task.Value > 0 && !task.IsFinished
+                ? string.Create(CultureInfo.InvariantCulture, $"{counts}, {(rate < 10 ? Math.Round(rate, 1) : Math.Round(rate))} per second")
                 : counts);
         }
     }
 
     private sealed class TimeLeftColumn : ProgressColumn
     {
+        protected override bool NoWrap => true;
+
         public override IRenderable Render(RenderOptions options, ProgressTask task, TimeSpan deltaTime)
         {
             var seconds = task.ElapsedTime?.TotalSeconds ?? 0;

@@ -10,7 +10,8 @@ internal sealed record Terminal(TextWriter Out, TextWriter Error, bool OutIsTerm
 {
     /// <summary>The streams of this process.</summary>
     public static Terminal OfProcess() => new(
-        Console.Out, Console.Error, !Console.IsOutputRedirected, !Console.IsErrorRedirected, Allows(Environment.GetEnvironmentVariable));
+        Console.Out, Console.Error, !Console.IsOutputRedirected, !Console.IsErrorRedirected && Environment.GetEnvironmentVariable("TERM") != "dumb",
+        Allows(Environment.GetEnvironmentVariable));
 
     /// <summary>Whether the environment allows colour: NO_COLOR is unset or empty, and the terminal is no dumb one.</summary>
     /// <param name="variable">Reads a variable.</param>

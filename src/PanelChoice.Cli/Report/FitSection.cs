@@ -10,9 +10,10 @@ internal static class FitSection
     {
         var fit = result.Fit;
         var nested = result.Parameters.Any(p => p.Kind == ParameterResult.Dissimilarity);
+        var estimatesNests = result.Parameters.Any(p => p.Kind == ParameterResult.Dissimilarity && p.IsFree);
         letter.Paragraph(
             (nested ? $"Nested logit, {fit.Form} form" : "Plain logit") + $", {PlainNumber.Counted(fit.FreeParameters, "free parameter")}, by maximum likelihood. "
-            + Ending(fit));
+            + Ending(fit, estimatesNests));
         letter.Gap();
         letter.Table(
             [new TableColumnPlan("log-likelihood", IsNumber: false), new TableColumnPlan("")],
@@ -24,9 +25,10 @@ internal static class FitSection
         letter.Paragraphs(fit.Warnings.Select(w => (w.Sentence, false)));
     }
 
-    private static string Ending(FitSummary fit)
+    private static string Ending(FitSummary fit, bool estimatesNests)
     {
         if (fit.Status != FitSummary.Converged) return $"The search ended with status '{fit.Status}'.";
+        if (!estimatesNests && fit.Starts.Converged == 1) return "One start was enough, as there is no dissimilarity to estimate; it converged.";
         var starts = fit.Starts;
         var where = starts.Optima.Length > 1 ? "not all at the same maximum" : "all at the same maximum";
         return starts.Requested <= 1

@@ -16,8 +16,10 @@ internal static class TermsSection
         if (!result.Parameters.Any(p => p.StandardErrors.Cluster is not null)) return;
         letter.Gap();
         letter.Paragraph(
-            "The last column is the clustered standard error over the pooled one: above 1, it says by how much pooling, which takes every occasion "
-            + "for independent evidence, makes the standard error too small.");
+            IsCrossSection(result)
+                ? "The last column is the clustered standard error over the pooled one."
+                : "The last column is the clustered standard error over the pooled one: above 1, it says by how much pooling, which takes every occasion "
+                + "for independent evidence, makes the standard error too small.");
         EstimateReport.Say(letter, result, FindingTopic.Precision, gapFirst: true);
         letter.Heading($"Intervals ({PlainNumber.PercentInWords(result.Settings.Confidence)}) and tests");
         Intervals(letter, result);
@@ -35,6 +37,7 @@ internal static class TermsSection
             (new TableColumnPlan("pooled"), (p, d) => Error(p, p.StandardErrors.Pooled, d)),
             (new TableColumnPlan("clustered"), (p, d) => Error(p, p.StandardErrors.Cluster, d)),
         ];
+        if (IsCrossSection(result)) columns.Insert(3, (new TableColumnPlan("robust"), (p, d) => Error(p, p.StandardErrors.Robust, d)));
         if (hasJackknife) columns.Add((new TableColumnPlan(jackknife), (p, d) => Error(p, p.StandardErrors.Jackknife, d)));
         if (hasBootstrap) columns.Add((new TableColumnPlan("bootstrap"), (p, d) => Error(p, p.StandardErrors.Bootstrap, d)));
         columns.Add((new TableColumnPlan("ratio"), (p, _) => p.SeRatio is { } r ? PlainNumber.Ratio(r) : ""));
@@ -45,19 +48,28 @@ internal static class TermsSection
 
     private static void Intervals(Letter letter, AnalysisResult result)
     {
-        var few = result.Clusters.Count < FewClusters && result.Parameters.Any(p => p.Intervals.Jackknife is not null);
+        var few = !IsCrossSection(result) && result.Clusters.Count < FewClusters && result.Parameters.Any(p => p.Intervals.Jackknife is not null);
         List<(TableColumnPlan Plan, Func<ParameterResult, string> Cell)> columns =
         [
             (new TableColumnPlan("term", IsNumber: false), Label),
-            (new TableColumnPlan("clustered interval"), p => Range(p, p.Intervals.Cluster)),
-            (new TableColumnPlan("p"), p => p.PValues.Cluster is { } v ? PlainNumber.PValue(v) : ""),
         ];
+        if (IsCrossSection(result))
+        {
+            columns.Add((new TableColumnPlan("robust interval"), p => Range(p, p.Intervals.Robust)));
+            columns.Add((new TableColumnPlan("p"), p => p.PValues.Robust is { } v ? PlainNumber.PValue(v) : ""));
+        }
+        else
+        {
+            columns.Add((new TableColumnPlan("clustered interval"), p => Range(p, p.Intervals.Cluster)));
+            columns.Add((new TableColumnPlan("p"), p => p.PValues.Cluster is { } v ? PlainNumber.PValue(v) : ""));
+        }
+
         if (few)
         {
             columns.Add((new TableColumnPlan("jackknife interval"), p => Range(p, p.Intervals.Jackknife)));
             columns.Add((new TableColumnPlan("p"), p => p.PValues.Jackknife is { } v ? PlainNumber.PValue(v) : ""));
         }
-        else
+        else if (!IsCrossSection(result))
             columns.Add((new TableColumnPlan("worth"), p => p.EquivalentOccasions is { } n ? PlainNumber.Count(n) : ""));
 
         letter.Table([.. columns.Select(c => c.Plan)], result.Parameters.Select(p => (IReadOnlyList<string>)[.. columns.Select(c => c.Cell(p))]));
@@ -65,10 +77,12 @@ internal static class TermsSection
         letter.Paragraph(
             "p is two-sided, against 0 for a term"
             + (result.Parameters.Any(p => p.Kind == ParameterResult.Dissimilarity) ? " and against its upper limit for a nest." : ".")
-            + (few
+            + (few || IsCrossSection(result)
                 ? ""
                 : $" Worth: as many independent occasions, instead of {PlainNumber.Count(result.Sample.Occasions)} tied ones, would give the same precision."));
     }
+
+    private static bool IsCrossSection(AnalysisResult result) => result.Clusters.Largest == 1;
 
     private static string Label(ParameterResult p) => p.Kind == ParameterResult.Dissimilarity ? $"{p.Name} (nest)" : p.Label;
 

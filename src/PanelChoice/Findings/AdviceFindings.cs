@@ -24,7 +24,7 @@ internal static class AdviceFindings
         }
 
         yield return WhatToReport(input, inference);
-        if (OneOccasionEach(input)) yield break;
+        if (input.IsCrossSection) yield break;
         if (input.Diagnostics.CommonDays == true)
             yield return new Finding(
                 "advice.common_days", FindingTopic.Advice, FindingSeverity.Warning,
@@ -47,7 +47,7 @@ internal static class AdviceFindings
         var clusters = inference.Clusters;
         var by = clusters.By == "person" ? "persons" : $"groups of '{clusters.By}'";
         var confidence = PlainNumber.PercentInWords(input.Study.Inference.Confidence);
-        if (OneOccasionEach(input))
+        if (input.IsCrossSection)
             return new Finding(
                 "advice.cross_section", FindingTopic.Advice, FindingSeverity.Information,
                 "Every person has one occasion, so occasions are the independent units: report the robust standard error, which stays right when the "
@@ -84,7 +84,4 @@ internal static class AdviceFindings
                 : "The clustered standard error repairs the interval, not the model: the dependence found is a part of behaviour that the terms leave out. "
                 + "Try a term that looks back, such as last_choice = 1 with past_share = true beside it.", []);
     }
-
-    private static bool OneOccasionEach(FindingsInput input) =>
-        input.Model.Design.Situations == input.Model.Design.Persons && input.Model.Design.Clusters.Length == input.Model.Design.Persons;
 }

@@ -8,7 +8,7 @@ internal static class CautionFindings
         if (input.Covariates.Panel.IsWeighted)
             yield return new Finding(
                 "caution.weights", FindingTopic.Caution, FindingSeverity.Notice,
-                "Sampling weights enter as given. Ratios of standard errors use weights scaled to mean 1; the diagnostics use an unweighted fit.", []);
+                "Sampling weights enter as given; ratios of standard errors use weights scaled to mean 1.", []);
         yield return new Finding(
             "caution.interval", FindingTopic.Caution, FindingSeverity.Information,
             "A clustered standard error repairs the interval, not a biased habit coefficient.", []);

@@ -31,6 +31,9 @@ public sealed record FindingsInput(
             ? CovarianceKind.Jackknife
             : CovarianceKind.Cluster;
 
+    /// <summary>Whether every person has one occasion and is a cluster of its own: then occasions are the independent units.</summary>
+    internal bool IsCrossSection => Model.Design.Situations == Model.Design.Persons && Model.Design.Clusters.Length == Model.Design.Persons;
+
     internal string QuotedInWords => Quoted == CovarianceKind.Jackknife ? "jackknife" : "clustered";
 
     /// <summary>Whether there is any standard error: not where the estimate is no interior maximum, or every parameter is fixed.</summary>

@@ -13,10 +13,10 @@ internal static class IndependenceFindings
         {
             Verdict.NotApplicable => new Finding(
                 "independence.not_applicable", FindingTopic.Independence, FindingSeverity.Notice,
-                $"Independence was not tested: {(diagnostics.Reason ?? "there is nothing to test").TrimEnd('.')}.", []),
+                $"Independence was not tested. {diagnostics.Reason}".TrimEnd(), []),
             Verdict.NoneFound => new Finding(
                 "independence.none_found", FindingTopic.Independence, FindingSeverity.Information,
-                $"No sign of dependence was found{Detector(diagnostics)}. That is no proof of its absence: a weak dependence can hide in a panel of this size.",
+                $"No sign of dependence was found{Detector(diagnostics)}. That is no proof of its absence.",
                 Figures(diagnostics)),
             _ => new Finding("independence.dependence", FindingTopic.Independence, FindingSeverity.Warning, Dependence(diagnostics), Figures(diagnostics)),
         };

@@ -49,6 +49,13 @@ internal static class NestFindings
                 return Judged(
                     input, nest, head + $"shares the dissimilarity of '{input.Layout.Parameters[nest.Parameter].Name}', {input.WithInterval(nest.Parameter)}.",
                     value, parent, parentName, tested: true, figures);
+            // Only the unscaled form can estimate it: there the dissimilarity of a nest of one is a scale of its own.
+            case NestStanding.Own when nest.WideSituations == 0:
+                return new Finding(
+                    "nests.single", FindingTopic.Nests, FindingSeverity.Information,
+                    head + $"dissimilarity {input.WithInterval(nest.Parameter)}. It never offers two of its members at once: in the unscaled form its value "
+                    + "is a scale for the utility of what is in it.",
+                    figures);
             default:
                 return Judged(
                     input, nest, head + $"dissimilarity {input.WithInterval(nest.Parameter)}.", value, parent, parentName, tested: true, figures);

@@ -35,10 +35,13 @@ internal static class PrecisionFindings
 
         var median = Median(ratios.Select(r => r.Ratio));
         var largest = ratios.MaxBy(r => r.Ratio);
+        var reading = input.IsCrossSection
+            ? "With one occasion each there are no ties between occasions: a ratio far from 1 speaks of probabilities that the model does not get right."
+            : $"This describes; the test is the detector: {FewPersonsByChance}.";
         yield return new Finding(
             "precision.overall", FindingTopic.Precision, FindingSeverity.Information,
             $"Over all terms the clustered standard error is {PlainNumber.Ratio(median)} times the pooled one in the median and at most "
-            + $"{PlainNumber.Ratio(largest.Ratio)} times ('{largest.Parameter.Label}'). This describes; the test is the detector: {FewPersonsByChance}.",
+            + $"{PlainNumber.Ratio(largest.Ratio)} times ('{largest.Parameter.Label}'). {reading}",
             [new FindingFigure("median", median), new FindingFigure("largest", largest.Ratio)]);
 
         List<double> jackknife = [.. inference.Parameters.Where(p => p.JackknifeSeRatio is not null).Select(p => p.JackknifeSeRatio!.Value)];

@@ -57,6 +57,14 @@ public class ExitCodeTests
     }
 
     [Fact]
+    public void A_mistyped_command_is_told_and_nothing_else()
+    {
+        var outcome = CommandLineProcess.InProcess("estimat");
+        Assert.Equal(64, outcome.Code);
+        Assert.StartsWith("panelchoice: Unrecognized command or argument 'estimat'.\nRun ", outcome.Error, StringComparison.Ordinal);
+    }
+
+    [Fact]
     public void No_argument_at_all_ends_with_64() => Assert.Equal(64, CommandLineProcess.InProcess().Code);
 
     [Theory]
@@ -146,6 +154,8 @@ public class ExitCodeTests
     {
         var help = CommandLineProcess.InProcess("--help");
         Assert.Equal(0, help.Code);
+        Assert.All(help.Out.Split('\n'), line => Assert.True(line.Length <= 80, line));
+        Assert.Contains("panelchoice [command] [options]", help.Out, StringComparison.Ordinal);
         Assert.All(["check", "build", "estimate", "demo", "--threads", "--quiet", "--no-color"], word => Assert.Contains(word, help.Out, StringComparison.Ordinal));
         var version = CommandLineProcess.InProcess("--version");
         Assert.Equal(0, version.Code);
