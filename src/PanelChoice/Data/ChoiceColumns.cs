@@ -66,6 +66,14 @@ internal sealed class ChoiceColumns
     /// <param name="index">Index of the row among those begun.</param>
     public CellPlace PlaceOf(int index) => new(sourceRow[index], offered is null || offered.Count <= index || offered[index]);
 
+    /// <summary>Where the cells of the rows from an index on stand, as <see cref="PlaceOf"/> tells it.</summary>
+    public CellPlace[] PlacesFrom(int index)
+    {
+        var places = new CellPlace[Rows - index];
+        for (var i = 0; i < places.Length; i++) places[i] = PlaceOf(index + i);
+        return places;
+    }
+
     /// <summary>The table, or all problems.</summary>
     /// <param name="sha256">Hash of the file's bytes.</param>
     public Checked<ChoiceTable> Finish(string sha256)

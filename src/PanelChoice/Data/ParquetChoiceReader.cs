@@ -16,31 +16,36 @@ internal static class ParquetChoiceReader
         var options = new ParquetOptions { TreatByteArrayAsString = true };
         if (!TryRead(() => ParquetDecoding.Wait(ParquetReader.CreateAsync(file, options, true)), name, columns, out var reader)) return;
         if (!TryRead(() => reader.Schema.Fields, name, columns, out var fields)) return;
-        var places = columns.Needed.Locate(name, [.. fields.Select(f => f.Name.Trim())], columns.Problems);
+        var positions = columns.Needed.Locate(name, [.. fields.Select(f => f.Name.Trim())], columns.Problems);
         foreach (var needed in columns.Needed.All)
-            if (places.TryGetValue(needed.Name, out var place) && ParquetDecoding.DecoderOf(fields[place]) is null)
+            if (positions.TryGetValue(needed.Name, out var position) && ParquetDecoding.DecoderOf(fields[position]) is null)
                 columns.Problems.Add(new Problem(
-                    "data.unsupported_type", name, $"the column holds {ParquetDecoding.KindOf(fields[place])}, of which {needed.AskedBy} can make nothing",
+                    "data.unsupported_type", name, $"the column holds {ParquetDecoding.KindOf(fields[position])}, of which {needed.AskedBy} can make nothing",
                     "store it as numbers, text, truth values or dates") { Column = needed.Name });
 
-        for (var g = 0; g < reader.RowGroupCount && columns.Problems.IsEmpty; g++) ReadGroup(reader, g, fields, places, name, columns);
+        for (var g = 0; g < reader.RowGroupCount && columns.Problems.IsEmpty; g++) ReadGroup(reader, g, fields, positions, name, columns);
     }
 
     private static void ReadGroup(
-        ParquetReader reader, int number, IReadOnlyList<Field> fields, ImmutableDictionary<string, int> places, string name, ChoiceColumns columns)
+        ParquetReader reader, int number, IReadOnlyList<Field> fields, ImmutableDictionary<string, int> positions, string name, ChoiceColumns columns)
     {
         if (!TryRead(() => reader.OpenRowGroupReader(number), name, columns, out var group)) return;
         var begin = columns.Rows;
-        var rows = group.RowCount;
+        CellPlace[]? places = null;
         // A column that is read in several ways is decoded once; the offered column stays the first.
         foreach (var readings in columns.Readings.GroupBy(r => r.Source, r => r.Into, StringComparer.Ordinal))
         {
-            var field = fields[places[readings.Key]];
-            if (!TryRead(() => ParquetDecoding.DecoderOf(field)!(group, (DataField)field), name, columns, out var put)) return;
-            // Rows begin once a column of them could be decoded, because a damaged file may claim any number of rows.
-            while (columns.Rows < begin + rows) columns.BeginRow(columns.Rows + 1);
+            var field = fields[positions[readings.Key]];
+            if (!TryRead(() => ParquetDecoding.DecoderOf(field)!(group, (DataField)field), name, columns, out var fill)) return;
             foreach (var into in readings)
-                for (var i = 0; i < rows; i++) put(into, columns.PlaceOf(begin + i), i);
+            {
+                // Rows begin once a column of them could be decoded, because a damaged file may claim any number of rows.
+                while (columns.Rows < begin + group.RowCount) columns.BeginRow(columns.Rows + 1);
+                places ??= columns.PlacesFrom(begin);
+                fill(into, places);
+                // Where the first reading is the offered column, it settles the places of all others.
+                if (into == columns.Readings[0].Into) places = null;
+            }
         }
     }
 

@@ -5,11 +5,11 @@ using Parquet.Schema;
 
 namespace PanelChoice.Data;
 
-/// <summary>Hands entry <paramref name="index"/> of a decoded column to a column of the table.</summary>
-internal delegate void CellPutter(CellColumn into, CellPlace at, int index);
+/// <summary>Hands the cells of a decoded column, one after the other, to a column of the table.</summary>
+internal delegate void ColumnFiller(CellColumn into, ReadOnlySpan<CellPlace> places);
 
 /// <summary>Decodes one column of one row group.</summary>
-internal delegate CellPutter ColumnDecoder(ParquetRowGroupReader group, DataField field);
+internal delegate ColumnFiller ColumnDecoder(ParquetRowGroupReader group, DataField field);
 
 /// <summary>How each type that Parquet stores becomes a cell.</summary>
 internal static class ParquetDecoding
@@ -54,15 +54,19 @@ internal static class ParquetDecoding
         {
             var all = new T[group.RowCount];
             group.ReadAsync(field, all.AsMemory()).AsTask().GetAwaiter().GetResult();
-            return (into, at, index) => put(into, at, all[index]);
+            return (into, places) =>
+            {
+                for (var i = 0; i < all.Length; i++) put(into, places[i], all[i]);
+            };
         }
 
         var some = new T?[group.RowCount];
         group.ReadAsync(field, some.AsMemory()).AsTask().GetAwaiter().GetResult();
-        return (into, at, index) =>
+        return (into, places) =>
         {
-            if (some[index] is { } value) put(into, at, value);
-            else into.Empty(at);
+            for (var i = 0; i < some.Length; i++)
+                if (some[i] is { } value) put(into, places[i], value);
+                else into.Empty(places[i]);
         };
     };
 

@@ -214,4 +214,14 @@ public sealed class CsvVariantTests : IDisposable
         var rows = string.Concat(values.Select((v, i) => string.Create(CultureInfo.InvariantCulture, $"{i},1,bus,1,{v:R},x\n")));
         Assert.Equal(values, Read("person,day,mode,chosen,time,sky\n" + rows).Numbers["time"].AsEnumerable());
     }
+
+    [Theory]
+    [InlineData(".")]
+    [InlineData("-")]
+    [InlineData("-.")]
+    [InlineData("1.2.3")]
+    [InlineData("1-2")]
+    [InlineData("--1")]
+    [InlineData("1_000")]
+    public void What_looks_like_a_number_and_is_none(string text) => Assert.False(CellText.TryNumber(Encoding.UTF8.GetBytes(text), out _));
 }
