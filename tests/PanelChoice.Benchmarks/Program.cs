@@ -1,7 +1,7 @@
 using System.Globalization;
 using PanelChoice.Benchmarks;
 
-// Prints the speed of the likelihood as ratios measured in one run: dotnet run -c Release --project tests/PanelChoice.Benchmarks -- [--case S|M]
+// Prints the speed of the likelihood and of fits as ratios measured in one run: dotnet run -c Release --project tests/PanelChoice.Benchmarks -- [--case S|M]
 CultureInfo.DefaultThreadCurrentCulture = CultureInfo.CurrentCulture = CultureInfo.InvariantCulture;
 string[] cases;
 switch (args)
@@ -17,5 +17,11 @@ switch (args)
         return 64;
 }
 
-foreach (var name in cases) LikelihoodBenchmark.Run(name == "S" ? CommuteCase.Small() : CommuteCase.Medium());
+foreach (var name in cases)
+{
+    var made = name == "S" ? CommuteCase.Small() : CommuteCase.Medium();
+    LikelihoodBenchmark.Run(made);
+    FitBenchmark.Run(made);
+}
+
 return 0;

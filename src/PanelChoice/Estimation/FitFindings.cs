@@ -90,9 +90,10 @@ internal sealed class FitFindings(ChoiceDesign design, NestedLogitForm form)
             var bound = above < 0 ? 1 : parameters[above];
             if (parameters[place.Parameter] <= bound) continue;
             if (!layout.Parameters[place.Parameter].IsFree && (above < 0 || !layout.Parameters[above].IsFree)) continue;
-            var what = above < 0 ? "above 1" : $"above its parent's {Number(parameters[above])}";
+            var own = Apart(parameters[place.Parameter], bound);
+            var what = above < 0 ? "above 1" : $"above its parent's {Number(bound)}";
             found.Add(new FitFinding(
-                "fit.outside_range", $"The dissimilarity of nest '{place.Name}' is {Number(parameters[place.Parameter])}, {what}: outside the range that is "
+                "fit.outside_range", $"The dissimilarity of nest '{place.Name}' is {own}, {what}: outside the range that is "
                     + "consistent with utility maximisation for all values of the covariates. Its test against that bound says how far this could be chance.",
                 [place.Parameter]));
         }
@@ -116,6 +117,18 @@ internal sealed class FitFindings(ChoiceDesign design, NestedLogitForm form)
         1 => $"'{Label(parameters[0])}'",
         _ => string.Join(", ", parameters.Take(parameters.Length - 1).Select(k => $"'{Label(k)}'")) + $" and '{Label(parameters[^1])}'",
     };
+
+    /// <summary>A value with as many digits as tell it from a bound in print.</summary>
+    private static string Apart(double value, double bound)
+    {
+        var text = Number(value);
+        for (var digits = 4; text == Number(bound) && digits < 17; digits++)
+        {
+            text = value.ToString("0." + new string('#', digits), CultureInfo.InvariantCulture);
+        }
+
+        return text;
+    }
 
     private static string Number(double value) => value.ToString("0.###", CultureInfo.InvariantCulture);
 }

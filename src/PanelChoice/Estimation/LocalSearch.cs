@@ -53,11 +53,18 @@ internal sealed record KnownMaximum(double[] Parameters, double LogLikelihood, d
 internal sealed class LocalSearch(
     IChoiceLikelihood likelihood, NestedLogitForm form, double[] personWeight, double[] scale, CancellationToken cancellation)
 {
-    /// <summary>A dissimilarity below this, with the likelihood still rising towards 0, runs to 0: choices in the nest are then ten thousand times as sharp as at the root.</summary>
+    /// <summary>A dissimilarity below this, with the likelihood still rising towards 0 (see IsStillRising), runs to 0: choices in the nest are then ten thousand times as sharp as at the root.</summary>
     public const double NearZero = 1e-4;
 
     /// <summary>A dissimilarity above this, with the likelihood still rising, runs without end.</summary>
     public const double VeryLarge = 100;
+
+    /// <summary>A dissimilarity below this at a decrement this small, with less information than this about its logarithm, has lost its say: the
+    /// choices inside its nest are told with certainty, and the likelihood creeps towards 0 as exp(-1/l) does, below rounding.</summary>
+    private const double Silent = 1e-6, SilentDecrement = 1e-3;
+
+    /// <summary>Beyond these values a search that stops on its way is asked whether the likelihood still rises.</summary>
+    private const double Small = 0.01, Large = 30;
 
     /// <summary>Two points this close, in standard errors, with equal log-likelihood are the same maximum.</summary>
     public const double SameMaximum = 0.01;
@@ -85,9 +92,10 @@ internal sealed class LocalSearch(
             {
                 if (active[i] < coefficients) continue;
                 var l = MinusLogLikelihood.Dissimilarity(at.Point[i]);
-                var runsDown = l < NearZero && at.At.Gradient[i] > 0;
-                var runsUp = l > VeryLarge && at.At.Gradient[i] < 0;
-                if (!runsDown && !runsUp) continue;
+                var isSilent = l < 1 && at.Decrement < SilentDecrement && Math.Abs(at.At.Hessian[(i * active.Length) + i]) < Silent;
+                var isFarOut = l < NearZero || l > VeryLarge;
+                // Far out the way on can be a curved valley, in which the slope along l alone says little; then the valley is followed one step.
+                if (!(isSilent && at.At.Gradient[i] > 0) && !(isFarOut && IsStillRising(function, at.Point, at.At.Value, active[i]))) continue;
                 (kind, about) = (SearchEndKind.Boundary, [active[i]]);
                 return true;
             }
@@ -118,8 +126,32 @@ internal sealed class LocalSearch(
             },
             function.Coordinates(from), settings, Stop);
         if (minimum.IsMinimum) kind = SearchEndKind.Maximum;
+        else if (kind == SearchEndKind.Stopped)
+        {
+            var end = function.Parameters(minimum.Point);
+            var k = active.FirstOrDefault(
+                k => k >= coefficients && end[k] is < Small or > Large && IsStillRising(function, minimum.Point, minimum.Value, k), -1);
+            if (k >= 0) (kind, about) = (SearchEndKind.Boundary, [k]);
+        }
+
         return new SearchEnd(
             kind, function.Parameters(minimum.Point), function.LogLikelihood(minimum.Value), minimum.Iterations, about, direction, joined, minimum);
+    }
+
+    /// <summary>Whether the likelihood is no lower with a dissimilarity another factor 2 further out and everything else following it.</summary>
+    private bool IsStillRising(MinusLogLikelihood function, double[] point, double value, int k)
+    {
+        var further = function.Parameters(point);
+        further[k] *= further[k] < 1 ? 0.5 : 2;
+        var rest = new MinusLogLikelihood(likelihood, personWeight, scale, function.Active.Remove(k), further);
+        var best = TrustRegionNewton.Minimise(
+            x =>
+            {
+                cancellation.ThrowIfCancellationRequested();
+                return rest.Evaluate(x);
+            },
+            rest.Coordinates(further), new MinimisationSettings(Tolerance: 1e-4, MaxIterations: 60));
+        return best.Value <= value;
     }
 
     /// <summary>The known maximum that a point belongs to: less than a hundredth of a standard error away; -1 for none.</summary>

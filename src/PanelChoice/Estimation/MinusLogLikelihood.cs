@@ -1,5 +1,4 @@
 using System.Collections.Immutable;
-using MathNet.Numerics;
 using PanelChoice.Design;
 using PanelChoice.Likelihood;
 using PanelChoice.Optimisation;
@@ -94,10 +93,10 @@ internal sealed class MinusLogLikelihood
     }
 
     /// <summary>The coordinate of a dissimilarity: log(exp(l) - 1), written so that neither end overflows.</summary>
-    public static double Coordinate(double l) => l > 30 ? l + SpecialFunctions.Log1p(-Math.Exp(-l)) : Math.Log(SpecialFunctions.Expm1(l));
+    public static double Coordinate(double l) => l > 30 ? l + Log1p(-Math.Exp(-l)) : Math.Log(Expm1(l));
 
     /// <summary>The dissimilarity at a coordinate: log(1 + exp(x)).</summary>
-    public static double Dissimilarity(double x) => x > 30 ? x + SpecialFunctions.Log1p(Math.Exp(-x)) : SpecialFunctions.Log1p(Math.Exp(x));
+    public static double Dissimilarity(double x) => x > 30 ? x + Log1p(Math.Exp(-x)) : Log1p(Math.Exp(x));
 
     /// <summary>The log-likelihood that belongs to a value of this function.</summary>
     public double LogLikelihood(double value) => -value * unit;
@@ -125,7 +124,20 @@ internal sealed class MinusLogLikelihood
     }
 
     /// <summary>Derivative of a parameter by its coordinate.</summary>
-    private double Slope(int i, double[] parameters) => IsDissimilarity(Active[i]) ? -SpecialFunctions.Expm1(-parameters[Active[i]]) : 1 / scale[Active[i]];
+    private double Slope(int i, double[] parameters) => IsDissimilarity(Active[i]) ? -Expm1(-parameters[Active[i]]) : 1 / scale[Active[i]];
+
+    /// <summary>exp(x) - 1 and log(1 + x) to full accuracy near 0 by Kahan's division (Higham 2002, "Accuracy and Stability", 1.14.1).</summary>
+    private static double Expm1(double x)
+    {
+        var u = Math.Exp(x);
+        return u == 1 ? x : u - 1 == -1 ? -1 : (u - 1) * x / Math.Log(u);
+    }
+
+    private static double Log1p(double x)
+    {
+        var u = 1 + x;
+        return u == 1 ? x : Math.Log(u) * x / (u - 1);
+    }
 
     private bool IsDissimilarity(int k) => k >= likelihood.Design.Layout.Coefficients;
 }

@@ -115,12 +115,12 @@ internal sealed class MultiStart
     {
         var grid = points.Grid();
         var ends = new SearchEnd[grid.Length];
-        var from = plain;
         for (var i = 0; i < grid.Length; i++)
         {
             work.Report("starts", this.ends.Count, total);
+            var done = grid[i].Neighbours.Where(n => n < i && ends[n].Kind == SearchEndKind.Maximum);
+            var from = done.Any() ? ends[done.First()].Parameters : plain;
             ends[i] = (thinned ?? search).Run(points.With(from, grid[i].Values), coefficients, Loose, []);
-            if (ends[i].Kind == SearchEndKind.Maximum) from = ends[i].Parameters;
         }
 
         double Height(int i) => ends[i].Kind == SearchEndKind.Maximum ? ends[i].LogLikelihood : double.NegativeInfinity;

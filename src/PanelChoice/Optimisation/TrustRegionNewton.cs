@@ -34,8 +34,8 @@ internal static class TrustRegionNewton
             var decrement = Decrement(spectrum, gradient);
             Minimum End(Termination termination) => new(x, at.Value, at, decrement, termination, iteration, evaluations);
 
-            if (decrement <= settings.Tolerance) return End(Termination.DecrementReached);
             if (stop is not null && stop(new Standing(x, at, spectrum, decrement))) return End(Termination.AskedToStop);
+            if (decrement <= settings.Tolerance) return End(Termination.DecrementReached);
             if (iteration == settings.MaxIterations) return End(Termination.IterationLimit);
 
             var (along, predicted) = TrustRegionStep.Solve(spectrum, gradient, radius);

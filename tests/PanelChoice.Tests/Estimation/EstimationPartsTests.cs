@@ -45,6 +45,8 @@ public class EstimationPartsTests
 
     [Theory]
     [InlineData(1e-8)]
+    [InlineData(0.004)]
+    [InlineData(0.0923)]
     [InlineData(0.3)]
     [InlineData(1)]
     [InlineData(29)]
@@ -85,14 +87,15 @@ public class EstimationPartsTests
         var design = Tree.Design();
         var grid = new StartingPoints(design, NestedLogitForm.UtilityScaled).Grid();
         Assert.All(grid, g => Assert.True(g.Values[0] <= g.Values[1]));
-        Assert.Equal(15, grid.Length);
+        Assert.Equal([1.0, 1.0], grid[0].Values);
+        Assert.Equal(21, grid.Length);
         for (var i = 0; i < grid.Length; i++)
         {
             Assert.InRange(grid[i].Neighbours.Length, 1, 4);
             Assert.All(grid[i].Neighbours, n => Assert.Contains(i, grid[n].Neighbours));
         }
 
-        Assert.Equal(25, new StartingPoints(Tree.Design(NestedLogitForm.Unscaled), NestedLogitForm.Unscaled).Grid().Length);
+        Assert.Equal(36, new StartingPoints(Tree.Design(NestedLogitForm.Unscaled), NestedLogitForm.Unscaled).Grid().Length);
     }
 
     [Fact]
@@ -104,7 +107,7 @@ public class EstimationPartsTests
         for (var i = 0; i < 50; i++)
         {
             var at = At(7, i);
-            Assert.True(0.05 <= at[6] && at[6] <= at[7] && at[7] <= 1);
+            Assert.True(0.05 <= at[6] && at[6] <= at[7] && at[7] <= 2);
         }
 
         Assert.Equal(At(7, 3), At(7, 3));
