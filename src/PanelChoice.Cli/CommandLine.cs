@@ -1,6 +1,7 @@
 using System.CommandLine;
 using System.CommandLine.Help;
 using System.CommandLine.Invocation;
+using System.CommandLine.Parsing;
 using System.Reflection;
 using PanelChoice.Cli.Commands;
 using PanelChoice.Cli.Report;
@@ -99,7 +100,7 @@ internal static class CommandLine
     private static Command Check(Func<ParseResult, RunOptions> options)
     {
         var study = Study();
-        var json = new Option<string>("--json") { Description = "Also write the profile to this file.", HelpName = "FILE" };
+        var json = Path("--json", "Also write the profile to this file.", "FILE");
         var command = new Command("check", "Reads and checks the panel and prints its profile.") { study, json };
         command.SetAction(r => CheckCommand.Run(r.GetRequiredValue(study), r.GetValue(json), options(r)));
         return command;
@@ -108,11 +109,11 @@ internal static class CommandLine
     private static Command Build(Func<ParseResult, RunOptions> options)
     {
         var study = Study();
-        var output = new Option<string>("--out") { Description = "Write the covariates to this file (.csv or .parquet).", HelpName = "FILE" };
+        var output = Path("--out", "Write the covariates to this file (.csv or .parquet).", "FILE");
         output.Validators.Add(result =>
         {
             var file = result.GetValueOrDefault<string>();
-            if (file is not null && !BuildCommand.Writes(file)) result.AddError($"--out needs a file that ends in .csv or .parquet, not '{file}'.");
+            if (!string.IsNullOrWhiteSpace(file) && !BuildCommand.Writes(file)) result.AddError($"--out needs a file that ends in .csv or .parquet, not '{file}'.");
         });
         var command = new Command("build", "Builds the covariates: lagged choices, lagged attributes, habit stocks and the rest.") { study, output };
         command.SetAction(r => BuildCommand.Run(r.GetRequiredValue(study), r.GetValue(output), options(r)));
@@ -122,10 +123,7 @@ internal static class CommandLine
     private static Command Estimate(Func<ParseResult, RunOptions> options)
     {
         var study = Study();
-        var output = new Option<string>("--out")
-        {
-            Description = "Write result.json, coefficients.csv and replicates.parquet to this folder.", HelpName = "DIR",
-        };
+        var output = Path("--out", "Write result.json, coefficients.csv and replicates.parquet to this folder.", "DIR");
         var strict = Strict();
         var command = new Command("estimate", "The main job: fit, standard errors side by side, diagnostics, verdict.") { study, output, strict };
         command.SetAction(r => EstimateCommand.Run(r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict), options(r)));
@@ -138,13 +136,32 @@ internal static class CommandLine
         {
             Description = "Folder for the demo; it is made when it does not exist.", Arity = ArgumentArity.ZeroOrOne, DefaultValueFactory = _ => "panelchoice-demo",
         };
+        folder.Validators.Add(result => Named(result, "DIR"));
         var strict = Strict();
         var command = new Command("demo", "Writes two invented panels with their study files and runs 'estimate' on both.") { folder, strict };
         command.SetAction(r => DemoCommand.Run(r.GetRequiredValue(folder), r.GetValue(strict), options(r)));
         return command;
     }
 
-    private static Argument<string> Study() => new("STUDY") { Description = "The study file (TOML)." };
+    private static Argument<string> Study()
+    {
+        var study = new Argument<string>("STUDY") { Description = "The study file (TOML)." };
+        study.Validators.Add(result => Named(result, "STUDY"));
+        return study;
+    }
+
+    private static Option<string> Path(string name, string description, string what)
+    {
+        var option = new Option<string>(name) { Description = description, HelpName = what };
+        option.Validators.Add(result => Named(result, name));
+        return option;
+    }
+
+    // An empty name is what an unset variable of a script leaves behind.
+    private static void Named(SymbolResult result, string name)
+    {
+        if (result.Tokens.Any(t => string.IsNullOrWhiteSpace(t.Value))) result.AddError($"{name} needs a name, not an empty text.");
+    }
 
     private static Option<bool> Strict() => new("--strict") { Description = "End with exit code 3 when dependence is flagged." };
 

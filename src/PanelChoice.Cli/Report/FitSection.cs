@@ -27,7 +27,7 @@ internal static class FitSection
 
     private static string Ending(FitSummary fit, bool estimatesNests)
     {
-        if (fit.Status != FitSummary.Converged) return $"The search ended with status '{fit.Status}'.";
+        if (fit.Status != FitSummary.Converged) return $"It ended as '{fit.Status.Replace('_', ' ')}'.";
         if (!estimatesNests && fit.Starts.Converged == 1) return "One start was enough, as there is no dissimilarity to estimate; it converged.";
         var starts = fit.Starts;
         var where = starts.Optima.Length > 1 ? "not all at the same maximum" : "all at the same maximum";

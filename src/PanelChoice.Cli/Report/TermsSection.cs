@@ -11,9 +11,9 @@ internal static class TermsSection
 
     public static void AddTo(Letter letter, AnalysisResult result)
     {
-        letter.Heading("Estimates, and their standard errors side by side");
+        letter.Heading(HasClustered(result) ? "Estimates, and their standard errors side by side" : "Estimates");
         StandardErrors(letter, result);
-        if (!result.Parameters.Any(p => p.StandardErrors.Cluster is not null)) return;
+        if (!HasClustered(result)) return;
         letter.Gap();
         letter.Paragraph(
             IsCrossSection(result)
@@ -34,13 +34,13 @@ internal static class TermsSection
         [
             (new TableColumnPlan("term", IsNumber: false), (p, _) => Label(p)),
             (new TableColumnPlan("estimate"), (p, d) => p.Estimate is { } e ? PlainNumber.Text(e, d) : "none"),
-            (new TableColumnPlan("pooled"), (p, d) => Error(p, p.StandardErrors.Pooled, d)),
-            (new TableColumnPlan("clustered"), (p, d) => Error(p, p.StandardErrors.Cluster, d)),
         ];
-        if (IsCrossSection(result)) columns.Insert(3, (new TableColumnPlan("robust"), (p, d) => Error(p, p.StandardErrors.Robust, d)));
+        if (result.Parameters.Any(p => p.StandardErrors.Pooled is not null)) columns.Add((new TableColumnPlan("pooled"), (p, d) => Error(p, p.StandardErrors.Pooled, d)));
+        if (IsCrossSection(result)) columns.Add((new TableColumnPlan("robust"), (p, d) => Error(p, p.StandardErrors.Robust, d)));
+        if (HasClustered(result)) columns.Add((new TableColumnPlan("clustered"), (p, d) => Error(p, p.StandardErrors.Cluster, d)));
         if (hasJackknife) columns.Add((new TableColumnPlan(jackknife), (p, d) => Error(p, p.StandardErrors.Jackknife, d)));
         if (hasBootstrap) columns.Add((new TableColumnPlan("bootstrap"), (p, d) => Error(p, p.StandardErrors.Bootstrap, d)));
-        columns.Add((new TableColumnPlan("ratio"), (p, _) => p.SeRatio is { } r ? PlainNumber.Ratio(r) : ""));
+        if (HasClustered(result)) columns.Add((new TableColumnPlan("ratio"), (p, _) => p.SeRatio is { } r ? PlainNumber.Ratio(r) : ""));
         letter.Table(
             [.. columns.Select(c => c.Plan)],
             result.Parameters.Select(p => (IReadOnlyList<string>)[.. columns.Select(c => c.Cell(p, DecimalsOf(p)))]));
@@ -81,6 +81,8 @@ internal static class TermsSection
                 ? ""
                 : $" Worth: as many independent occasions, instead of {PlainNumber.Count(result.Sample.Occasions)} tied ones, would give the same precision."));
     }
+
+    private static bool HasClustered(AnalysisResult result) => result.Parameters.Any(p => p.StandardErrors.Cluster is not null);
 
     private static bool IsCrossSection(AnalysisResult result) => result.Clusters.Largest == 1;
 

@@ -13,7 +13,7 @@ internal static class IndependenceFindings
         {
             Verdict.NotApplicable => new Finding(
                 "independence.not_applicable", FindingTopic.Independence, FindingSeverity.Notice,
-                $"Independence was not tested. {diagnostics.Reason}".TrimEnd(), []),
+                diagnostics.Reason ?? "Independence was not tested.", []),
             Verdict.NoneFound => new Finding(
                 "independence.none_found", FindingTopic.Independence, FindingSeverity.Information,
                 $"No sign of dependence was found{Detector(diagnostics)}. That is no proof of its absence.",

@@ -21,8 +21,15 @@ public static class ResultFiles
         }
 
         var probe = Path.Combine(existing, $".{Guid.NewGuid():N}.part");
-        File.WriteAllBytes(probe, []);
-        File.Delete(probe);
+        try
+        {
+            File.WriteAllBytes(probe, []);
+            File.Delete(probe);
+        }
+        catch (Exception refused) when (refused is IOException or UnauthorizedAccessException)
+        {
+            throw new IOException($"no file can be made in '{existing}'.", refused);
+        }
     }
 
     /// <summary>Writes all files, or none: nothing is replaced before every one is complete.</summary>

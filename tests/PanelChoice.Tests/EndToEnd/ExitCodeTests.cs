@@ -47,6 +47,11 @@ public class ExitCodeTests
     [InlineData("estimate", "study.toml", "and", "another")]
     [InlineData("build", "study.toml", "--out", "table.xlsx")]
     [InlineData("check", "study.toml", "--strict")]
+    [InlineData("check", "study.toml", "--json", "")]
+    [InlineData("build", "study.toml", "--out", "")]
+    [InlineData("estimate", "study.toml", "--out", " ")]
+    [InlineData("estimate", "")]
+    [InlineData("demo", "")]
     public void A_command_line_that_makes_no_sense_ends_with_64(params string[] args)
     {
         var outcome = CommandLineProcess.InProcess(args);
