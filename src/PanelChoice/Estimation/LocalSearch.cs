@@ -53,7 +53,8 @@ internal sealed record KnownMaximum(double[] Parameters, double LogLikelihood, d
 internal sealed class LocalSearch(
     IChoiceLikelihood likelihood, NestedLogitForm form, double[] personWeight, double[] scale, CancellationToken cancellation)
 {
-    /// <summary>A dissimilarity below this, with the likelihood still rising towards 0 (see IsStillRising), runs to 0: choices in the nest are then ten thousand times as sharp as at the root.</summary>
+    /// <summary>A dissimilarity below this, with the likelihood still rising (see IsStillRising), runs to 0: choices inside the nest are then ten
+    /// thousand times as sharp as at the root.</summary>
     public const double NearZero = 1e-4;
 
     /// <summary>A dissimilarity above this, with the likelihood still rising, runs without end.</summary>

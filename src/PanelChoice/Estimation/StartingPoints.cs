@@ -7,8 +7,8 @@ namespace PanelChoice.Estimation;
 
 /// <summary>
 /// Dissimilarities to start from: common values, coarse grids over few nests, seeded draws; child at most parent in all of them. Grids go on
-/// above 1, where the likelihood is no longer concave in the coefficients, and below 0.05: without these ends one panel in five hundred of 30
-/// to 100 situations kept a better maximum or an edge hidden from all starts.
+/// above 1, where the likelihood is no longer concave in the coefficients, and below 0.05: without these ends 19 of 14,458 small panels kept a
+/// better maximum or an edge hidden from all starts, with them one of 12,609.
 /// </summary>
 internal sealed class StartingPoints
 {
