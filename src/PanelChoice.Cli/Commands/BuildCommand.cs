@@ -1,5 +1,4 @@
 using PanelChoice.Cli.Report;
-using PanelChoice.Numerics;
 using PanelChoice.Results;
 
 namespace PanelChoice.Cli.Commands;
@@ -17,7 +16,7 @@ internal static class BuildCommand
     /// <param name="options">What every command takes.</param>
     public static int Run(string study, string? file, RunOptions options) => StudyRun.With(
         study, options,
-        specification => PanelAnalysis.Prepare(specification, new WorkContext(options.Threads, null, options.Cancellation)),
+        specification => ProgressDisplay.Run(options, work => PanelAnalysis.Prepare(specification, work)),
         (specification, input) =>
         {
             var letter = CovariateReport.Of(specification, input.Covariates);

@@ -1,5 +1,4 @@
 using PanelChoice.Cli.Report;
-using PanelChoice.Numerics;
 using PanelChoice.Panels;
 using PanelChoice.Results;
 
@@ -14,7 +13,7 @@ internal static class CheckCommand
     /// <param name="options">What every command takes.</param>
     public static int Run(string study, string? json, RunOptions options) => StudyRun.With(
         study, options,
-        specification => PanelAnalysis.Prepare(specification, new WorkContext(options.Threads, null, options.Cancellation)),
+        specification => ProgressDisplay.Run(options, work => PanelAnalysis.Prepare(specification, work)),
         (specification, input) =>
         {
             var profile = PanelProfile.Of(specification, input.Panel);

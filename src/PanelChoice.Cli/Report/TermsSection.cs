@@ -7,8 +7,6 @@ namespace PanelChoice.Cli.Report;
 /// <summary>The estimates with their standard errors side by side, and the intervals to go with them.</summary>
 internal static class TermsSection
 {
-    private const int FewClusters = 40;
-
     public static void AddTo(Letter letter, AnalysisResult result)
     {
         letter.Heading(HasClustered(result) ? "Estimates, and their standard errors side by side" : "Estimates");
@@ -48,7 +46,8 @@ internal static class TermsSection
 
     private static void Intervals(Letter letter, AnalysisResult result)
     {
-        var few = !IsCrossSection(result) && result.Clusters.Count < FewClusters && result.Parameters.Any(p => p.Intervals.Jackknife is not null);
+        // Where the jackknife is the one to report, its intervals stand beside the clustered ones.
+        var few = result.Findings.Any(f => f.Id == "advice.jackknife");
         List<(TableColumnPlan Plan, Func<ParameterResult, string> Cell)> columns =
         [
             (new TableColumnPlan("term", IsNumber: false), Label),

@@ -1,5 +1,3 @@
-using System.Globalization;
-using System.Text;
 using System.Text.Encodings.Web;
 using System.Text.Json;
 using PanelChoice.Inference;
@@ -269,43 +267,4 @@ public static class ResultJson
             json.WriteFigure("change", i.Change);
         }));
     });
-
-    internal static void WriteRow(this Utf8JsonWriter json, ReadOnlySpan<double> values)
-    {
-        // One row on one line keeps a matrix legible, which an indenting writer would not.
-        var text = new StringBuilder("[");
-        for (var i = 0; i < values.Length; i++)
-        {
-            if (i > 0) text.Append(", ");
-            text.Append(double.IsFinite(values[i]) ? values[i].ToString("R", CultureInfo.InvariantCulture) : "null");
-        }
-
-        json.WriteRawValue(text.Append(']').ToString());
-    }
-
-    internal static void WriteFigure(this Utf8JsonWriter json, string name, double? value)
-    {
-        if (value is { } number && double.IsFinite(number)) json.WriteNumber(name, number);
-        else json.WriteNull(name);
-    }
-
-    internal static void WriteObject(this Utf8JsonWriter json, string name, Action fields)
-    {
-        json.WritePropertyName(name);
-        json.WriteObject(fields);
-    }
-
-    internal static void WriteObject(this Utf8JsonWriter json, Action fields)
-    {
-        json.WriteStartObject();
-        fields();
-        json.WriteEndObject();
-    }
-
-    internal static void WriteArray<T>(this Utf8JsonWriter json, string name, IEnumerable<T> items, Action<T> write)
-    {
-        json.WriteStartArray(name);
-        foreach (var item in items) write(item);
-        json.WriteEndArray();
-    }
 }
