@@ -43,7 +43,7 @@ internal sealed record CauseFinding(DependenceCause Cause, double? LastPredictio
         notes.Add("The cause is judged on a second fit to the same occasions, without past choices"
             + (fit.Means.IsEmpty ? " (and without person means: none could be added)." : $" and with {string.Join(", ", fit.Means)}."));
         if (!fit.LeftOut.IsEmpty) notes.Add($"Left out of that fit as collinear or not estimable: {string.Join(", ", fit.LeftOut)}.");
-        if (commonDays) notes.Add("People are moved by the same days; the cause is judged on residuals taken as deviations from each date's mean.");
+        if (commonDays) notes.Add("Because people are moved by the same days, the cause is judged on residuals taken as deviations from each date's mean.");
         var judgement = CauseRule.Judge(CauseEvidence.Of(battery, detector.PValue), study.Diagnostics.Level);
         if (detector.PValue > study.Diagnostics.Level)
             notes.Add("In that fit the detector itself stays quiet, so the cause cannot be told.");

@@ -20,8 +20,8 @@ internal static class DecayGridDetector
     {
         var (defined, correlation) = battery.DecayCorrelation();
         if (defined.IsEmpty) return null;
-        ImmutableArray<DecayScore> scores = [.. defined.Select(r => new DecayScore(PersonHistory.Decays[r], battery.Decays[r].Z))];
-        var statistic = scores.Max(s => s.Z);
+        ImmutableArray<DecayScore> scores = [.. PersonHistory.Decays.Select((rho, r) => new DecayScore(rho, battery.Decays[r].Z))];
+        var statistic = defined.Max(r => scores[r].Z);
         return new Detector(statistic, PValue(statistic, correlation, draws, seed), scores);
     }
 

@@ -36,7 +36,7 @@ public enum DependenceCause
 
 /// <summary>The detector's statistic at one decay.</summary>
 /// <param name="Rho">Decay of past residuals, 0 to 1.</param>
-/// <param name="Z">Bias-corrected score over its null standard deviation.</param>
+/// <param name="Z">Bias-corrected score over its null standard deviation; NaN where no pair of occasions gives it any variance.</param>
 public sealed record DecayScore(double Rho, double Z);
 
 /// <summary>The detector: maximum over decays, with its p-value from seeded normal draws.</summary>
@@ -52,14 +52,14 @@ public sealed record DateScore(double Z, double PValue);
 
 /// <summary>Dependence at one lag: one-step effect size.</summary>
 /// <param name="Lag">Distance in calendar steps (or recorded occasions).</param>
-/// <param name="Gamma">Effect size.</param>
+/// <param name="Gamma">Effect size; NaN, like its error, where no pair of occasions lies at this distance.</param>
 /// <param name="StandardError">Its null standard error.</param>
 /// <param name="Pairs">Pairs of situations at that distance.</param>
 public sealed record LagDependence(int Lag, double Gamma, double StandardError, int Pairs);
 
 /// <summary>Persistence in one alternative or nest.</summary>
 /// <param name="Name">Name of the alternative or nest.</param>
-/// <param name="Z">z of its running sum of past residuals.</param>
+/// <param name="Z">z of its running sum of past residuals; NaN where it has no variance.</param>
 public sealed record PartScore(string Name, double Z);
 
 /// <summary>How often the cause rule is right on simulated panels of about this size.</summary>

@@ -74,10 +74,9 @@ public static class IndependenceBattery
         var alternatives = covariates.Panel.Alternatives;
         return new DiagnosticsResult(
             verdict.Verdict, null, cause?.Cause, verdict.CommonDays, study.Diagnostics.Level, detector, date,
-            [.. battery.Lags.Take(study.Diagnostics.Lags).Select((s, h) => (s, h)).Where(x => x.s.IsDefined)
-                .Select(x => new LagDependence(x.h + 1, x.s.Effect, x.s.EffectError, x.s.Pairs))],
-            [.. battery.Alternatives.Select((s, j) => (s, j)).Where(x => x.s.IsDefined).Select(x => new PartScore(alternatives[x.j], x.s.Z))],
-            [.. battery.Nests.Select((s, m) => (s, m)).Where(x => x.s.IsDefined).Select(x => new PartScore(design.Layout.Nests[x.m].Name, x.s.Z))],
+            [.. battery.Lags.Take(study.Diagnostics.Lags).Select((s, h) => new LagDependence(h + 1, s.Effect, s.EffectError, s.Pairs))],
+            [.. battery.Alternatives.Select((s, j) => new PartScore(alternatives[j], s.Z))],
+            [.. battery.Nests.Select((s, m) => new PartScore(design.Layout.Nests[m].Name, s.Z))],
             battery.InformationTrace.IsDefined ? battery.VarianceInflation : null,
             MeasuredRates.HitRateOf(cause?.Cause, design.Persons, MeanOccasions(design)),
             cause?.LastPrediction, positions.Unit, [.. notes]);
@@ -99,10 +98,9 @@ public static class IndependenceBattery
             notes.Add(dateUntestable
                 ? "Shocks common to a date could not be tested: no date leaves enough variance between persons."
                 : "Shocks common to a date were not tested: the study does not say that an occasion is the same day for everybody (shared_calendar).");
-        if (verdict is { CommonDays: true, Serial: false }) notes.Add("People are moved by the same days: choices of different persons on one date go together beyond what the model explains.");
         if (positions.Unit == "recorded occasion")
             notes.Add("Distances between occasions count recorded occasions, because most are more than one step of the calendar apart.");
-        if (detector.ByDecay.Length < PersonHistory.Decays.Length)
+        if (detector.ByDecay.Any(d => double.IsNaN(d.Z)))
             notes.Add("Some decays of the detector have no pair of occasions to work on and are left out.");
         if (design.ClusterBy != "person")
             notes.Add($"The tests look along each person's own past and across a date; dependence between the persons of one cluster ({design.ClusterBy}) is not tested.");

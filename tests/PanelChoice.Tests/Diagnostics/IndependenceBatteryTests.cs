@@ -69,7 +69,6 @@ public class IndependenceBatteryTests
         Assert.Equal(Verdict.Dependence, result.Verdict);
         Assert.True(result.CommonDays);
         Assert.Null(result.Cause);
-        Assert.Contains(result.Notes, n => n.StartsWith("People are moved by the same days", StringComparison.Ordinal));
     }
 
     [Fact]
@@ -89,6 +88,35 @@ public class IndependenceBatteryTests
         Assert.Null(result.CommonDays);
         Assert.Null(result.DateScore);
         Assert.Contains(result.Notes, n => n.Contains("shared_calendar", StringComparison.Ordinal));
+    }
+
+    [Fact]
+    public void Lags_longer_than_any_record_are_listed_without_a_figure()
+    {
+        var made = SimulatedCommutes.Make(60, 3, new CommuteProcess(), false, 7, 0);
+        var result = Run(made);
+        Assert.Equal([120, 60, 0, 0, 0], result.Lags.Select(l => l.Pairs));
+        Assert.Equal([false, false, true, true, true], result.Lags.Select(l => double.IsNaN(l.Gamma)));
+        Assert.Equal([false, false, true, true, true], result.Lags.Select(l => double.IsNaN(l.StandardError)));
+    }
+
+    [Fact]
+    public void A_decay_without_any_pair_one_step_apart_is_left_out_of_the_detector()
+    {
+        // Every second day on a stated step rule: R(0) has no pair, the other decays see distances of two.
+        var made = Commutes(new CommuteProcess { TasteSd = 1 }, false, 2);
+        var panel = made.Covariates.Panel;
+        var sparse = made with
+        {
+            Study = made.Study with { History = made.Study.History with { Previous = PreviousRule.Step } },
+            Covariates = made.Covariates with { Panel = panel with { Occasion = [.. panel.Occasion.Select(o => 2 * o)] } },
+        };
+        var result = Run(sparse);
+        Assert.True(double.IsNaN(result.Detector!.ByDecay[0].Z));
+        Assert.All(result.Detector.ByDecay.Skip(1), d => Assert.True(d.Z > 0));
+        Assert.Equal(0, result.Lags[0].Pairs);
+        Assert.Equal(760, result.Lags[1].Pairs);
+        Assert.Contains(result.Notes, n => n.Contains("decays", StringComparison.Ordinal));
     }
 
     [Fact]
