@@ -62,8 +62,9 @@ public class VerdictTests
     [Fact]
     public void Measured_rates_are_quoted_for_the_nearest_simulated_size()
     {
-        Assert.Equal(0.94, MeasuredRates.HitRateOf(DependenceCause.Habit, 45, 18)!.Rate);
-        Assert.Equal(0.28, MeasuredRates.HitRateOf(DependenceCause.Taste, 400, 4)!.Rate);
+        Assert.Equal(0.935, MeasuredRates.HitRateOf(DependenceCause.Habit, 45, 18)!.Rate, 12);
+        Assert.Equal(0.095, MeasuredRates.HitRateOf(DependenceCause.Taste, 50, 4)!.Rate, 12);
+        Assert.Contains("40 persons x 5 occasions", MeasuredRates.HitRateOf(DependenceCause.Taste, 50, 4)!.Source, StringComparison.Ordinal);
         Assert.Null(MeasuredRates.HitRateOf(DependenceCause.Unclear, 45, 18));
         Assert.Null(MeasuredRates.HitRateOf(null, 45, 18));
         Assert.Contains("44 percent", MeasuredRates.Power(40, 20, true), StringComparison.Ordinal);
