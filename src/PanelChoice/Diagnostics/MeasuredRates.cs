@@ -10,7 +10,7 @@ namespace PanelChoice.Diagnostics;
 /// </summary>
 internal static class MeasuredRates
 {
-    private static readonly ImmutableArray<(int Persons, int Occasions)> HitSizes = [(15, 20), (40, 5), (40, 20)];
+    private static readonly ImmutableArray<(int Persons, int Occasions)> HitSizes = [(15, 20), (40, 5), (40, 20), (150, 5), (150, 20)];
 
     /// <summary>
     /// Percent of right answers by truth and size: 200 panels in each cell, run through the whole battery (person means in the static fit,
@@ -18,14 +18,14 @@ internal static class MeasuredRates
     /// </summary>
     private static readonly ImmutableArray<(DependenceCause Cause, string Truth, double[] Right)> Hits =
     [
-        (DependenceCause.Taste, "lasting taste of standard deviation 0.5", [58.5, 9.5, 88.5]),
-        (DependenceCause.Taste, "lasting taste of standard deviation 1", [89.4, 60.5, 95.5]),
-        (DependenceCause.Taste, "lasting taste for nests of standard deviation 1", [62.5, 16.5, 87.5]),
-        (DependenceCause.Habit, "a last-choice effect of 0.8", [78, 46, 93.5]),
-        (DependenceCause.HabitAndTaste, "a last-choice effect of 0.8 with lasting taste of standard deviation 0.5", [43, 9.5, 75]),
-        (DependenceCause.HabitAndTaste, "a last-choice effect of 0.8 with lasting taste of standard deviation 1", [59.6, 24.1, 91.5]),
-        (DependenceCause.SerialErrors, "errors autocorrelated by 0.3", [19.5, 2, 41.5]),
-        (DependenceCause.SerialErrors, "errors autocorrelated by 0.6", [41.5, 22.5, 71.5]),
+        (DependenceCause.Taste, "lasting taste of standard deviation 0.5", [58.5, 9.5, 88.5, 39.5, 90.5]),
+        (DependenceCause.Taste, "lasting taste of standard deviation 1", [89.4, 60.5, 95.5, 92, 97]),
+        (DependenceCause.Taste, "lasting taste for nests of standard deviation 1", [62.5, 16.5, 87.5, 42, 95]),
+        (DependenceCause.Habit, "a last-choice effect of 0.8", [78, 46, 93.5, 90, 98]),
+        (DependenceCause.HabitAndTaste, "a last-choice effect of 0.8 with lasting taste of standard deviation 0.5", [43, 9.5, 75, 53.5, 93.5]),
+        (DependenceCause.HabitAndTaste, "a last-choice effect of 0.8 with lasting taste of standard deviation 1", [59.6, 24.1, 91.5, 61, 100]),
+        (DependenceCause.SerialErrors, "errors autocorrelated by 0.3", [19.5, 2, 41.5, 20.5, 68]),
+        (DependenceCause.SerialErrors, "errors autocorrelated by 0.6", [41.5, 22.5, 71.5, 52, 92]),
     ];
 
     private static readonly ImmutableArray<(int Persons, int Occasions)> PowerSizes =
