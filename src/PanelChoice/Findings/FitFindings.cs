@@ -2,7 +2,7 @@ using PanelChoice.Estimation;
 
 namespace PanelChoice.Findings;
 
-/// <summary>How the estimation ended, and whether its maximum is the only one.</summary>
+/// <summary>Whether the estimate is to be trusted at all. What else there is to know of the fit stands in its own findings.</summary>
 internal static class FitFindings
 {
     public static IEnumerable<Finding> Of(FindingsInput input)
@@ -12,17 +12,6 @@ internal static class FitFindings
             yield return new Finding(
                 "fit.untrusted", FindingTopic.Fit, FindingSeverity.Warning,
                 $"The estimate is not to be trusted: {Ending(model.Status)}. Standard errors and diagnostics are therefore withheld.", []);
-        if (model.Optima.Length > 1)
-        {
-            var best = model.Optima[0];
-            var next = model.Optima[1];
-            yield return new Finding(
-                "fit.several_maxima", FindingTopic.Fit, FindingSeverity.Notice,
-                $"The likelihood has {PlainNumber.Counted(model.Optima.Length, "distinct maximum").Replace("maximums", "maxima", StringComparison.Ordinal)}; "
-                + $"the best was reached from {PlainNumber.Counted(best.Starts, "start")}, the next one lies "
-                + $"{PlainNumber.Ratio(best.LogLikelihood - next.LogLikelihood)} lower. All are listed in result.json.",
-                [new FindingFigure("maxima", model.Optima.Length), new FindingFigure("difference", best.LogLikelihood - next.LogLikelihood)]);
-        }
     }
 
     private static string Ending(FitStatus status) => status switch
