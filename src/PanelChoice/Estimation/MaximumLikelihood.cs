@@ -13,6 +13,9 @@ public static class MaximumLikelihood
     /// Belsley, Kuh and Welsch 1980 ("Regression Diagnostics") call severe.</summary>
     internal const double WeakCondition = 1e6;
 
+    /// <summary>A gradient below this, in standard errors and beside flat directions, leaves nothing to gain.</summary>
+    private const double SettledGradient = 1e-3;
+
     /// <summary>Fits a model under the design's sampling weights. Numerical trouble is a status with findings, never an exception.</summary>
     /// <param name="likelihood">The likelihood.</param>
     /// <param name="form">The form it was made with.</param>
@@ -49,12 +52,14 @@ public static class MaximumLikelihood
         if (kind == SearchEndKind.Separated && !best.About.All(oneSided.Contains)) found.Add(findings.Separated(best));
         if (kind == SearchEndKind.Boundary)
             found.Add(findings.Boundary(best, result.Maxima.IsEmpty ? null : result.Maxima[0].LogLikelihood));
-        if (kind == SearchEndKind.Stopped && !separated) found.Add(FitFindings.Stopped(best));
 
         var function = new MinusLogLikelihood(likelihood, weight, survey.Scale, active, best.Parameters);
         var curvature = Curvature.Of(likelihood, function, function.Evaluate(function.Coordinates(best.Parameters)), best.Parameters, weight);
-        var isFlat = kind == SearchEndKind.Maximum && !separated && !curvature.IsIdentified;
+        // On a flat ridge the optimiser may stop for want of a better point: then the ridge is the finding, not the stop.
+        var isSettled = kind == SearchEndKind.Maximum || (kind == SearchEndKind.Stopped && curvature.GradientNorm < SettledGradient);
+        var isFlat = isSettled && !separated && !curvature.IsIdentified;
         if (isFlat) found.Add(findings.Flat(curvature));
+        else if (kind == SearchEndKind.Stopped && !separated) found.Add(FitFindings.Stopped(best));
         else if (kind == SearchEndKind.Maximum && !separated && curvature.Condition > WeakCondition) found.Add(findings.Weak(curvature));
 
         var status = !held.IsEmpty || isFlat ? FitStatus.NotIdentified

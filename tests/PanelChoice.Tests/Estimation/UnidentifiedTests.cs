@@ -90,6 +90,19 @@ public class UnidentifiedTests
         Assert.Single(Fits.Fit(made).Held);
     }
 
+    [Fact]
+    public void In_the_unscaled_form_two_nests_around_the_same_alternatives_have_one_product_of_dissimilarities_to_tell()
+    {
+        var made = SyntheticPanel.Make(34, 60, 6, 4, [SyntheticPanel.Nest("outer", "inner"), SyntheticPanel.Nest("inner", "A", "B")], [0.9, 0.7]);
+        foreach (var starts in new[] { 1, 3, 8 })
+        {
+            var fit = Fits.Fit(made, starts, NestedLogitForm.Unscaled);
+            Assert.Equal(FitStatus.NotIdentified, fit.Status);
+            var finding = Assert.Single(fit.Findings, f => f.Id == "fit.not_identified");
+            Assert.Equal(["outer", "inner"], finding.Parameters.Select(k => fit.Layout.Parameters[k].Name));
+        }
+    }
+
     private static int Place(FittedModel fit, string name) =>
         Enumerable.Range(0, fit.Layout.Count).Single(k => fit.Layout.Parameters[k].Name == name);
 
