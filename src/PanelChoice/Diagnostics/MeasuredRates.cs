@@ -31,6 +31,9 @@ internal static class MeasuredRates
     private static readonly ImmutableArray<(int Persons, int Occasions)> PowerSizes =
         [(15, 5), (15, 20), (15, 60), (40, 5), (40, 20), (40, 60), (150, 5), (150, 20), (500, 5)];
 
+    /// <summary>Below this share of the quoted size's occasions its rate would flatter the panel; rates hardly move within it.</summary>
+    private const double MuchSmaller = 0.9;
+
     private static readonly int[] TasteStatic = [20, 89, 100, 38, 100, 100, 94, 100, 100];
     private static readonly int[] TasteDynamic = [19, 87, 100, 29, 100, 100, 79, 100, 100];
     private static readonly int[] ErrorsStatic = [26, 85, 100, 66, 100, 100, 99, 100, 100];
@@ -50,7 +53,7 @@ internal static class MeasuredRates
             rows.Min(r => r.Right[size]) / 100,
             string.Create(
                 CultureInfo.InvariantCulture,
-                $"200 panels for each truth, of {HitSizes[size].Persons} persons x {HitSizes[size].Occasions} occasions, the simulated size nearest to this panel, level 5 percent: the rule named this cause in {string.Join(", ", parts)}{(rows.Count > 1 ? "; the lowest is given" : "")}"));
+                $"200 panels for each truth, of {HitSizes[size].Persons} persons x {HitSizes[size].Occasions} occasions, the simulated size nearest to this panel{Shortfall(HitSizes[size], persons, occasions)}, a model without past choices, level 5 percent: the rule named this cause in {string.Join(", ", parts)}{(rows.Count > 1 ? "; the lowest is given" : "")}"));
     }
 
     /// <summary>How much power a panel of about this size has to see dependence, as one sentence.</summary>
@@ -64,8 +67,12 @@ internal static class MeasuredRates
         var errors = (hasPastChoice ? ErrorsDynamic : ErrorsStatic)[size];
         return string.Create(
             CultureInfo.InvariantCulture,
-            $"Power: in simulated panels of {PowerSizes[size].Persons} persons x {PowerSizes[size].Occasions} occasions (the simulated size nearest to this panel, model {(hasPastChoice ? "with" : "without")} the last choice, level 5 percent) the detector saw lasting taste of standard deviation 0.5 in {taste} percent and errors autocorrelated by 0.3 in {errors} percent; no sign of dependence is not proof of independence.");
+            $"Power: in simulated panels of {PowerSizes[size].Persons} persons x {PowerSizes[size].Occasions} occasions (the simulated size nearest to this panel, model {(hasPastChoice ? "with" : "without")} the last choice, level 5 percent) the detector saw lasting taste of standard deviation 0.5 in {taste} percent and errors autocorrelated by 0.3 in {errors} percent{Shortfall(PowerSizes[size], persons, occasions)}; no sign of dependence is not proof of independence.");
     }
+
+    /// <summary>What must be said where the panel has fewer occasions in all than the quoted size: its own rate is lower.</summary>
+    private static string Shortfall((int Persons, int Occasions) size, int persons, double occasions) =>
+        persons * occasions < MuchSmaller * size.Persons * size.Occasions ? " (this one is smaller, so expect less)" : "";
 
     private static int Nearest(ImmutableArray<(int Persons, int Occasions)> sizes, int persons, double occasions)
     {

@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using PanelChoice.Covariates;
 using PanelChoice.Diagnostics;
 
 namespace PanelChoice.Findings;
@@ -18,7 +19,7 @@ internal static class IndependenceFindings
                 "independence.none_found", FindingTopic.Independence, FindingSeverity.Information,
                 $"No sign of dependence was found{Detector(diagnostics)}. That is no proof of its absence.",
                 Figures(diagnostics)),
-            _ => new Finding("independence.dependence", FindingTopic.Independence, FindingSeverity.Warning, Dependence(diagnostics), Figures(diagnostics)),
+            _ => new Finding("independence.dependence", FindingTopic.Independence, FindingSeverity.Warning, Dependence(input), Figures(diagnostics)),
         };
 
         if (diagnostics is { Verdict: Verdict.Dependence, Cause: not null, HitRate: { } rate })
@@ -32,8 +33,9 @@ internal static class IndependenceFindings
             yield return new Finding("independence.note", FindingTopic.Independence, FindingSeverity.Notice, diagnostics.Notes[i], []);
     }
 
-    private static string Dependence(DiagnosticsResult diagnostics)
+    private static string Dependence(FindingsInput input)
     {
+        var diagnostics = input.Diagnostics;
         var days = diagnostics.CommonDays == true;
         if (diagnostics.Cause is not { } cause)
             return days
@@ -41,13 +43,16 @@ internal static class IndependenceFindings
                 : $"Dependence was found{Detector(diagnostics)}; its cause cannot be told.";
         var words = cause == DependenceCause.Unclear
             ? $"Dependence was found{Detector(diagnostics)}: one person's occasions are not independent evidence. Its cause cannot be told from these data."
-            : $"Dependence was found{Detector(diagnostics)}: one person's occasions are not independent evidence. Its likely cause is {InWords(cause)}.";
+            : $"Dependence was found{Detector(diagnostics)}: one person's occasions are not independent evidence. Its likely cause is {InWords(cause, input)}.";
         return words + (days ? $" Besides, people are moved by the same days{DateScore(diagnostics)}." : "");
     }
 
-    private static string InWords(DependenceCause cause) => cause switch
+    private static string InWords(DependenceCause cause, FindingsInput input) => cause switch
     {
         DependenceCause.Taste => "lasting taste: the same people go on preferring the same alternatives beyond what the terms explain",
+        // The rule sees habit in a fit without past choices, so with a habit term in the model it cannot mean that habit was left out.
+        DependenceCause.Habit when input.Layout.Parameters.Any(p => p.Role == CovariateRole.PastChoice) =>
+            "habit that works in another way than the habit terms say: a longer memory, or one that differs between alternatives",
         DependenceCause.Habit => "habit that the terms do not hold: what was taken before acts on what is taken now",
         DependenceCause.HabitAndTaste => "habit and lasting taste together",
         _ => "shocks that fade slowly: conditions outside the data that last from one occasion to the next",

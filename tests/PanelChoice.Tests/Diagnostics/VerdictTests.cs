@@ -60,6 +60,15 @@ public class VerdictTests
     }
 
     [Fact]
+    public void A_rate_measured_on_larger_panels_says_that_this_one_is_smaller()
+    {
+        Assert.Contains("expect less", MeasuredRates.Power(2, 12, true), StringComparison.Ordinal);
+        Assert.Contains("expect less", MeasuredRates.HitRateOf(DependenceCause.Taste, 40, 12)!.Source, StringComparison.Ordinal);
+        Assert.DoesNotContain("expect less", MeasuredRates.Power(39, 20, true), StringComparison.Ordinal);
+        Assert.DoesNotContain("expect less", MeasuredRates.HitRateOf(DependenceCause.Taste, 160, 25)!.Source, StringComparison.Ordinal);
+    }
+
+    [Fact]
     public void Measured_rates_are_quoted_for_the_nearest_simulated_size()
     {
         Assert.Equal(0.935, MeasuredRates.HitRateOf(DependenceCause.Habit, 45, 18)!.Rate, 12);

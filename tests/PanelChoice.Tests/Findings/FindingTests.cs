@@ -27,7 +27,7 @@ public class FindingTests
 
     [Theory]
     [InlineData(DependenceCause.Taste, "lasting taste")]
-    [InlineData(DependenceCause.Habit, "habit that the terms do not hold")]
+    [InlineData(DependenceCause.Habit, "habit that works in another way than the habit terms say")]
     [InlineData(DependenceCause.HabitAndTaste, "habit and lasting taste together")]
     [InlineData(DependenceCause.SerialErrors, "fade slowly")]
     [InlineData(DependenceCause.Unclear, "cause cannot be told")]
@@ -37,6 +37,16 @@ public class FindingTests
         Assert.Equal(FindingSeverity.Warning, verdict.Severity);
         Assert.Contains(words, verdict.Sentence, StringComparison.Ordinal);
         Assert.Contains("detector p = 0.0001", verdict.Sentence, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void Habit_is_called_left_out_only_where_no_term_holds_any()
+    {
+        var layout = Fifty.Model.Layout;
+        var present = layout with { Parameters = [.. layout.Parameters.Select(p => p with { Role = CovariateRole.Present })] };
+        var likelihood = new PanelChoice.Likelihood.ScalarNestedLogit(Fifty.Model.Design with { Layout = present }, NestedLogitForm.UtilityScaled, 1);
+        var stages = Fifty with { Model = Fifty.Model with { Likelihood = likelihood }, Diagnostics = HandMadeStages.Taste with { Cause = DependenceCause.Habit } };
+        Assert.Contains("habit that the terms do not hold", Say(stages, FindingTopic.Independence)[0].Sentence, StringComparison.Ordinal);
     }
 
     [Fact]
