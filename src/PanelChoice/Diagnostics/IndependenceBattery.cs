@@ -45,6 +45,7 @@ public static class IndependenceBattery
         if (Longest(design) < 2) return NotApplicable("Nothing to test: each person has one occasion in the estimation sample.");
         if (model.Status != FitStatus.Converged)
             return NotApplicable($"Not tested: the fit is not at an interior maximum ({InWords(model.Status)}), and the tests hold only there.");
+        if (design.Layout.Free.IsEmpty) return NotApplicable("Not tested: every parameter is fixed by the study, so that no fitted model stands to be tested.");
         if (design.PersonWeight.Any(w => w != design.PersonWeight[0]))
         {
             model = Refit(study, model, work);

@@ -18,8 +18,10 @@ internal static class AdviceFindings
         {
             yield return new Finding(
                 "advice.nothing", FindingTopic.Advice, FindingSeverity.Warning,
-                "Report none of these figures: there is no standard error to go with them. Mend what the fit names above first; leave a term out, join "
-                + "alternatives, or fix a parameter.", []);
+                input.Layout.Free.IsEmpty
+                    ? "Every parameter is fixed by the study, so nothing was estimated: there is no standard error to report."
+                    : "Report none of these figures: there is no standard error to go with them. Mend what the fit names above first; leave a term out, join "
+                    + "alternatives, or fix a parameter.", []);
             yield break;
         }
 

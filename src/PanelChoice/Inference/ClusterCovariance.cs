@@ -44,7 +44,7 @@ internal static class ClusterCovariance
         if (clusters < FewClusters)
             cautions.Add($"With {clusters} clusters the clustered standard error tends to be too small even with t({clusters - 1}); read the jackknife beside it.");
         if (clusters - 1 < input.Free.Length)
-            cautions.Add($"With {clusters} clusters the matrix has rank {clusters - 1} at most, so no more than {clusters - 1} terms can be tested jointly.");
+            cautions.Add($"With {clusters} clusters the matrix has rank {clusters - 1} at most, so terms can be tested jointly {clusters - 1} at a time at most.");
         if (input.ClusterOccasions.All(n => n == 1))
             cautions.Add("Every cluster has one occasion, so that clustering changes nothing but the factor.");
         return cautions.ToImmutable();

@@ -37,7 +37,7 @@ internal static class ResultBuilder
             parameters,
             inference.Bootstrap is { } b
                 ? new BootstrapCounts(b.Requested, b.Done, b.Retried, [.. b.Failures.Select(f => new FailureCount(f.Kind, f.Count))])
-                : new BootstrapCounts(0, 0, 0, []),
+                : new BootstrapCounts(study.Inference.Replicates, 0, 0, []),
             inference.Jackknife is { } j ? new JackknifeCounts(j.Kind == JackknifeKind.OneStep ? "one_step" : "refit", j.Refits, j.Failures) : null,
             covariance,
             clusters,

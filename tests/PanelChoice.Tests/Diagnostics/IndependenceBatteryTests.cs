@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using PanelChoice.Design;
 using PanelChoice.Diagnostics;
 using PanelChoice.Estimation;
 using PanelChoice.Likelihood;
@@ -162,6 +163,21 @@ public class IndependenceBatteryTests
         var result = IndependenceBattery.Run(made.Study, made.Covariates, model, WorkContext.Quiet);
         Assert.Equal(Verdict.NotApplicable, result.Verdict);
         Assert.Contains("maximum", result.Reason, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void A_model_in_which_everything_is_fixed_is_not_tested_for_that_reason()
+    {
+        var made = Commutes(new CommuteProcess(), false, 1);
+        var layout = made.Design.Layout;
+        var design = made.Design with
+        {
+            Layout = new ParameterLayout([.. layout.Parameters.Select(p => p with { Fixed = 0.5 })], layout.Coefficients, layout.NodeParameter, layout.Nests),
+        };
+        var model = Model(made) with { Likelihood = LikelihoodKernel.Create(design, NestedLogitForm.UtilityScaled, 1) };
+        var result = IndependenceBattery.Run(made.Study, made.Covariates, model, WorkContext.Quiet);
+        Assert.Equal(Verdict.NotApplicable, result.Verdict);
+        Assert.Contains("every parameter is fixed", result.Reason, StringComparison.Ordinal);
     }
 
     [Fact]

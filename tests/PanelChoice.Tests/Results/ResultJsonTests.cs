@@ -107,11 +107,11 @@ public class ResultJsonTests
     {
         var made = SyntheticPanel.Make(3, 20, 6, 4, [SyntheticPanel.Nest("outer", "A", "inner"), SyntheticPanel.Nest("inner", "B")], [0.6, 1]);
         var (model, refitter) = NewtonRefitter.Fit(made.Design(), made.Truth);
-        var inference = StandardErrors.Compute(
-            InferenceInput.From(model, refitter), HandMadeStages.Fifty.Study.Inference with { Replicates = 0, Jackknife = PanelChoice.Study.JackknifeKind.Off }, WorkContext.Quiet);
+        var settings = HandMadeStages.Fifty.Study.Inference with { Replicates = 0, Jackknife = PanelChoice.Study.JackknifeKind.Off };
+        var inference = StandardErrors.Compute(InferenceInput.From(model, refitter), settings, WorkContext.Quiet);
         var result = HandMadeStages.Result(HandMadeStages.Fifty with
         {
-            Study = HandMadeStages.Fifty.Study with { Nests = made.Nests, Terms = HandMadeStages.Fifty.Study.Terms[..3] }, Covariates = made.Covariates, Model = model, Inference = inference,
+            Study = HandMadeStages.Fifty.Study with { Nests = made.Nests, Terms = HandMadeStages.Fifty.Study.Terms[..3], Inference = settings }, Covariates = made.Covariates, Model = model, Inference = inference,
         });
         var (outer, inner) = (result.Parameters[^2], result.Parameters[^1]);
         Assert.Equal(("outer", "free"), (outer.Name, outer.Status));
@@ -153,6 +153,7 @@ public class ResultJsonTests
         Assert.False(result.IsTrusted);
         Assert.All(result.Parameters, p => Assert.Null(p.StandardErrors.Pooled));
         Assert.Null(result.Covariance.Pooled);
+        Assert.Equal((stages.Study.Inference.Replicates, 0), (result.Bootstrap.Requested, result.Bootstrap.Done));
         Assert.Contains(result.Findings, f => f.Id == "fit.untrusted");
         Assert.Contains(result.Findings, f => f.Id == "advice.nothing");
         Assert.DoesNotContain(result.Findings, f => f.Topic == FindingTopic.Past);
