@@ -73,6 +73,10 @@ internal static class NestFindings
             return new Finding(
                 "nests.dissolved", FindingTopic.Nests, FindingSeverity.Information, $"{head} It equals {parentName}, so the nest changes nothing.", figures);
         var certain = p < 1 - input.Study.Inference.Confidence;
+        if (value < parent && parent > 1)
+            return new Finding(
+                "nests.below_parent", FindingTopic.Nests, FindingSeverity.Notice,
+                $"{head} It lies below {parentName}{test}; but that lies above 1, and what is said of it holds for this nest as well.", figures);
         if (value < parent)
             return new Finding(
                 "nests.consistent", FindingTopic.Nests, FindingSeverity.Information,

@@ -167,6 +167,20 @@ public class FindingTests
     }
 
     [Fact]
+    public void A_nest_below_a_parent_above_one_is_not_called_consistent()
+    {
+        var made = SyntheticPanel.Make(3, 20, 6, 4, [SyntheticPanel.Nest("outer", "A", "inner"), SyntheticPanel.Nest("inner", "B", "C")], [0.6, 0.5]);
+        var (model, _) = PanelChoice.Tests.Inference.NewtonRefitter.Fit(made.Design(), made.Truth);
+        var (outer, inner) = (model.Layout.Nests[0].Parameter, model.Layout.Nests[1].Parameter);
+        string IdOfInner(double parent) => NestFindings.Of(Fifty with
+        {
+            Study = Fifty.Study with { Nests = made.Nests }, Model = model with { Parameters = model.Parameters.SetItem(outer, parent).SetItem(inner, 0.7) },
+        }).Single(f => f.Sentence.StartsWith("'inner'", StringComparison.Ordinal)).Id;
+        Assert.Equal("nests.below_parent", IdOfInner(1.2));
+        Assert.Equal("nests.consistent", IdOfInner(0.9));
+    }
+
+    [Fact]
     public void The_headline_on_precision_gives_habit_median_and_largest_and_says_that_it_describes()
     {
         var said = Say(Fifty, FindingTopic.Precision);
