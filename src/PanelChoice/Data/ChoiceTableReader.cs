@@ -12,7 +12,8 @@ public static class ChoiceTableReader
     /// The table, or the problems: <c>data.not_found</c>, <c>data.unreadable</c>, <c>data.unknown_format</c>, <c>data.empty_file</c>,
     /// <c>data.not_text</c>, <c>data.no_rows</c>, <c>data.missing_column</c>, <c>data.duplicate_column</c>, <c>data.unsupported_type</c>,
     /// <c>data.ragged_row</c>, <c>data.bad_quotes</c>, <c>data.not_utf8</c>, <c>data.empty_cell</c>, <c>data.not_a_number</c>,
-    /// <c>data.not_finite</c>, <c>data.not_boolean</c>, <c>data.occasion_not_date_or_whole</c>, <c>data.mixed_occasions</c>.
+    /// <c>data.not_finite</c>, <c>data.not_boolean</c>, <c>data.occasion_not_date_or_whole</c>, <c>data.mixed_occasions</c>,
+    /// <c>data.occasion_out_of_range</c>, <c>data.too_long</c>.
     /// </returns>
     public static Checked<ChoiceTable> Read(StudySpecification study)
     {

@@ -24,12 +24,13 @@ internal static class CsvChoiceReader
         {
             var last = new GzipContent(Rewound(file));
             Read(() => last = new GzipContent(Rewound(file)), name, columns);
-            if (columns.Problems.IsEmpty && !last.IsWhole())
+            if (last.IsAtEnd && !last.IsWhole())
                 Unreadable("the file ends before its content does, or is several archives joined", "pack the whole panel again as one gzip file");
         }
-        catch (InvalidDataException e)
+        catch (InvalidDataException)
         {
-            Unreadable($"the file cannot be unpacked as gzip ({e.Message.TrimEnd('.')})", "pack the panel again, or give the plain .csv file");
+            // What the runtime says here speaks of archives and is wrong as often as right.
+            Unreadable("the file is not packed with gzip, or is damaged", "pack the panel again, or give the plain .csv file");
         }
 
         void Unreadable(string what, string remedy) => columns.Problems.Add(new Problem("data.unreadable", name, what, remedy));

@@ -26,6 +26,9 @@ internal sealed class GzipContent(Stream packed) : Stream
         set => throw new NotSupportedException();
     }
 
+    /// <summary>Whether all content was handed out.</summary>
+    public bool IsAtEnd { get; private set; }
+
     /// <summary>Whether what was handed out is as long as the file says, modulo 2^32; to be asked at the end of the content.</summary>
     public bool IsWhole()
     {
@@ -40,6 +43,7 @@ internal sealed class GzipContent(Stream packed) : Stream
     public override int Read(Span<byte> buffer)
     {
         var count = content.Read(buffer);
+        IsAtEnd |= count == 0 && buffer.Length > 0;
         length = unchecked(length + (uint)count);
         return count;
     }

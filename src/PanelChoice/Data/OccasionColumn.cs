@@ -11,6 +11,9 @@ internal sealed class OccasionColumn(string file, string name) : CellColumn(file
 {
     private const string Remedy = "write every occasion as a whole number, or every one as a date like 2031-04-14";
 
+    /// <summary>Occasions farther from 0 could lie so far apart that their distance is no whole number of 64 bits.</summary>
+    private const long Farthest = 1L << 62;
+
     private readonly ImmutableArray<long>.Builder values = ImmutableArray.CreateBuilder<long>();
 
     /// <summary>What the cells hold; none until one could be read.</summary>
@@ -22,6 +25,10 @@ internal sealed class OccasionColumn(string file, string name) : CellColumn(file
     public override void Whole(CellPlace at, long value)
     {
         if (!Fits(OccasionKind.WholeNumber)) RejectMixed(at, value.ToString(CultureInfo.InvariantCulture), "is a whole number where the rows above hold dates");
+        if (value is < -Farthest or > Farthest)
+            Reject(
+                "data.occasion_out_of_range", at, value.ToString(CultureInfo.InvariantCulture), "is too large for an occasion",
+                "number the occasions from 1, or write them as dates like 2031-04-14");
         values.Add(value);
     }
 

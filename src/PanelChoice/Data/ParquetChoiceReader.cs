@@ -61,10 +61,11 @@ internal static class ParquetChoiceReader
             result = read();
             return true;
         }
-        catch (Exception e) when (e is not OutOfMemoryException)
+        catch (Exception e)
         {
-            columns.Problems.Add(new Problem(
-                "data.unreadable", name, $"the file cannot be read as Parquet ({e.Message.TrimEnd('.')})", "write the file again, or give a .csv file"));
+            // Damaged lengths make the library ask for more memory than any machine has.
+            var why = e is OutOfMemoryException ? "it asks for more memory than there is" : e.Message.TrimEnd('.');
+            columns.Problems.Add(new Problem("data.unreadable", name, $"the file cannot be read as Parquet ({why})", "write the file again, or give a .csv file"));
             result = null;
             return false;
         }

@@ -15,6 +15,9 @@ namespace PanelChoice.Data;
 /// <param name="isKey">Whether every row needs a value; otherwise a cell may be empty where the alternative was not offered.</param>
 internal sealed class TextColumn(string file, string name, bool isKey) : CellColumn(file, name)
 {
+    /// <summary>A longer value is no name; it is free text, or a quote that closed far too late.</summary>
+    private const int Longest = 200;
+
     private readonly ImmutableArray<int>.Builder codes = ImmutableArray.CreateBuilder<int>();
     private readonly Dictionary<string, int> codeOf = new(StringComparer.Ordinal);
     private byte[] lastText = [];
@@ -70,6 +73,12 @@ internal sealed class TextColumn(string file, string name, bool isKey) : CellCol
         if (!Utf8.IsValid(utf8))
         {
             Reject("data.not_utf8", at, Shown(utf8), "holds bytes that are not UTF-8 text", "save the file as UTF-8");
+        }
+        else if (Encoding.UTF8.GetCharCount(utf8) > Longest)
+        {
+            Reject(
+                "data.too_long", at, Shown(utf8), "is longer than a name can be, 200 characters",
+                "name another column, shorten the values, or look for a quote that is closed too late");
         }
         else
         {

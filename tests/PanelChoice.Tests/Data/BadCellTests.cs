@@ -38,6 +38,25 @@ public sealed class BadCellTests : IDisposable
         "data.not_a_number", 3, "time", value,
         $"panel.csv, row 3, column 'time', value '{value}': is not a number; write a plain number with a decimal point, as in 12.5; what is unknown cannot be used.");
 
+    [Fact]
+    public void A_name_that_goes_on_and_on_is_shown_in_part()
+    {
+        var problem = OnlyProblem($"person,day,mode,chosen\n1,1,bus,1\n1,1,{new string('x', 201)},0\n", p => StudySketch.Over(p));
+        Expect(
+            problem, "data.too_long", 3, "mode", new string('x', 60) + "...",
+            $"panel.csv, row 3, column 'mode', value '{new string('x', 60)}...': is longer than a name can be, 200 characters; "
+            + "name another column, shorten the values, or look for a quote that is closed too late.");
+    }
+
+    [Theory]
+    [InlineData("9223372036854775807")]
+    [InlineData("-9223372036854775808")]
+    [InlineData("4611686018427387905")]
+    public void An_occasion_too_far_from_0_for_distances(string value) =>
+        Assert.Equal(
+            ("data.occasion_out_of_range", (long?)3, value),
+            OnlyProblem($"person,day,mode,chosen\n1,1,bus,1\n1,{value},bus,1\n", p => StudySketch.Over(p)) is var p ? (p.Id, p.Row, p.Value) : default);
+
     [Theory]
     [InlineData("12,5")]
     [InlineData("-0,25")]

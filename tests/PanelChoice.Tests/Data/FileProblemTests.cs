@@ -114,8 +114,27 @@ public sealed class FileProblemTests : IDisposable
         var text = "person,day,mode,chosen,note\n" + string.Concat(Enumerable.Range(1, 20000).Select(i => $"{i},1,bus,1,{random.NextDouble()}\n"));
         var packed = TemporaryFolder.Gzip(Encoding.UTF8.GetBytes(text));
         var problems = ChoiceTableReader.Read(StudySketch.Over(folder.Write("panel.csv.gz", packed[..(int)(packed.Length * share)]))).Problems;
-        // The last line may be cut in the middle, which is then the problem that is seen first.
-        Assert.Contains(Assert.Single(problems).Id, (string[])["data.unreadable", "data.ragged_row"]);
+        // The last line may be cut in the middle; that the file is cut is said first.
+        Assert.Equal("data.unreadable", problems[0].Id);
+        Assert.Contains("ends before its content does", problems[0].Sentence, StringComparison.Ordinal);
+        Assert.All(problems.Skip(1), p => Assert.Equal("data.ragged_row", p.Id));
+    }
+
+    [Fact]
+    public void A_gzip_file_with_a_damaged_byte()
+    {
+        var packed = TemporaryFolder.Gzip(Encoding.UTF8.GetBytes("person,day,mode,chosen\n1,1,bus,1\n1,1,car,0\n"));
+        packed[^6] ^= 1;
+        Assert.Equal(
+            "panel.csv.gz: the file is not packed with gzip, or is damaged; pack the panel again, or give the plain .csv file.",
+            Only(folder.Write("panel.csv.gz", packed)).Sentence);
+    }
+
+    [Fact]
+    public void A_parquet_file_whose_lengths_ask_for_more_memory_than_there_is()
+    {
+        byte[] bytes = [.. "PAR1"u8, .. Enumerable.Repeat((byte)0xFF, 100), 0xFF, 0xFF, 0xFF, 0x7F, .. "PAR1"u8];
+        Assert.Equal("data.unreadable", Only(folder.Write("panel.parquet", bytes)).Id);
     }
 
     [Fact]
