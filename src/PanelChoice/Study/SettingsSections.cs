@@ -3,6 +3,12 @@ namespace PanelChoice.Study;
 /// <summary>Reads <c>[history]</c>, <c>[estimate]</c>, <c>[inference]</c> with its bootstrap, and <c>[diagnostics]</c>; an absent table has its defaults.</summary>
 internal static class SettingsSections
 {
+    // Beyond these a figure gains no digit; the run only never ends, or asks for memory without end.
+    private const int MostStarts = 100_000;
+    private const int MostReplicates = 1_000_000;
+    private const int MostLags = 1_000;
+    private const int MostDraws = 10_000_000;
+
     private const string BelowOne = "a number between 0 and 1, both excluded";
 
     public static HistorySpecification History(TableReader table, StudyProblems problems)
@@ -27,7 +33,7 @@ internal static class SettingsSections
 
     public static EstimateSettings Estimate(TableReader table) => new(
         table.Word("form", NestedLogitForm.UtilityScaled, ("utility-scaled", NestedLogitForm.UtilityScaled), ("unscaled", NestedLogitForm.Unscaled)),
-        table.Whole("starts", 1) ?? 20,
+        table.Whole("starts", 1, MostStarts) ?? 20,
         table.Seed("seed", 7));
 
     public static InferenceSettings Inference(TableReader table, TableReader bootstrap, StudyProblems problems)
@@ -44,14 +50,14 @@ internal static class SettingsSections
             problems.Add(
                 "study.not_supported", bootstrap.PlaceOf("replicates"), "replicates = \"auto\" is not supported yet", "state a number, for example replicates = 399");
         else
-            replicates = bootstrap.Whole("replicates", 0) ?? replicates;
+            replicates = bootstrap.Whole("replicates", 0, MostReplicates) ?? replicates;
         return new InferenceSettings(cluster, confidence, jackknife, replicates, bootstrap.Seed("seed", 7));
     }
 
     public static DiagnosticsSettings Diagnostics(TableReader table) => new(
-        table.Whole("lags", 1) ?? 5,
+        table.Whole("lags", 1, MostLags) ?? 5,
         table.Number("level", InsideUnit, BelowOne) ?? 0.05,
-        table.Whole("draws", 1) ?? 9999,
+        table.Whole("draws", 1, MostDraws) ?? 9999,
         table.Seed("seed", 7));
 
     private static bool InsideUnit(double value) => value is > 0 and < 1;

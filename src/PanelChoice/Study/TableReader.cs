@@ -67,16 +67,16 @@ internal sealed class TableReader(TomlTable table, string name, StudyProblems pr
         return otherwise;
     }
 
-    /// <summary>A whole number of at least <paramref name="least"/>.</summary>
-    public int? Whole(string key, int least)
+    /// <summary>A whole number from <paramref name="least"/> to <paramref name="most"/>.</summary>
+    public int? Whole(string key, int least, int most = int.MaxValue)
     {
         switch (table.Find(key)?.Value)
         {
             case null: return null;
-            case TomlWhole whole when whole.Value >= least && whole.Value <= int.MaxValue: return (int)whole.Value;
+            case TomlWhole whole when whole.Value >= least && whole.Value <= most: return (int)whole.Value;
             case TomlWhole whole:
                 OutOfRange(key, whole, string.Create(
-                    CultureInfo.InvariantCulture, $"a whole number of {(whole.Value < least ? $"{least} or more" : $"at most {int.MaxValue}")}"));
+                    CultureInfo.InvariantCulture, $"a whole number of {(whole.Value < least ? $"{least} or more" : $"at most {most}")}"));
                 return null;
             case var other:
                 WrongType(key, other, "a whole number", $"write {key} = {Math.Max(1, least).ToString(CultureInfo.InvariantCulture)} or another whole number, without quotes");

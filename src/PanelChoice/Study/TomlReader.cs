@@ -21,10 +21,10 @@ internal static class TomlReader
         }
         catch (TomlException e)
         {
-            // The parser gives up on brackets nested beyond any use, and says where.
+            // The parser gives up on brackets nested beyond any use; its own words speak of its own settings.
             firstError = 1;
             var place = new Place(Math.Max(1, e.Line ?? 1), Math.Max(1, e.Column ?? 1));
-            problems.Add("study.syntax", place, $"this is not TOML that can be read: {e.Message}", "nest lists and tables no deeper than the study file asks for");
+            problems.Add("study.syntax", place, "lists or tables lie too deep inside each other to be read", "nest lists and tables no deeper than the study file asks for");
             return root;
         }
 

@@ -135,7 +135,7 @@ public class ExitCodeTests
     public void A_signal_from_outside_ends_a_long_run_with_130_and_leaves_nothing_behind()
     {
         if (OperatingSystem.IsWindows()) return;
-        using var study = new SmallStudy(text => text.Replace("replicates = 19", "replicates = 2000000", StringComparison.Ordinal));
+        using var study = new SmallStudy(text => text.Replace("replicates = 19", "replicates = 1000000", StringComparison.Ordinal));
         using var process = CommandLineProcess.Start(study.Folder, new Dictionary<string, string>(), "estimate", "study.toml", "--out", "out", "--threads", "1");
         try
         {

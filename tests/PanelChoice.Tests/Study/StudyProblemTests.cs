@@ -95,6 +95,10 @@ public class StudyProblemTests
         { Panel + Term + "last_choice = true\n" + Step, "study.wrong_type", 9, 15, "write last_choice = 1" },
         { Panel + Term + "last_choice = 0\n" + Step, "study.out_of_range", 9, 15, "1 or more" },
         { Panel + Term + "last_choice = 99999999999\n" + Step, "study.out_of_range", 9, 15, "at most 2147483647" },
+        { Small + "[estimate]\nstarts = 100001\n", "study.out_of_range", 11, 10, "at most 100000" },
+        { Small + "[inference.bootstrap]\nreplicates = 1000001\n", "study.out_of_range", 11, 14, "at most 1000000" },
+        { Small + "[diagnostics]\nlags = 1001\n", "study.out_of_range", 11, 8, "at most 1000" },
+        { Small + "[diagnostics]\ndraws = 10000001\n", "study.out_of_range", 11, 9, "at most 10000000" },
         { Panel + Term + "last_nest = 0\n" + Step + Nest, "study.out_of_range", 9, 13, "1 or more" },
         { Panel + Term + "last_nest = 1\n" + Step, "study.needs_key", 9, 1, "the study has no nests" },
         { Panel + Term + "stock = 1\n", "study.out_of_range", 9, 9, "between 0 and 1" },
@@ -266,7 +270,9 @@ public class StudyProblemTests
     public void Brackets_nested_without_end_are_a_problem_not_a_crash(string open, string close)
     {
         var deep = $"a = {string.Concat(Enumerable.Repeat(open, 5000))}1{string.Concat(Enumerable.Repeat(close, 5000))}\n";
-        Assert.Equal("study.syntax", Assert.Single(StudyText.Read(deep + Small).Problems).Id);
+        var problem = Assert.Single(StudyText.Read(deep + Small).Problems);
+        Assert.Equal("study.syntax", problem.Id);
+        Assert.Contains("too deep inside each other", problem.Sentence, StringComparison.Ordinal);
     }
 
     [Fact]
