@@ -61,6 +61,12 @@ internal static class AdviceFindings
                 + $"degrees of freedom. They rest on {PlainNumber.Count(clusters.Count)} {by} and hold whatever ties the occasions inside one together "
                 + "(Liang and Zeger 1986; Cameron and Miller 2015); the pooled ones hold only where nothing does.",
                 [new FindingFigure("clusters", clusters.Count)]);
+        if (clusters.Count < 2)
+            return new Finding(
+                "advice.one_cluster", FindingTopic.Advice, FindingSeverity.Warning,
+                $"All occasions belong to one {(clusters.By == "person" ? "person" : $"group of '{clusters.By}'")}, so nothing here can say how far its occasions hang together, and every "
+                + "standard error takes them for independent. The figures speak of that one alone.",
+                [new FindingFigure("clusters", clusters.Count)]);
         var few = $"There are only {clusters.Count} {by}: with fewer than {FindingsInput.FewClusters} the clustered standard error tends to be too small.";
         return inference.Covariances.GetValueOrDefault(CovarianceKind.Jackknife)?.Matrix is null
             ? new Finding(

@@ -1,5 +1,6 @@
 using System.Collections.Immutable;
 using PanelChoice.Design;
+using PanelChoice.Estimation;
 using PanelChoice.Study;
 
 namespace PanelChoice.Findings;
@@ -45,6 +46,11 @@ internal static class NestFindings
             case NestStanding.FixedByStudy:
                 return Judged(
                     input, nest, head + $"dissimilarity fixed at {PlainNumber.Rounded(value, null)} by the study.", value, parent, parentName, tested: false, figures);
+            // Where the search found no maximum, the place at which it stood is no estimate to judge a nest by.
+            case NestStanding.Own or NestStanding.Shared when input.Model.Status != FitStatus.Converged:
+                return new Finding(
+                    "nests.no_estimate", FindingTopic.Nests, FindingSeverity.Notice,
+                    head + $"no estimate of its dissimilarity; the search stood at {PlainNumber.Rounded(value, null)} when it ended.", figures);
             case NestStanding.Shared:
                 return Judged(
                     input, nest, head + $"shares the dissimilarity of '{input.Layout.Parameters[nest.Parameter].Name}', {input.WithInterval(nest.Parameter)}.",

@@ -97,6 +97,24 @@ public class FindingTests
     }
 
     [Fact]
+    public void With_one_cluster_no_clustered_interval_is_advised()
+    {
+        var stages = HandMadeStages.Fourteen;
+        var one = FindingList.Of(stages with { Inference = stages.Inference with { Clusters = stages.Inference.Clusters with { Count = 1 } } });
+        Assert.Contains(one, f => f.Id == "advice.one_cluster" && f.Sentence.StartsWith("All occasions belong to one person,", StringComparison.Ordinal));
+        Assert.DoesNotContain(one, f => f.Id is "advice.few_no_jackknife" or "advice.jackknife");
+    }
+
+    [Fact]
+    public void A_nest_is_not_judged_by_where_a_search_without_a_maximum_stood()
+    {
+        var stages = HandMadeStages.Fourteen;
+        var none = stages with { Model = stages.Model with { Status = FitStatus.Boundary } };
+        Assert.Contains(FindingList.Of(stages), f => f.Topic == FindingTopic.Nests && f.Id != "nests.no_estimate");
+        Assert.All(FindingList.Of(none).Where(f => f.Topic == FindingTopic.Nests), f => Assert.Equal("nests.no_estimate", f.Id));
+    }
+
+    [Fact]
     public void What_a_clustered_error_does_not_repair_is_said_where_dependence_was_found_and_only_there()
     {
         Assert.Contains(FindingList.Of(Fifty), f => f.Id == "advice.not_repaired");
