@@ -25,7 +25,7 @@ internal static class CommandLine
         if (parsed.Errors.Count > 0)
         {
             foreach (var message in Messages(parsed)) terminal.Problem(message);
-            terminal.Error.WriteLine(Closing);
+            terminal.Tell(Closing);
             return ExitCode.Usage;
         }
 

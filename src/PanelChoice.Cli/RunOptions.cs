@@ -11,8 +11,11 @@ namespace PanelChoice.Cli;
 internal sealed record RunOptions(int Threads, bool Quiet, bool NoColour, Terminal Terminal, CancellationToken Cancellation)
 {
     /// <summary>Prints a report, unless the user asked for quiet.</summary>
-    public void Print(Letter letter)
+    public void Print(Letter letter) => Print(letter.Render(Terminal.OutIsTerminal && Terminal.AllowsColour && !NoColour));
+
+    /// <summary>Prints text that is ready to be shown, unless the user asked for quiet.</summary>
+    public void Print(string text)
     {
-        if (!Quiet) Terminal.Out.Write(letter.Render(Terminal.OutIsTerminal && Terminal.AllowsColour && !NoColour));
+        if (!Quiet) OutputException.Guard("standard output", () => Terminal.Out.Write(text));
     }
 }

@@ -18,5 +18,18 @@ internal sealed record Terminal(TextWriter Out, TextWriter Error, bool OutIsTerm
     public static bool Allows(Func<string, string?> variable) => string.IsNullOrEmpty(variable("NO_COLOR")) && variable("TERM") != "dumb";
 
     /// <summary>Tells a problem in one line on standard error.</summary>
-    public void Problem(string sentence) => Error.WriteLine("panelchoice: " + sentence.ReplaceLineEndings(" "));
+    public void Problem(string sentence) => Tell("panelchoice: " + sentence);
+
+    /// <summary>Writes a line on standard error.</summary>
+    public void Tell(string line)
+    {
+        try
+        {
+            Error.WriteLine(Printable.Of(line));
+        }
+        catch (Exception closed) when (closed is IOException or UnauthorizedAccessException)
+        {
+            // Standard error is the last place to tell anything; where it is closed or full, the exit code has to speak alone.
+        }
+    }
 }

@@ -16,7 +16,11 @@ internal static class BuildCommand
     /// <param name="options">What every command takes.</param>
     public static int Run(string study, string? file, RunOptions options) => StudyRun.With(
         study, options,
-        specification => ProgressDisplay.Run(options, work => PanelAnalysis.Prepare(specification, work)),
+        specification =>
+        {
+            if (file is not null) OutputException.RefuseInput(file, specification);
+            return ProgressDisplay.Run(options, work => PanelAnalysis.Prepare(specification, work));
+        },
         (specification, input) =>
         {
             var letter = CovariateReport.Of(specification, input.Covariates);

@@ -13,7 +13,11 @@ internal static class CheckCommand
     /// <param name="options">What every command takes.</param>
     public static int Run(string study, string? json, RunOptions options) => StudyRun.With(
         study, options,
-        specification => ProgressDisplay.Run(options, work => PanelAnalysis.Prepare(specification, work)),
+        specification =>
+        {
+            if (json is not null) OutputException.RefuseInput(json, specification);
+            return ProgressDisplay.Run(options, work => PanelAnalysis.Prepare(specification, work));
+        },
         (specification, input) =>
         {
             var profile = PanelProfile.Of(specification, input.Panel);

@@ -20,7 +20,7 @@ internal static class DemoCommand
         var codes = new List<int>();
         foreach (var study in studies)
         {
-            if (!options.Quiet) options.Terminal.Out.Write($"\n{new string('-', Letter.Width)}\n\n");
+            options.Print($"\n{new string('-', Letter.Width)}\n\n");
             codes.Add(EstimateCommand.Run(study, Path.ChangeExtension(study, null), strict, options));
         }
 

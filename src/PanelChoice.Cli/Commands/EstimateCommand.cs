@@ -1,4 +1,5 @@
 using PanelChoice.Cli.Report;
+using PanelChoice.Likelihood;
 using PanelChoice.Results;
 
 namespace PanelChoice.Cli.Commands;
@@ -13,12 +14,24 @@ internal static class EstimateCommand
     /// <param name="options">What every command takes.</param>
     public static int Run(string study, string? folder, bool strict, RunOptions options)
     {
+        var kernel = Environment.GetEnvironmentVariable(LikelihoodKernel.Variable);
+        if (!LikelihoodKernel.Knows(kernel))
+        {
+            options.Terminal.Problem($"the environment variable {LikelihoodKernel.Variable} is '{kernel}'; set it to scalar or vector, or unset it.");
+            return ExitCode.Usage;
+        }
+
         return StudyRun.With(
             study, options,
             specification =>
             {
                 // An analysis may take long: a folder that cannot be written is told before it.
-                if (folder is not null) OutputException.Guard(folder, () => ResultFiles.Probe(folder));
+                if (folder is not null)
+                {
+                    foreach (var name in ResultFiles.Names) OutputException.RefuseInput(Path.Combine(folder, name), specification);
+                    OutputException.Guard(folder, () => ResultFiles.Probe(folder));
+                }
+
                 return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, work));
             },
             (_, result) =>

@@ -28,7 +28,7 @@ internal sealed partial class Letter
     public Letter Title(string text)
     {
         if (parts.Count > 0) Gap();
-        parts.Add(new Text(text, Bold));
+        parts.Add(new Text(Printable.Of(text), Bold));
         return this;
     }
 
@@ -36,21 +36,21 @@ internal sealed partial class Letter
     public Letter Heading(string text)
     {
         Gap();
-        parts.Add(new Text(text, Bold));
+        parts.Add(new Text(Printable.Of(text), Bold));
         return this;
     }
 
     /// <summary>A line right below a title.</summary>
     public Letter Subtitle(string text)
     {
-        parts.Add(new Text(text));
+        parts.Add(new Text(Printable.Of(text)));
         return this;
     }
 
     /// <summary>A paragraph, set in a little.</summary>
     public Letter Paragraph(string text, bool emphasised = false)
     {
-        parts.Add(new Padder(new Text(text, emphasised ? Bold : Style.Plain), new Padding(Indent, 0, 0, 0)));
+        parts.Add(new Padder(new Text(Printable.Of(text), emphasised ? Bold : Style.Plain), new Padding(Indent, 0, 0, 0)));
         return this;
     }
 
@@ -83,12 +83,12 @@ internal sealed partial class Letter
         var table = new Table { Border = TableBorder.None, ShowHeaders = columns.Any(c => c.Heading.Length > 0) };
         for (var i = 0; i < columns.Count; i++)
         {
-            var column = new TableColumn(new Text(columns[i].Heading)) { Padding = new Padding(0, 0, i + 1 < columns.Count ? 2 : 0, 0) };
+            var column = new TableColumn(new Text(Printable.Of(columns[i].Heading))) { Padding = new Padding(0, 0, i + 1 < columns.Count ? 2 : 0, 0) };
             if (columns[i].IsNumber) column.RightAligned().NoWrap();
             table.AddColumn(column);
         }
 
-        foreach (var row in rows) table.AddRow(row.Select(cell => new Text(cell)));
+        foreach (var row in rows) table.AddRow(row.Select(cell => new Text(Printable.Of(cell))));
         parts.Add(new Padder(table, new Padding(Indent, 0, 0, 0)));
         return this;
     }

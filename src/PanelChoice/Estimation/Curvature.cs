@@ -29,6 +29,8 @@ internal sealed record Curvature(double Condition, ImmutableArray<int> Weakest, 
         var active = function.Active;
         var n = active.Length;
         if (n == 0) return new Curvature(1, [], true, 0);
+        // Attributes so large or dissimilarities so small that second derivatives overflow leave nothing to judge; the search says where it stopped.
+        if (!Array.TrueForAll(at.Hessian, double.IsFinite)) return new Curvature(double.PositiveInfinity, [], true, double.NaN);
         var root = new double[n];
         for (var i = 0; i < n; i++) root[i] = at.Hessian[(i * n) + i] > 0 ? Math.Sqrt(at.Hessian[(i * n) + i]) : 1;
         var scaled = new double[n * n];

@@ -17,6 +17,9 @@ public static class LikelihoodKernel
     public static IChoiceLikelihood Create(ChoiceDesign design, NestedLogitForm form, int threads) =>
         Create(design, form, threads, Environment.GetEnvironmentVariable(Variable));
 
+    /// <summary>Whether a value of <see cref="Variable"/> names a kernel, or leaves the choice open (null or empty).</summary>
+    public static bool Knows(string? kernel) => kernel is null or "" or "vector" or "scalar";
+
     /// <summary>The likelihood by the given kernel; the vector kernel where the name is null or empty.</summary>
     internal static IChoiceLikelihood Create(ChoiceDesign design, NestedLogitForm form, int threads, string? kernel) => kernel switch
     {
