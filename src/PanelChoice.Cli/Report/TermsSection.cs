@@ -11,7 +11,12 @@ internal static class TermsSection
     {
         letter.Heading(HasClustered(result) ? "Estimates, and their standard errors side by side" : "Estimates");
         StandardErrors(letter, result);
-        if (!HasClustered(result)) return;
+        if (!HasClustered(result))
+        {
+            EstimateReport.Say(letter, result, FindingTopic.Precision, gapFirst: true);
+            return;
+        }
+
         letter.Gap();
         letter.Paragraph(
             IsCrossSection(result)

@@ -7,10 +7,6 @@ namespace PanelChoice.Findings;
 /// <summary>What to report and why, and what a clustered standard error does not repair.</summary>
 internal static class AdviceFindings
 {
-    // Above this share of failed replicates the bootstrap covariance is refused (MacKinnon, Nielsen and Webb leave the share open; failures
-    // are no random sample of draws, so the project sets it at 5 percent).
-    private const double MostFailures = 0.05;
-
     public static IEnumerable<Finding> Of(FindingsInput input)
     {
         var inference = input.Inference;
@@ -35,10 +31,11 @@ internal static class AdviceFindings
                 "Clusters of persons do not see what everybody meets on the same day. The constants suffer most: read their intervals as too "
                 + "narrow, or add terms for the days themselves.", []);
         foreach (var finding in NotRepaired(input)) yield return finding;
-        if (inference.Bootstrap is { } bootstrap && bootstrap.Done < bootstrap.Requested)
+        // Where the covariance is refused for its failures, that is told with the other refusals, and there are no figures to speak of.
+        if (inference.Bootstrap is { } bootstrap && bootstrap.Done < bootstrap.Requested
+            && inference.Covariances.GetValueOrDefault(CovarianceKind.Bootstrap)?.Matrix is not null)
             yield return new Finding(
-                "advice.failed_replicates", FindingTopic.Advice,
-                bootstrap.Requested - bootstrap.Done > MostFailures * bootstrap.Requested ? FindingSeverity.Warning : FindingSeverity.Notice,
+                "advice.failed_replicates", FindingTopic.Advice, FindingSeverity.Notice,
                 $"{PlainNumber.Count(bootstrap.Requested - bootstrap.Done)} of {PlainNumber.Count(bootstrap.Requested)} bootstrap replicates failed "
                 + $"({string.Join(", ", bootstrap.Failures.Select(f => $"{f.Count} {f.Kind}"))}). They are no random sample, so the bootstrap figures lean to the panels that went well.",
                 [new FindingFigure("failed", bootstrap.Requested - bootstrap.Done)]);

@@ -72,7 +72,8 @@ internal static class PastFindings
         if (free.IsEmpty) return "It is fixed, not estimated.";
         var above = free.Where(k => input.SideOf(k, 0) > 0).ToList();
         var below = free.Where(k => input.SideOf(k, 0) < 0).ToList();
-        var open = free.Where(k => input.SideOf(k, 0) == 0).ToList();
+        var without = free.Where(k => input.Figures(k, input.Quoted)?.Interval is null).ToList();
+        var open = free.Where(k => input.SideOf(k, 0) == 0).Except(without).ToList();
         var parts = new List<string>();
         var what = role switch
         {
@@ -83,6 +84,7 @@ internal static class PastFindings
         if (above.Count > 0) parts.Add($"{what} makes an alternative more attractive now{Which(above)}");
         if (below.Count > 0) parts.Add($"{what} makes an alternative less attractive now{Which(below)}");
         if (open.Count > 0) parts.Add($"the interval holds 0, so these data do not show which way it works{Which(open)}");
+        if (without.Count > 0) parts.Add($"it has no interval, so nothing can be said of which way it works{Which(without)}");
         var text = string.Join("; ", parts);
         var after = role == CovariateRole.TasteProxy ? " It stands for lasting taste rather than for habit." : "";
         return char.ToUpperInvariant(text[0]) + text[1..] + "." + after;

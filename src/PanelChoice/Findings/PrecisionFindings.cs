@@ -22,7 +22,11 @@ internal static class PrecisionFindings
             .Where(p => p.SeRatio is { } r && double.IsFinite(r))
             .Select(p => (Parameter: input.Layout.Parameters[p.Parameter], Ratio: p.SeRatio!.Value, p.EquivalentOccasions))
             .ToList();
-        if (ratios.Count == 0) yield break;
+        if (ratios.Count == 0)
+        {
+            foreach (var finding in Refusals(inference)) yield return finding;
+            yield break;
+        }
 
         foreach (var habit in ratios.Where(r => r.Parameter.Role == CovariateRole.PastChoice))
             yield return new Finding(

@@ -115,6 +115,41 @@ public class FindingTests
     }
 
     [Fact]
+    public void With_one_cluster_the_refusal_of_a_clustered_error_is_told()
+    {
+        var stages = HandMadeStages.Fourteen;
+        var alone = FindingList.Of(stages with
+        {
+            Inference = stages.Inference with
+            {
+                Covariances = stages.Inference.Covariances
+                    .SetItem(CovarianceKind.Cluster, CovarianceEstimate.Refused(CovarianceKind.Cluster, "There is one cluster only."))
+                    .SetItem(CovarianceKind.Jackknife, CovarianceEstimate.Refused(CovarianceKind.Jackknife, "There is one cluster only.")),
+                Parameters = [.. stages.Inference.Parameters.Select(p => p with { SeRatio = null, EquivalentOccasions = null, JackknifeSeRatio = null })],
+                Clusters = stages.Inference.Clusters with { Count = 1, DegreesOfFreedom = 0, MostInfluential = [] },
+            },
+        });
+        Assert.Contains(alone, f => f.Id == "advice.one_cluster");
+        Assert.DoesNotContain(alone, f => f.Id == "advice.few_no_jackknife");
+        Assert.Contains(alone, f => f.Id == "precision.refused" && f.Sentence.Contains("one cluster only", StringComparison.Ordinal));
+    }
+
+    [Fact]
+    public void Failed_replicates_lean_on_no_figure_where_the_bootstrap_is_refused_for_them()
+    {
+        var bootstrap = Fifty.Inference.Bootstrap! with { Done = 18, Failures = [new ReplicateFailures("boundary", 1, [3])] };
+        var kept = Fifty with { Inference = Fifty.Inference with { Bootstrap = bootstrap } };
+        Assert.Contains(FindingList.Of(kept), f => f.Id == "advice.failed_replicates");
+        var refused = CovarianceEstimate.Refused(CovarianceKind.Bootstrap, "Too many replicates failed.");
+        var without = FindingList.Of(kept with
+        {
+            Inference = kept.Inference with { Covariances = kept.Inference.Covariances.SetItem(CovarianceKind.Bootstrap, refused) },
+        });
+        Assert.DoesNotContain(without, f => f.Id == "advice.failed_replicates");
+        Assert.Contains(without, f => f.Id == "precision.refused" && f.Sentence.Contains("Too many replicates failed", StringComparison.Ordinal));
+    }
+
+    [Fact]
     public void What_a_clustered_error_does_not_repair_is_said_where_dependence_was_found_and_only_there()
     {
         Assert.Contains(FindingList.Of(Fifty), f => f.Id == "advice.not_repaired");
@@ -149,6 +184,14 @@ public class FindingTests
     {
         var habit = Say(WithFigures(5, new KindFigures(0.1, new Interval(centre - 0.2, centre + 0.2), 0.5, null)), FindingTopic.Past)[0];
         Assert.Contains(words, habit.Sentence, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void Without_an_interval_nothing_is_said_of_the_direction()
+    {
+        var habit = Say(WithFigures(5, new KindFigures(null, null, null, "There is one cluster only.")), FindingTopic.Past)[0];
+        Assert.Contains("has no interval", habit.Sentence, StringComparison.Ordinal);
+        Assert.DoesNotContain("holds 0", habit.Sentence, StringComparison.Ordinal);
     }
 
     [Fact]
