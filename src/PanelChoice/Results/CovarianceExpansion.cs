@@ -23,7 +23,6 @@ internal static class CovarianceExpansion
             }
 
             var values = new double[entries.Length * entries.Length];
-            var missing = new SortedSet<int>();
             for (var i = 0; i < entries.Length; i++)
                 for (var j = 0; j < entries.Length; j++)
                 {
@@ -31,10 +30,9 @@ internal static class CovarianceExpansion
                     var refused = estimate.RefusedParameters.Contains(entries[i].Place) || estimate.RefusedParameters.Contains(entries[j].Place);
                     var value = refused ? double.NaN : matrix[entries[i].Place, entries[j].Place];
                     values[(i * entries.Length) + j] = value;
-                    if (!double.IsFinite(value)) missing.Add(i);
+                    if (!double.IsFinite(value)) book.Note($"{path}[{i}][{j}]", "The figure is refused for a parameter of this row or column.");
                 }
 
-            foreach (var row in missing) book.Note($"{path}[{row}]", "The figure is refused for a parameter of this row or column.");
             return new SquareMatrix(entries.Length, ImmutableCollectionsMarshal.AsImmutableArray(values));
         }
     }

@@ -62,7 +62,20 @@ public class ResultJsonTests
         {
             Diagnostics = HandMadeStages.Quiet with { DateScore = null, CommonDays = null, VarianceInflation = null, Lags = [new LagDependence(3, double.NaN, double.NaN, 0)] },
         });
-        foreach (var document in new[] { Document, Parse(poor) })
+        var jackknife = stages.Inference.Covariances[CovarianceKind.Jackknife];
+        var lost = jackknife with { RefusedParameters = [2], RefusedReasons = ["Without a person it cannot be estimated."] };
+        var thin = HandMadeStages.Result(stages with
+        {
+            Inference = stages.Inference with
+            {
+                Covariances = stages.Inference.Covariances.SetItem(CovarianceKind.Jackknife, lost),
+                Parameters = [.. stages.Inference.Parameters.Select((p, place) => place == 2
+                    ? p with { ByKind = p.ByKind.SetItem(CovarianceKind.Jackknife, new KindFigures(null, null, null, lost.RefusedReasons[0])) }
+                    : p)],
+            },
+        });
+        Assert.Null(At(Parse(thin), "covariance.jackknife").EnumerateArray().ElementAt(2).EnumerateArray().First().GetString());
+        foreach (var document in new[] { Document, Parse(poor), Parse(thin) })
         {
             var reasons = document.GetProperty("reasons").EnumerateArray().Select(r => r.GetProperty("path").GetString()!).ToHashSet();
             Assert.All(document.GetProperty("reasons").EnumerateArray(), r => Assert.NotEqual("", r.GetProperty("reason").GetString()));
