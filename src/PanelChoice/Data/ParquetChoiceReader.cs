@@ -63,8 +63,13 @@ internal static class ParquetChoiceReader
         }
         catch (Exception e)
         {
-            // Damaged lengths make the library ask for more memory than any machine has.
-            var why = e is OutOfMemoryException ? "it asks for more memory than there is" : e.Message.TrimEnd('.');
+            // Damaged lengths make the library ask for more memory than any machine has, or trip over itself; its words then help nobody.
+            var why = e switch
+            {
+                OutOfMemoryException => "it asks for more memory than there is",
+                NullReferenceException or IndexOutOfRangeException or ArgumentException or ArithmeticException or InvalidCastException => "it is damaged",
+                _ => e.Message.TrimEnd('.'),
+            };
             columns.Problems.Add(new Problem("data.unreadable", name, $"the file cannot be read as Parquet ({why})", "write the file again, or give a .csv file"));
             result = null;
             return false;

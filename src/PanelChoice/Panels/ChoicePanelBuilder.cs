@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using System.Globalization;
 using System.Runtime.InteropServices;
 using PanelChoice.Data;
 using PanelChoice.Study;
@@ -8,6 +9,9 @@ namespace PanelChoice.Panels;
 /// <summary>Puts the rows of a table together as persons, their occasions and choice sets.</summary>
 public static class ChoicePanelBuilder
 {
+    /// <summary>More than these is no choice set but a wrong column, whose persons x alternatives would not fit into memory.</summary>
+    private const int MostAlternatives = 1_000;
+
     /// <summary>Builds the panel. The order of rows in the file means nothing, except for the row numbers in messages.</summary>
     /// <param name="study">The study.</param>
     /// <param name="table">The table that was read for it.</param>
@@ -15,12 +19,20 @@ public static class ChoicePanelBuilder
     /// The panel, or the problems: <c>study.unknown_alternative</c>, those of <see cref="NestTreeBuilder"/>,
     /// <c>study.previous_does_not_fit</c>, <c>data.duplicate</c>, <c>data.several_occasions</c>, <c>data.none_chosen</c>,
     /// <c>data.several_chosen</c>, <c>data.chosen_not_offered</c>, <c>data.weight_not_positive</c>, <c>data.weight_not_constant</c>,
-    /// <c>data.cluster_not_constant</c>.
+    /// <c>data.cluster_not_constant</c>, <c>data.too_many_alternatives</c>.
     /// </returns>
     public static Checked<ChoicePanel> Build(StudySpecification study, ChoiceTable table)
     {
         ArgumentNullException.ThrowIfNull(study);
         ArgumentNullException.ThrowIfNull(table);
+        if (table.Alternative.Levels.Length > MostAlternatives)
+            return Checked<ChoicePanel>.Bad(
+            [
+                new Problem(
+                    "data.too_many_alternatives", table.File,
+                    string.Create(CultureInfo.InvariantCulture, $"the column holds {table.Alternative.Levels.Length:#,0} alternatives, and a panel can have {MostAlternatives:#,0}"),
+                    "name the column of alternatives under [panel] alternative, or join alternatives") { Column = study.Panel.Alternative },
+            ]);
         var problems = new ProblemList();
         StudyFit.Check(study, table, problems);
         var personOrder = NameOrder.Of(table.Person.Levels);

@@ -47,6 +47,8 @@ internal static class AtomicFile
         var full = Path.GetFullPath(path);
         var folder = Path.GetDirectoryName(full) ?? throw new IOException($"'{path}' is not a file name.");
         if (!Directory.Exists(folder)) throw new DirectoryNotFoundException($"The folder '{folder}' does not exist.");
+        // Renaming onto a device would put a file in its place, for every program on the machine.
+        if (!OperatingSystem.IsWindows() && folder == "/dev") throw new IOException("it lies among the devices; name an ordinary file.");
         return Path.Combine(folder, $".{Path.GetFileName(full)}.{Guid.NewGuid():N}.part");
     }
 

@@ -32,6 +32,19 @@ public class HostileInputTests
     }
 
     [Fact]
+    public void A_device_is_not_replaced_by_a_file()
+    {
+        if (OperatingSystem.IsWindows()) return;
+        // A name that no device has: were the check gone, this test would leave a file there instead of ruining a device.
+        const string path = "/dev/panelchoice-profile.json";
+        using var study = new SmallStudy();
+        var outcome = CommandLineProcess.InProcess("check", study.StudyFile, "--json", path);
+        Assert.Equal(73, outcome.Code);
+        Assert.Equal($"panelchoice: '{path}' cannot be written: it lies among the devices; name an ordinary file.\n", outcome.Error);
+        Assert.False(File.Exists(path));
+    }
+
+    [Fact]
     public void A_kernel_that_does_not_exist_ends_with_64_and_one_line()
     {
         using var study = new SmallStudy();

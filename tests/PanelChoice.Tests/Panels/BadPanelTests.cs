@@ -36,6 +36,12 @@ public sealed class BadPanelTests : IDisposable
         "panel.csv, row 4, column 'mode', value 'bus': person 'P1' at occasion 2031-03-03 has this alternative already in row 2; keep one row for each person, occasion and alternative.");
 
     [Fact]
+    public void A_column_with_thousands_of_alternatives() => ExpectOne(
+        "person,day,mode,chosen\n" + string.Concat(Enumerable.Range(1, 1001).Select(i => $"P{i},1,m{i},1\n")), null,
+        "data.too_many_alternatives", null, "mode", null,
+        "panel.csv, column 'mode': the column holds 1,001 alternatives, and a panel can have 1,000; name the column of alternatives under [panel] alternative, or join alternatives.");
+
+    [Fact]
     public void Each_further_row_of_the_same_alternative_is_told() =>
         Assert.Equal([3L, 4L], Problems("person,day,mode,chosen\nP1,1,bus,1\nP1,1,bus,0\nP1,1,bus,0\n").Select(p => p.Row!.Value));
 
