@@ -81,11 +81,16 @@ internal static class AdviceFindings
     {
         if (input.Diagnostics.Verdict != Verdict.Dependence || input.Diagnostics.Cause is null) yield break;
         var hasHabit = input.Layout.Parameters.Any(p => p.Role == CovariateRole.PastChoice);
+        // Lags that jump gaps shrank a true habit of 0.80 to 0.68 in simulations made for this project, where lasting taste swells it.
+        var jumpsGaps = input.Covariates.Cautions.Any(c => c.Id == "history.gaps");
         yield return new Finding(
             "advice.not_repaired", FindingTopic.Advice, FindingSeverity.Warning,
             hasHabit
                 ? "The clustered standard error repairs the interval, not the estimate: with dependence left in the model the habit coefficient itself can "
-                + "be too large, and the other coefficients too near to 0. Treat it as an upper bound until a model that holds lasting taste agrees."
+                + "be too large, and the other coefficients too near to 0. "
+                + (jumpsGaps
+                    ? "Lags that jump a gap pull it the other way, so it bounds nothing before the history rule is settled."
+                    : "Treat it as an upper bound until a model that holds lasting taste agrees.")
                 : "The clustered standard error repairs the interval, not the model: the dependence found is a part of behaviour that the terms leave out. "
                 + "Try a term that looks back, such as last_choice = 1 with past_share = true beside it.", []);
     }

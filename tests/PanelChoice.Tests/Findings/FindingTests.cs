@@ -157,6 +157,17 @@ public class FindingTests
     }
 
     [Fact]
+    public void A_habit_coefficient_is_called_an_upper_bound_only_where_no_lag_jumps_a_gap()
+    {
+        static string NotRepaired(FindingsInput stages) => FindingList.Of(stages).Single(f => f.Id == "advice.not_repaired").Sentence;
+
+        Assert.Contains("upper bound", NotRepaired(Fifty), StringComparison.Ordinal);
+        var jumping = Fifty with { Covariates = Fifty.Covariates with { Cautions = [new Caution("history.gaps", "Lags jump gaps.")] } };
+        Assert.DoesNotContain("upper bound", NotRepaired(jumping), StringComparison.Ordinal);
+        Assert.Contains("settled", NotRepaired(jumping), StringComparison.Ordinal);
+    }
+
+    [Fact]
     public void The_three_cautions_are_always_said()
     {
         foreach (var stages in new[] { Fifty, HandMadeStages.Fourteen, Fifty with { Model = Fifty.Model with { Status = FitStatus.Stopped } } })
