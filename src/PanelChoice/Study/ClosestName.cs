@@ -1,8 +1,13 @@
+using System.Globalization;
+
 namespace PanelChoice.Study;
 
 /// <summary>Suggests the known name that a mistyped one was probably meant to be.</summary>
 internal static class ClosestName
 {
+    /// <summary>A column can have any number of values, and a remedy is one line.</summary>
+    private const int MostListed = 30;
+
     /// <summary>
     /// The closest known name by edit distance, upper and lower case being one; null when none is close: at most one edit in three
     /// letters, and never all of them. A known name that begins with what was written (three letters or more) counts as close.
@@ -14,6 +19,8 @@ internal static class ClosestName
         var names = known.ToList();
         foreach (var candidate in names)
         {
+            // So far apart in length alone; and the table of distances of two very long names would be very large.
+            if (Math.Abs(candidate.Length - name.Length) > Math.Max(1, name.Length / 3)) continue;
             var distance = Distance(name.ToUpperInvariant(), candidate.ToUpperInvariant());
             if (distance >= least || distance >= candidate.Length || distance > Math.Max(1, name.Length / 3)) continue;
             (best, least) = (candidate, distance);
@@ -27,7 +34,8 @@ internal static class ClosestName
     public static string Remedy(string name, IReadOnlyCollection<string> known) =>
         Of(name, known) is { } close ? $"did you mean '{close}'?"
         : known.Count == 0 ? "there is no name to choose from"
-        : $"use one of: {string.Join(", ", known)}";
+        : known.Count <= MostListed ? $"use one of: {string.Join(", ", known)}"
+        : string.Create(CultureInfo.InvariantCulture, $"use one of: {string.Join(", ", known.Take(MostListed))} or the {known.Count - MostListed:#,0} others");
 
     /// <summary>Edits (insert, delete, replace, swap of neighbours) that turn one text into the other (Damerau 1964).</summary>
     public static int Distance(string a, string b)

@@ -34,6 +34,10 @@ public static class StudyFileReader
         {
             bytes = File.ReadAllBytes(path);
         }
+        catch (FileNotFoundException)
+        {
+            return Checked<StudySpecification>.Bad([new Problem("study.not_found", path, "this is a link to a file that is not there", "check the path")]);
+        }
         catch (Exception e) when (e is IOException or UnauthorizedAccessException)
         {
             return Checked<StudySpecification>.Bad(

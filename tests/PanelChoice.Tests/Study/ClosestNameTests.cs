@@ -36,5 +36,16 @@ public class ClosestNameTests
     {
         Assert.Equal("use one of: tram, ferry", ClosestName.Remedy("zeppelin", ["tram", "ferry"]));
         Assert.Equal("there is no name to choose from", ClosestName.Remedy("zeppelin", []));
+        var many = ClosestName.Remedy("zeppelin", [.. Enumerable.Range(1, 1040).Select(i => $"{i}")]);
+        Assert.StartsWith("use one of: 1, 2, ", many, StringComparison.Ordinal);
+        Assert.EndsWith(", 29, 30 or the 1,010 others", many, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void A_name_as_long_as_a_book_is_compared_with_nothing()
+    {
+        var before = GC.GetAllocatedBytesForCurrentThread();
+        Assert.Null(ClosestName.Of(new string('x', 1_000_000), ["tram", new string('y', 500)]));
+        Assert.True(GC.GetAllocatedBytesForCurrentThread() - before < 10_000_000);
     }
 }

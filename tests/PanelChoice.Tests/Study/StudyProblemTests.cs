@@ -284,6 +284,22 @@ public class StudyProblemTests
     }
 
     [Fact]
+    public void A_link_to_a_study_file_that_is_not_there_is_not_found()
+    {
+        if (OperatingSystem.IsWindows()) return;
+        var link = Path.Combine(Path.GetTempPath(), $"panelchoice-{Guid.NewGuid():N}.toml");
+        File.CreateSymbolicLink(link, link + ".gone");
+        try
+        {
+            Assert.Equal("study.not_found", Assert.Single(StudyFileReader.Read(link).Problems).Id);
+        }
+        finally
+        {
+            File.Delete(link);
+        }
+    }
+
+    [Fact]
     public void A_study_file_that_another_program_holds_is_a_problem_with_the_reason()
     {
         var path = Path.GetTempFileName();
