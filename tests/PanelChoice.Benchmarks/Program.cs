@@ -1,7 +1,7 @@
 using System.Globalization;
 using PanelChoice.Benchmarks;
 
-// Prints the speed of the likelihood and of fits as ratios measured in one run: dotnet run -c Release --project tests/PanelChoice.Benchmarks -- [--case S|M]
+// Prints the speed of exp and log, of the likelihood and of fits as ratios measured in one run: dotnet run -c Release --project tests/PanelChoice.Benchmarks -- [--case S|M]
 CultureInfo.DefaultThreadCurrentCulture = CultureInfo.CurrentCulture = CultureInfo.InvariantCulture;
 string[] cases;
 switch (args)
@@ -17,6 +17,7 @@ switch (args)
         return 64;
 }
 
+ElementaryBenchmark.Run();
 foreach (var name in cases)
 {
     var made = name == "S" ? CommuteCase.Small() : CommuteCase.Medium();

@@ -1,35 +1,43 @@
 using System.Runtime.CompilerServices;
 using System.Runtime.Intrinsics;
+using PanelChoice.Numerics;
 
 namespace PanelChoice.Likelihood;
 
-/// <summary>
-/// Exponential and logarithm of rows, by the library's vector functions. Each loop does nothing else: inside larger loops the runtime no
-/// longer puts the function's code in place, and a call with its arguments in memory costs more than the function.
-/// </summary>
+/// <summary>Exponential and logarithm of rows (<see cref="VectorElementary"/>); lanes are a multiple of 8. No loop calls anything, so that its constants stay in registers.</summary>
 internal static class VectorFunctions
 {
-    /// <summary>exp(-700) is about 1e-304: what lies lower counts as 0. From about -708 on the library's function is twenty times slower.</summary>
-    private const double LowestExponent = -700;
-
-    /// <summary>e^x for x of at most about 700; exactly 0 from <see cref="LowestExponent"/> down, exactly 1 at 0.</summary>
+    /// <summary>e^x within 1 unit in the last place, exactly 0 below <see cref="VectorElementary.LowestExponent"/> and exactly 1 at 0.</summary>
     [MethodImpl(MethodImplOptions.NoInlining)]
     public static void Exp(ref double from, ref double to, nuint lanes)
     {
-        var lowest = Vector512.Create(LowestExponent);
         for (nuint lane = 0; lane < lanes; lane += (nuint)Vector512<double>.Count)
-        {
-            var x = Vector512.LoadUnsafe(ref from, lane);
-            var power = Vector512.Exp(Vector512.MaxNative(x, lowest));
-            Vector512.ConditionalSelect(Vector512.GreaterThan(x, lowest), power, Vector512<double>.Zero).StoreUnsafe(ref to, lane);
-        }
+            VectorElementary.Exp(Vector512.LoadUnsafe(ref from, lane)).StoreUnsafe(ref to, lane);
     }
 
-    /// <summary>Natural logarithm of positive numbers; exactly 0 at 1.</summary>
+    /// <summary>Natural logarithm within 1 unit in the last place, exactly 0 at 1. The rows may not overlap.</summary>
     [MethodImpl(MethodImplOptions.NoInlining)]
     public static void Log(ref double from, ref double to, nuint lanes)
     {
+        var isNormal = Vector512<double>.AllBitsSet;
         for (nuint lane = 0; lane < lanes; lane += (nuint)Vector512<double>.Count)
-            Vector512.Log(Vector512.LoadUnsafe(ref from, lane)).StoreUnsafe(ref to, lane);
+        {
+            var x = Vector512.LoadUnsafe(ref from, lane);
+            isNormal &= VectorElementary.IsPositiveNormal(x);
+            VectorElementary.LogOfNormal(x).StoreUnsafe(ref to, lane);
+        }
+
+        if (!Vector512.EqualsAll(isNormal.AsInt64(), Vector512<long>.AllBitsSet)) LogOfTheRest(ref from, ref to, lanes);
+    }
+
+    /// <summary>What is 0, negative, subnormal, infinite or NaN: only figures that have already left the model's domain get here, so one by one will do.</summary>
+    [MethodImpl(MethodImplOptions.NoInlining)]
+    private static void LogOfTheRest(ref double from, ref double to, nuint lanes)
+    {
+        for (nuint lane = 0; lane < lanes; lane++)
+        {
+            var x = Unsafe.Add(ref from, lane);
+            if (!double.IsNormal(x) || x < 0) Unsafe.Add(ref to, lane) = Math.Log(x);
+        }
     }
 }
