@@ -24,7 +24,7 @@ internal static class DemoCommand
             codes.Add(EstimateCommand.Run(study, Path.ChangeExtension(study, null), strict, options));
         }
 
-        // Trouble with the input stops everything; of the rest, an estimate not to be trusted goes before a flag.
+        // Both panels are told in any case. Trouble goes before an estimate not to be trusted, and that before a flag.
         return codes.FirstOrDefault(c => c is not (ExitCode.Done or ExitCode.NotTrusted or ExitCode.Flagged)) is var trouble and not 0
             ? trouble
             : codes.Contains(ExitCode.NotTrusted) ? ExitCode.NotTrusted : codes.Max();

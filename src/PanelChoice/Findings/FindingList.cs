@@ -13,7 +13,7 @@ public static class FindingList
         return
         [
             .. SampleFindings.Of(input),
-            .. FitFindings.Of(input),
+            .. TrustFindings.Of(input),
             .. PrecisionFindings.Of(input),
             .. PastFindings.Of(input),
             .. NestFindings.Of(input),

@@ -3,7 +3,7 @@ using PanelChoice.Estimation;
 namespace PanelChoice.Findings;
 
 /// <summary>Whether the estimate is to be trusted at all. What else there is to know of the fit stands in its own findings.</summary>
-internal static class FitFindings
+internal static class TrustFindings
 {
     public static IEnumerable<Finding> Of(FindingsInput input)
     {
