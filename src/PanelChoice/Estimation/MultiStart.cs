@@ -63,8 +63,10 @@ internal sealed class MultiStart
         var weight = design.PersonWeight.ToArray();
         search = new LocalSearch(likelihood, form, weight, scale, work.Cancellation);
         var every = Math.Min(16, design.Persons / ThinnedPersons);
+        // Whole blocks, because a pass costs nothing only for a block in which every weight is 0.
         if (every >= 4)
-            thinned = new LocalSearch(likelihood, form, [.. weight.Select((w, p) => p % every == 0 ? w : 0)], scale, work.Cancellation);
+            thinned = new LocalSearch(
+                likelihood, form, [.. weight.Select((w, p) => design.BlockOf[design.PersonStart[p]] % every == 0 ? w : 0)], scale, work.Cancellation);
     }
 
     /// <summary>Runs all searches.</summary>
