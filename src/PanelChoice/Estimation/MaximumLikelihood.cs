@@ -54,7 +54,8 @@ public static class MaximumLikelihood
             found.Add(findings.Boundary(best, result.Maxima.IsEmpty ? null : result.Maxima[0].LogLikelihood));
 
         var function = new MinusLogLikelihood(likelihood, weight, survey.Scale, active, best.Parameters);
-        var curvature = Curvature.Of(likelihood, function, function.Evaluate(function.Coordinates(best.Parameters)), best.Parameters, weight);
+        var final = likelihood.Evaluate(best.Parameters, weight, Derivatives.Hessian);
+        var curvature = Curvature.Of(likelihood, function, function.InCoordinates(best.Parameters, final), best.Parameters, weight);
         // On a flat ridge the optimiser may stop for want of a better point: then the ridge is the finding, not the stop.
         var isSettled = kind == SearchEndKind.Maximum || (kind == SearchEndKind.Stopped && curvature.GradientNorm < SettledGradient);
         var isFlat = isSettled && !separated && !curvature.IsIdentified;
@@ -74,7 +75,6 @@ public static class MaximumLikelihood
             : [.. result.Maxima.Select((m, i) => new Optimum(m.LogLikelihood, result.EndsAt[i], [.. m.Parameters]))];
         if (optima.Length > 1) found.Add(FitFindings.SeveralMaxima(optima, result.Ends.Length));
 
-        var final = likelihood.Evaluate(best.Parameters, weight, Derivatives.Hessian);
         var reference = ReferenceFits.Of(design, weight);
         return new FittedModel(
             likelihood, form, status, [.. best.Parameters], final.Value, reference.EqualProbability, reference.Constants(), final.Hessian,

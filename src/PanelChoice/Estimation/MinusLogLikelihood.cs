@@ -105,8 +105,15 @@ internal sealed class MinusLogLikelihood
     public SmoothValue Evaluate(ReadOnlySpan<double> x)
     {
         var parameters = Parameters(x);
-        var at = likelihood.Evaluate(parameters, personWeight, Derivatives.Hessian);
-        var n = x.Length;
+        return InCoordinates(parameters, likelihood.Evaluate(parameters, personWeight, Derivatives.Hessian));
+    }
+
+    /// <summary>What the likelihood is at a point, with its derivatives by the coordinates.</summary>
+    /// <param name="parameters">All K parameters.</param>
+    /// <param name="at">The log-likelihood there, with its Hessian.</param>
+    public SmoothValue InCoordinates(ReadOnlySpan<double> parameters, LikelihoodEvaluation at)
+    {
+        var n = Active.Length;
         var K = all.Length;
         var gradient = new double[n];
         var hessian = new double[n * n];
@@ -124,7 +131,7 @@ internal sealed class MinusLogLikelihood
     }
 
     /// <summary>Derivative of a parameter by its coordinate.</summary>
-    private double Slope(int i, double[] parameters) => IsDissimilarity(Active[i]) ? -Expm1(-parameters[Active[i]]) : 1 / scale[Active[i]];
+    private double Slope(int i, ReadOnlySpan<double> parameters) => IsDissimilarity(Active[i]) ? -Expm1(-parameters[Active[i]]) : 1 / scale[Active[i]];
 
     /// <summary>exp(x) - 1 and log(1 + x) to full accuracy near 0 by Kahan's division (Higham 2002, "Accuracy and Stability", 1.14.1).</summary>
     private static double Expm1(double x)
