@@ -33,7 +33,7 @@ public sealed class ClusterRefitter : IRefitter
         this.model = model;
         this.threads = threads;
         likelihood = LikelihoodKernel.Create(model.Design, model.Form, 1);
-        survey = ColumnSurvey.Of(model.Design, threads);
+        survey = model.Survey ?? ColumnSurvey.Of(model.Design, threads);
         points = new StartingPoints(model.Design, model.Form);
     }
 

@@ -71,6 +71,9 @@ public sealed record FittedModel(
     /// <summary>Free coefficients that the sample cannot tell; they are held at 0 and the others estimated given that.</summary>
     public ImmutableArray<int> Held { get; init; } = [];
 
+    /// <summary>What the fit learnt of each column by itself, kept for refits; null for a model that was not made by a fit.</summary>
+    internal ColumnSurvey? Survey { get; init; }
+
     /// <summary>The design of the likelihood.</summary>
     public ChoiceDesign Design => Likelihood.Design;
 

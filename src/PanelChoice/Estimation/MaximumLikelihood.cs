@@ -81,6 +81,7 @@ public static class MaximumLikelihood
             curvature.GradientNorm, best.Iterations, settings.Starts, optima.Sum(o => o.Starts), optima, [.. found])
         {
             Held = held,
+            Survey = survey,
         };
     }
 
