@@ -21,6 +21,7 @@ public sealed class ClusterRefitter : IRefitter
     private readonly IChoiceLikelihood likelihood;
     private readonly ColumnSurvey survey;
     private readonly StartingPoints points;
+    private readonly double samplingWeight;
     private readonly int threads;
 
     /// <summary>A refitter of a model.</summary>
@@ -35,6 +36,7 @@ public sealed class ClusterRefitter : IRefitter
         likelihood = LikelihoodKernel.Create(model.Design, model.Form, 1);
         survey = model.Survey ?? ColumnSurvey.Of(model.Design, threads);
         points = new StartingPoints(model.Design, model.Form);
+        samplingWeight = MinusLogLikelihood.MeanWeight(model.Design, [.. model.Design.PersonWeight]);
     }
 
     /// <inheritdoc/>
@@ -91,8 +93,18 @@ public sealed class ClusterRefitter : IRefitter
         }
 
         var (status, about) = Judge(best, active, weight);
-        return new RefitOutcome(status, [.. best.Parameters], best.LogLikelihood, iterations, retried, KindOf(status), about);
+        return new RefitOutcome(status, [.. best.Parameters], best.LogLikelihood, iterations, retried, KindOf(status), about)
+        {
+            Decrement = status == FitStatus.Converged ? best.Last.Decrement * InSamplingUnits(weight) : double.NaN,
+        };
     }
+
+    /// <summary>
+    /// A search measures decrements with the request's weights scaled to mean 1 over the situations that count. In a draw with replacement the clones
+    /// count too, so that its pooled standard errors are smaller: there the sampling weights alone are scaled.
+    /// </summary>
+    private double InSamplingUnits(double[] weight) =>
+        Math.Sqrt(Math.Max(1, MinusLogLikelihood.MeanWeight(model.Design, weight) / samplingWeight));
 
     /// <summary>A maximum beats what stopped anywhere and a boundary that is not above it; otherwise the higher point wins.</summary>
     private static bool IsBetter(SearchEnd end, SearchEnd best) => (end.Kind, best.Kind) switch

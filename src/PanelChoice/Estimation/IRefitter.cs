@@ -18,7 +18,14 @@ public sealed record RefitRequest(ImmutableArray<double> ClusterWeight, Immutabl
 /// <param name="FailedParameters">Parameters the failure is about; may be empty.</param>
 public sealed record RefitOutcome(
     FitStatus Status, ImmutableArray<double> Parameters, double LogLikelihood, int Iterations, bool Retried, string? FailureKind,
-    ImmutableArray<int> FailedParameters);
+    ImmutableArray<int> FailedParameters)
+{
+    /// <summary>
+    /// The refit's certificate: its Newton decrement sqrt(g' H^-1 g) at the end, or a bound on it, g the gradient and H minus the Hessian of its own
+    /// weighted log-likelihood. It says how far the maximum may still be, in pooled standard errors of the refit. NaN where the refit did not converge.
+    /// </summary>
+    public double Decrement { get; init; } = double.NaN;
+}
 
 /// <summary>Estimates the same model again under other weights. An outcome depends on its request alone, never on the rest of the batch.</summary>
 public interface IRefitter

@@ -51,6 +51,8 @@ internal static class ClusterBootstrap
         Array.Fill(estimates, double.NaN);
         var logLikelihood = new double[outcomes.Length];
         Array.Fill(logLikelihood, double.NaN);
+        var decrement = new double[outcomes.Length];
+        Array.Fill(decrement, double.NaN);
         var status = new string[outcomes.Length];
         for (var r = 0; r < outcomes.Length; r++)
         {
@@ -58,6 +60,7 @@ internal static class ClusterBootstrap
             {
                 status[r] = "converged";
                 logLikelihood[r] = outcomes[r].LogLikelihood;
+                decrement[r] = outcomes[r].Decrement;
                 outcomes[r].Parameters.CopyTo(estimates, r * k);
             }
             else
@@ -78,7 +81,10 @@ internal static class ClusterBootstrap
         return new BootstrapSummary(
             outcomes.Length, outcomes.Length - failures.Sum(f => f.Count), outcomes.Count(o => o.Retried), failures,
             ImmutableCollectionsMarshal.AsImmutableArray(estimates), ImmutableCollectionsMarshal.AsImmutableArray(logLikelihood),
-            ImmutableCollectionsMarshal.AsImmutableArray(status));
+            ImmutableCollectionsMarshal.AsImmutableArray(status))
+        {
+            Decrement = ImmutableCollectionsMarshal.AsImmutableArray(decrement),
+        };
     }
 
     /// <summary>Covariance of the replicates around their mean, or a refusal.</summary>

@@ -33,7 +33,10 @@ internal static class ClusterJackknife
     {
         var refits = JackknifeRefits.Run(input, work);
         var summary = new JackknifeSummary(
-            JackknifeKind.Refit, input.Clusters.Length, refits.Failed, ImmutableCollectionsMarshal.AsImmutableArray(refits.Deviations));
+            JackknifeKind.Refit, input.Clusters.Length, refits.Failed, ImmutableCollectionsMarshal.AsImmutableArray(refits.Deviations))
+        {
+            LargestDecrement = refits.LargestDecrement,
+        };
         if (refits.Hopeless.Count > 0)
         {
             var (cluster, failure) = refits.Hopeless[0];

@@ -1,5 +1,6 @@
 using System.Collections.Immutable;
 using MathNet.Numerics.LinearAlgebra;
+using PanelChoice.Estimation;
 using PanelChoice.Study;
 
 namespace PanelChoice.Inference;
@@ -106,7 +107,11 @@ public sealed record ParameterInference(
 /// G x F deviations from the full estimate, row by row. A row is NaN where the refit failed, an entry where the parameter was not identified
 /// without the cluster.
 /// </param>
-public sealed record JackknifeSummary(JackknifeKind Kind, int Refits, int Failures, ImmutableArray<double> Deviations);
+public sealed record JackknifeSummary(JackknifeKind Kind, int Refits, int Failures, ImmutableArray<double> Deviations)
+{
+    /// <summary>The largest certificate (<see cref="RefitOutcome.Decrement"/>) among the refits that converged; null for the one-step form or where none did.</summary>
+    public double? LargestDecrement { get; init; }
+}
 
 /// <summary>Failures of one kind among bootstrap replicates.</summary>
 /// <param name="Kind">Kind in plain words.</param>
@@ -128,7 +133,11 @@ public sealed record ReplicateFailures(string Kind, int Count, ImmutableArray<in
 /// <param name="Status">"converged" or the failure's kind, for each replicate.</param>
 public sealed record BootstrapSummary(
     int Requested, int Done, int Retried, ImmutableArray<ReplicateFailures> Failures,
-    ImmutableArray<double> Estimates, ImmutableArray<double> LogLikelihood, ImmutableArray<string> Status);
+    ImmutableArray<double> Estimates, ImmutableArray<double> LogLikelihood, ImmutableArray<string> Status)
+{
+    /// <summary>Certificate of each replicate (<see cref="RefitOutcome.Decrement"/>): how far its maximum may still be, in its pooled standard errors; NaN where it failed.</summary>
+    public ImmutableArray<double> Decrement { get; init; } = [];
+}
 
 /// <summary>A person or cluster that moves a term.</summary>
 /// <param name="Cluster">Index of the cluster.</param>

@@ -10,8 +10,10 @@ namespace PanelChoice.Inference;
 /// <param name="Failed">Clusters whose plain refit failed, rescued by holding a term or not.</param>
 /// <param name="Lost">Term by term (place among the free ones), the clusters without which it is not identified, with the kind of failure.</param>
 /// <param name="Hopeless">Clusters without which nothing could be estimated, with the kind of failure.</param>
+/// <param name="LargestDecrement">The largest certificate among the refits that converged; null where none did.</param>
 internal sealed record JackknifeRefits(
-    double[] Deviations, int Failed, SortedDictionary<int, List<(int Cluster, string Kind)>> Lost, List<(int Cluster, string Kind)> Hopeless)
+    double[] Deviations, int Failed, SortedDictionary<int, List<(int Cluster, string Kind)>> Lost, List<(int Cluster, string Kind)> Hopeless,
+    double? LargestDecrement)
 {
     /// <summary>
     /// Refits without each cluster, warm-started from the full estimate. Where a refit finds terms that are not identified (or run to the
@@ -27,6 +29,7 @@ internal sealed record JackknifeRefits(
         var lost = new SortedDictionary<int, List<(int, string)>>();
         var hopeless = new List<(int, string)>();
         var failed = new HashSet<int>();
+        double? largest = null;
         var pending = Enumerable.Range(0, clusters).Select(g => new Deletion(g, [], [])).ToList();
         for (var done = 0; pending.Count > 0; done = clusters - pending.Count)
         {
@@ -44,6 +47,7 @@ internal sealed record JackknifeRefits(
                         for (var k = 0; k < f; k++)
                             if (!deletion.Lost.Contains(input.Free[k]))
                                 deviations[(deletion.Cluster * f) + k] = outcome.Parameters[input.Free[k]] - input.Estimates[input.Free[k]];
+                        largest = Math.Max(largest ?? 0, outcome.Decrement);
                         done++;
                         continue;
                     }
@@ -72,7 +76,7 @@ internal sealed record JackknifeRefits(
         }
 
         work.Report("jackknife", clusters, clusters);
-        return new JackknifeRefits(deviations, failed.Count, lost, hopeless);
+        return new JackknifeRefits(deviations, failed.Count, lost, hopeless, largest);
     }
 
     /// <summary>One cluster left out; parameters by their index in the layout.</summary>

@@ -184,7 +184,11 @@ public sealed record FailureCount(string Kind, int Count);
 /// <param name="Kind">"refit" or "one_step".</param>
 /// <param name="Refits">Delete-one estimates attempted.</param>
 /// <param name="Failures">Of these, failed.</param>
-public sealed record JackknifeCounts(string Kind, int Refits, int Failures);
+public sealed record JackknifeCounts(string Kind, int Refits, int Failures)
+{
+    /// <summary>How far from its maximum any of the refits may be, in its own pooled standard errors; null where nothing was refitted.</summary>
+    public double? LargestDecrement { get; init; }
+}
 
 /// <summary>The clusters the figures rest on.</summary>
 /// <param name="By">"person" or the cluster column.</param>

@@ -97,4 +97,11 @@ public sealed record SquareMatrix(int Order, ImmutableArray<double> Values)
 /// <param name="LogLikelihood">Log-likelihood; NaN where the replicate failed.</param>
 /// <param name="Estimates">Replicates x parameters, row by row; NaN where the replicate failed.</param>
 public sealed record ReplicateTable(
-    ImmutableArray<string> Labels, ImmutableArray<string> Status, ImmutableArray<double> LogLikelihood, ImmutableArray<double> Estimates);
+    ImmutableArray<string> Labels, ImmutableArray<string> Status, ImmutableArray<double> LogLikelihood, ImmutableArray<double> Estimates)
+{
+    /// <summary>
+    /// Newton decrement at the end of each replicate, or a bound on it: how far its maximum may still be, in the replicate's own pooled standard
+    /// errors; NaN where the replicate failed.
+    /// </summary>
+    public ImmutableArray<double> Decrement { get; init; } = [];
+}

@@ -22,7 +22,7 @@ internal static class ResultBuilder
         var fit = Fit(model, book);
         var parameters = entries.Select((e, i) => ParameterEntries.Figures(e, $"parameters[{i}]", model, inference, book)).ToImmutableArray();
         var covariance = CovarianceExpansion.Over(entries, inference, book);
-        if (inference.Jackknife is null) book.Note("jackknife", ParameterEntries.KindReason(CovarianceKind.Jackknife, inference));
+        var jackknife = Jackknife(inference, book);
         var clusters = Clusters(stages, book);
         NoteDiagnostics(diagnostics, book);
         return new AnalysisResult(
@@ -38,7 +38,7 @@ internal static class ResultBuilder
             inference.Bootstrap is { } b
                 ? new BootstrapCounts(b.Requested, b.Done, b.Retried, [.. b.Failures.Select(f => new FailureCount(f.Kind, f.Count))])
                 : new BootstrapCounts(study.Inference.Replicates, 0, 0, []),
-            inference.Jackknife is { } j ? new JackknifeCounts(j.Kind == JackknifeKind.OneStep ? "one_step" : "refit", j.Refits, j.Failures) : null,
+            jackknife,
             covariance,
             clusters,
             diagnostics,
@@ -73,6 +73,23 @@ internal static class ResultBuilder
         model.Iterations,
         new StartCounts(model.StartsRequested, model.StartsConverged, [.. model.Optima.Select(o => new OptimumCount(o.LogLikelihood, o.Starts))]),
         [.. model.Findings.Select(f => new FitWarning(f.Id, f.Sentence, [.. f.Parameters.Select(k => model.Layout.Parameters[k].Label)]))]);
+
+    private static JackknifeCounts? Jackknife(InferenceResult inference, ReasonBook book)
+    {
+        if (inference.Jackknife is not { } summary)
+        {
+            book.Note("jackknife", ParameterEntries.KindReason(CovarianceKind.Jackknife, inference));
+            return null;
+        }
+
+        var isOneStep = summary.Kind == JackknifeKind.OneStep;
+        return new JackknifeCounts(isOneStep ? "one_step" : "refit", summary.Refits, summary.Failures)
+        {
+            LargestDecrement = book.Number(
+                "jackknife.largest_decrement", summary.LargestDecrement,
+                isOneStep ? "One Newton step stands for each refit." : "No refit converged."),
+        };
+    }
 
     private static ClusterResult Clusters(FindingsInput stages, ReasonBook book)
     {
@@ -130,6 +147,9 @@ internal static class ResultBuilder
         for (var r = 0; r < bootstrap.Requested; r++)
             for (var i = 0; i < entries.Length; i++)
                 estimates[(r * entries.Length) + i] = entries[i].Value(bootstrap.Estimates.AsSpan(r * model.Layout.Count, model.Layout.Count));
-        return new ReplicateTable(labels, bootstrap.Status, bootstrap.LogLikelihood, ImmutableCollectionsMarshal.AsImmutableArray(estimates));
+        return new ReplicateTable(labels, bootstrap.Status, bootstrap.LogLikelihood, ImmutableCollectionsMarshal.AsImmutableArray(estimates))
+        {
+            Decrement = bootstrap.Decrement,
+        };
     }
 }

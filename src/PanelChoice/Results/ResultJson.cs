@@ -230,6 +230,7 @@ public static class ResultJson
             json.WriteString("kind", jackknife.Kind);
             json.WriteNumber("refits", jackknife.Refits);
             json.WriteNumber("failures", jackknife.Failures);
+            json.WriteFigure("largest_decrement", jackknife.LargestDecrement);
         });
     }
 

@@ -58,5 +58,5 @@ internal sealed class LinearToy : IRefitter
         Matrix<double>.Build.DenseOfRowVectors(Enumerable.Range(0, Y.Count).Where(i => ClusterOf[i] == cluster).Select(i => X.Row(i)));
 
     public ImmutableArray<RefitOutcome> Refit(ImmutableArray<RefitRequest> batch, CancellationToken cancellation) =>
-        [.. batch.Select(r => new RefitOutcome(FitStatus.Converged, [.. Estimate(g => r.ClusterWeight[g])], 0, 1, false, null, []))];
+        [.. batch.Select(r => new RefitOutcome(FitStatus.Converged, [.. Estimate(g => r.ClusterWeight[g])], 0, 1, false, null, []) { Decrement = 0 })];
 }

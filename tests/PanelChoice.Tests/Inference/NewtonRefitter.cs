@@ -81,7 +81,7 @@ internal sealed class NewtonRefitter(IChoiceLikelihood likelihood, int threads) 
             here = next;
             var far = free.FirstOrDefault(p => Math.Abs(at[p]) > 15, -1);
             if (far >= 0) return Failed(FitStatus.Separated, "separated", far);
-            if (ridge == 0 && size == 1 && decrement < 1e-16) return new RefitOutcome(FitStatus.Converged, [.. at], here.Value, iteration, false, null, []);
+            if (ridge == 0 && size == 1 && decrement < 1e-16) return new RefitOutcome(FitStatus.Converged, [.. at], here.Value, iteration, false, null, []) { Decrement = Math.Sqrt(Math.Max(0, decrement)) };
         }
 
         return Failed(FitStatus.Stopped, "not converged");

@@ -40,7 +40,7 @@ public class ResultJsonTests
     [InlineData("parameters.0.interval", "pooled robust cluster jackknife two_way bootstrap bootstrap_percentile")]
     [InlineData("parameters.0.p_value", "pooled robust cluster jackknife two_way bootstrap")]
     [InlineData("bootstrap", "requested done retried failed")]
-    [InlineData("jackknife", "kind refits failures")]
+    [InlineData("jackknife", "kind refits failures largest_decrement")]
     [InlineData("covariance", "pooled outer_product robust cluster cluster_uncorrected jackknife two_way bootstrap")]
     [InlineData("clusters", "by count effective smallest median largest degrees_of_freedom most_influential")]
     [InlineData("clusters.most_influential.0", "person term change")]

@@ -51,6 +51,7 @@ public class ResultTablesTests
             Replicates = table with
             {
                 Status = table.Status.SetItem(2, "separated"), LogLikelihood = table.LogLikelihood.SetItem(2, double.NaN),
+                Decrement = table.Decrement.SetItem(2, double.NaN),
                 Estimates = [.. table.Estimates.Select((x, i) => i / table.Labels.Length == 2 ? double.NaN : x)],
             },
         };
@@ -59,17 +60,20 @@ public class ResultTablesTests
         stream.Position = 0;
         await using var reader = await ParquetReader.CreateAsync(stream);
         Assert.Equal(
-            ["replicate", "status", "log_likelihood", "constant [B]", "constant [C]", "constant [D]", "attribute 1", "attribute 2", "same as last time", "land", "water"],
+            ["replicate", "status", "log_likelihood", "newton_decrement", "constant [B]", "constant [C]", "constant [D]", "attribute 1", "attribute 2", "same as last time", "land", "water"],
             reader.Schema.GetDataFields().Select(f => f.Name));
         using var group = reader.OpenRowGroupReader(0);
         var fields = reader.Schema.GetDataFields();
         var likelihood = new double?[19];
         await group.ReadAsync<double>(fields[2], likelihood);
         var habit = new double?[19];
-        await group.ReadAsync<double>(fields[8], habit);
+        await group.ReadAsync<double>(fields[9], habit);
+        var decrement = new double?[19];
+        await group.ReadAsync<double>(fields[3], decrement);
         for (var r = 0; r < 19; r++)
         {
             Assert.Equal(r == 2 ? null : table.LogLikelihood[r], likelihood[r]);
+            Assert.Equal(r == 2 ? null : table.Decrement[r], decrement[r]);
             Assert.Equal(r == 2 ? null : table.Estimates[(r * table.Labels.Length) + 5], habit[r]);
         }
     }
@@ -82,7 +86,7 @@ public class ResultTablesTests
         stream.Position = 0;
         await using var reader = await ParquetReader.CreateAsync(stream);
         Assert.Equal(0, reader.RowGroupCount);
-        Assert.Equal(11, reader.Schema.GetDataFields().Length);
+        Assert.Equal(12, reader.Schema.GetDataFields().Length);
     }
 
     [Fact]
