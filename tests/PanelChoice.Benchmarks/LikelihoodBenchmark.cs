@@ -44,7 +44,7 @@ internal static class LikelihoodBenchmark
 
         Console.WriteLine(
             $"Case {made.Name}: {design.Persons} persons, {design.Situations} situations, {design.Alternatives} alternatives, " +
-            $"{design.Layout.Count} parameters, {design.StoredColumns} stored columns; kernel {vector.Kernel}");
+            $"{design.Layout.Count} parameters, {design.Store.Format.Columns.Length} stored columns; kernel {vector.Kernel}");
         Console.WriteLine($"{Repetitions} repetitions side by side, one thread, {ThreadClock.Name}; nanoseconds are the minimum for each situation");
         Console.WriteLine($"{"",-46}{"minimum",10}{"median",10}{"maximum",10}{"ns",10}");
         Print("scalar gradient pass / vector gradient pass", one[1], one[0], one[1], design);

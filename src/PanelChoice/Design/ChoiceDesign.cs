@@ -10,27 +10,23 @@ namespace PanelChoice.Design;
 public sealed record DesignColumn(int Parameter, int Alternative, int Storage);
 
 /// <summary>A run of situations that holds whole persons; its lanes are padded to a multiple of 8.</summary>
+/// <param name="Index">Its place among the blocks.</param>
 /// <param name="FirstSituation">First situation.</param>
 /// <param name="Situations">Number of situations.</param>
 /// <param name="Lanes">Situations rounded up to a multiple of <see cref="ChoiceDesign.TileLanes"/>.</param>
-/// <param name="DataOffset">Where its columns begin in <see cref="ChoiceDesign.Data"/>.</param>
-/// <param name="MaskOffset">Where its masks begin in <see cref="ChoiceDesign.Offered"/> and <see cref="ChoiceDesign.ChosenMask"/>.</param>
-public sealed record DesignBlock(int FirstSituation, int Situations, int Lanes, int DataOffset, int MaskOffset);
+public sealed record DesignBlock(int Index, int FirstSituation, int Situations, int Lanes);
 
 /// <summary>
 /// The estimation sample laid out for the kernels. A situation is a used occasion; situations of one person are consecutive. In a block
 /// the stored columns follow each other, each <c>Lanes</c> values long, ordered by alternative and then by parameter, so that a pass reads
-/// memory in one forward stream. Masks are one byte for each tile of 8 lanes and alternative: <c>MaskOffset + tile * J + alternative</c>, bit = lane.
+/// memory in one forward stream; masks say what is offered and what is chosen (<see cref="BlockFormat"/>).
 /// Padding lanes have no offered alternative, no choice and value 0.
 /// </summary>
 /// <param name="Tree">The nest tree.</param>
 /// <param name="Layout">The parameters.</param>
 /// <param name="Columns">Products coefficient x covariate, ordered by alternative, then parameter.</param>
-/// <param name="StoredColumns">Number of stored columns.</param>
 /// <param name="Blocks">The blocks in order.</param>
-/// <param name="Data">Stored values, block after block.</param>
-/// <param name="Offered">Availability masks.</param>
-/// <param name="ChosenMask">Choice masks.</param>
+/// <param name="Store">Their columns and masks.</param>
 /// <param name="Chosen">Chosen alternative of each situation.</param>
 /// <param name="PanelOccasion">Panel occasion of each situation.</param>
 /// <param name="PersonStart">First situation of each of the sample's persons; one more entry closes the last.</param>
@@ -43,11 +39,8 @@ public sealed record ChoiceDesign(
     NestTree Tree,
     ParameterLayout Layout,
     ImmutableArray<DesignColumn> Columns,
-    int StoredColumns,
     ImmutableArray<DesignBlock> Blocks,
-    ImmutableArray<double> Data,
-    ImmutableArray<byte> Offered,
-    ImmutableArray<byte> ChosenMask,
+    BlockStore Store,
     ImmutableArray<int> Chosen,
     ImmutableArray<int> PanelOccasion,
     ImmutableArray<int> PersonStart,
@@ -74,23 +67,6 @@ public sealed record ChoiceDesign(
 
     /// <summary>Block of each situation, for code that walks situations one by one.</summary>
     public ImmutableArray<int> BlockOf { get; } = [.. Blocks.SelectMany((b, i) => Enumerable.Repeat(i, b.Situations))];
-
-    /// <summary>Whether an alternative is offered in a situation.</summary>
-    public bool IsOffered(int situation, int alternative)
-    {
-        var block = Blocks[BlockOf[situation]];
-        var lane = situation - block.FirstSituation;
-        return (Offered[block.MaskOffset + ((lane / TileLanes) * Alternatives) + alternative] >> (lane % TileLanes) & 1) != 0;
-    }
-
-    /// <summary>The covariate of one column in one situation.</summary>
-    public double Value(int situation, DesignColumn column)
-    {
-        ArgumentNullException.ThrowIfNull(column);
-        if (column.Storage < 0) return 1;
-        var block = Blocks[BlockOf[situation]];
-        return Data[block.DataOffset + (column.Storage * block.Lanes) + (situation - block.FirstSituation)];
-    }
 
     private static ImmutableArray<int> Expand(ImmutableArray<int> start)
     {

@@ -1,5 +1,4 @@
 using System.Collections.Immutable;
-using System.Runtime.InteropServices;
 using PanelChoice.Covariates;
 using PanelChoice.Study;
 
@@ -25,23 +24,17 @@ public static class ChoiceDesignBuilder
             throw new ArgumentException("The nest tree and the panel name different alternatives.", nameof(tree));
 
         var layout = LayOutParameters(covariates, tree, nests, form);
-        var columns = Columns(covariates, out var stored);
+        var columns = Columns(covariates);
         var persons = Persons(covariates);
-        var blocks = Blocks(persons.Start, stored, panel.Alternatives.Length, out var dataLength, out var maskLength);
-        var data = new double[dataLength];
-        var offered = new byte[maskLength];
-        var chosenMask = new byte[maskLength];
-        var chosen = new int[covariates.Used.Length];
-        foreach (var block in blocks) Fill(block, covariates, columns, data, offered, chosenMask, chosen);
+        var blocks = Blocks(persons.Start);
+        var store = new MemoryBlockStore(new BlockFormat(ColumnCodings.Of(columns, covariates.Covariates), panel.Alternatives.Length));
+        foreach (var block in blocks) Fill(block, covariates, columns, store.Format, store.Append(block.Lanes));
 
         var clusterNames = persons.Panel.Select(p => panel.ClusterOf[p]).Distinct().Order().ToList();
         var clusterNumber = clusterNames.Select((c, i) => (c, i)).ToDictionary(x => x.c, x => x.i);
         return new ChoiceDesign(
-            tree, layout, columns, stored, blocks,
-            ImmutableCollectionsMarshal.AsImmutableArray(data),
-            ImmutableCollectionsMarshal.AsImmutableArray(offered),
-            ImmutableCollectionsMarshal.AsImmutableArray(chosenMask),
-            ImmutableCollectionsMarshal.AsImmutableArray(chosen),
+            tree, layout, columns, blocks, store,
+            [.. covariates.Used.Select(occasion => panel.Chosen[occasion])],
             covariates.Used,
             persons.Start,
             persons.Panel,
@@ -108,10 +101,10 @@ public static class ChoiceDesignBuilder
         return wide;
     }
 
-    private static ImmutableArray<DesignColumn> Columns(CovariateSet covariates, out int stored)
+    private static ImmutableArray<DesignColumn> Columns(CovariateSet covariates)
     {
         var columns = new List<DesignColumn>();
-        stored = 0;
+        var stored = 0;
         for (var j = 0; j < covariates.Panel.Alternatives.Length; j++)
             for (var k = 0; k < covariates.Covariates.Length; k++)
                 if (covariates.Covariates[k].Enters.Contains(j))
@@ -135,11 +128,9 @@ public static class ChoiceDesignBuilder
         return ([.. start], [.. panel]);
     }
 
-    private static ImmutableArray<DesignBlock> Blocks(
-        ImmutableArray<int> personStart, int stored, int alternatives, out int dataLength, out int maskLength)
+    private static ImmutableArray<DesignBlock> Blocks(ImmutableArray<int> personStart)
     {
         var blocks = new List<DesignBlock>();
-        dataLength = maskLength = 0;
         var first = 0;
         for (var p = 0; p + 1 < personStart.Length; p++)
         {
@@ -147,9 +138,7 @@ public static class ChoiceDesignBuilder
             if (!last && personStart[p + 2] - first <= TargetLanes) continue;
             var situations = personStart[p + 1] - first;
             var lanes = (situations + ChoiceDesign.TileLanes - 1) / ChoiceDesign.TileLanes * ChoiceDesign.TileLanes;
-            blocks.Add(new DesignBlock(first, situations, lanes, dataLength, maskLength));
-            dataLength = checked(dataLength + (lanes * stored));
-            maskLength = checked(maskLength + (lanes / ChoiceDesign.TileLanes * alternatives));
+            blocks.Add(new DesignBlock(blocks.Count, first, situations, lanes));
             first = personStart[p + 1];
         }
 
@@ -157,34 +146,36 @@ public static class ChoiceDesignBuilder
     }
 
     private static void Fill(
-        DesignBlock block, CovariateSet covariates, ImmutableArray<DesignColumn> columns, double[] data, byte[] offered, byte[] chosenMask, int[] chosen)
+        DesignBlock block, CovariateSet covariates, ImmutableArray<DesignColumn> columns, BlockFormat format, Span<byte> bytes)
     {
         var panel = covariates.Panel;
         var alternatives = panel.Alternatives.Length;
+        var offered = bytes[format.ColumnOffset(format.Columns.Length, block.Lanes)..];
+        var chosen = bytes[format.ChosenOffset(block.Lanes)..];
         for (var lane = 0; lane < block.Situations; lane++)
         {
-            var situation = block.FirstSituation + lane;
-            var occasion = covariates.Used[situation];
-            chosen[situation] = panel.Chosen[occasion];
-            var mask = block.MaskOffset + ((lane / ChoiceDesign.TileLanes) * alternatives);
+            var occasion = covariates.Used[block.FirstSituation + lane];
+            var mask = lane / ChoiceDesign.TileLanes * alternatives;
             var bit = (byte)(1 << (lane % ChoiceDesign.TileLanes));
             for (var j = 0; j < alternatives; j++)
                 if (panel.Offered[(occasion * alternatives) + j]) offered[mask + j] |= bit;
-            chosenMask[mask + chosen[situation]] |= bit;
+            chosen[mask + panel.Chosen[occasion]] |= bit;
         }
 
+        var values = new double[block.Lanes];
         foreach (var column in columns)
         {
             if (column.Storage < 0) continue;
             var covariate = covariates.Covariates[column.Parameter];
             var place = covariate.Enters.IndexOf(column.Alternative);
-            var into = block.DataOffset + (column.Storage * block.Lanes);
             for (var lane = 0; lane < block.Situations; lane++)
             {
                 var situation = block.FirstSituation + lane;
                 var isOffered = panel.Offered[(covariates.Used[situation] * alternatives) + column.Alternative];
-                data[into + lane] = isOffered ? covariate.Values[(situation * covariate.Enters.Length) + place] : 0;
+                values[lane] = isOffered ? covariate.Values[(situation * covariate.Enters.Length) + place] : 0;
             }
+
+            format.Encode(column.Storage, values, bytes);
         }
     }
 }

@@ -18,6 +18,7 @@ namespace PanelChoice.Diagnostics;
 internal sealed class SituationScores
 {
     private readonly ChoiceDesign design;
+    private readonly BlockReader reader;
     private readonly TreeProbabilities tree;
     private readonly double[] parameters;
     private readonly double[]? basis;
@@ -41,6 +42,7 @@ internal sealed class SituationScores
     public SituationScores(ChoiceDesign design, NestedLogitForm form, ReadOnlySpan<double> parameters, double[]? basis)
     {
         this.design = design;
+        reader = design.Store.Reader();
         this.parameters = parameters.ToArray();
         this.basis = basis;
         tree = new TreeProbabilities(design.Tree, form);
@@ -152,11 +154,11 @@ internal sealed class SituationScores
     private void LoadDesign(int situation)
     {
         var block = design.Blocks[design.BlockOf[situation]];
+        reader.Open(block);
         var lane = situation - block.FirstSituation;
-        var mask = block.MaskOffset + (lane / ChoiceDesign.TileLanes * J);
         for (var j = 0; j < J; j++)
         {
-            offered[j] = ((design.Offered[mask + j] >> (lane % ChoiceDesign.TileLanes)) & 1) != 0;
+            offered[j] = reader.IsOffered(lane, j);
             utility[j] = 0;
         }
 
@@ -164,7 +166,7 @@ internal sealed class SituationScores
         foreach (var column in design.Columns)
         {
             if (!offered[column.Alternative]) continue;
-            var x = column.Storage < 0 ? 1 : design.Data[block.DataOffset + (column.Storage * block.Lanes) + lane];
+            var x = reader.Value(column.Storage, lane);
             utility[column.Alternative] += parameters[column.Parameter] * x;
             if (freeIndex[column.Parameter] is var k && k >= 0) z[(column.Alternative * K) + k] = x;
         }

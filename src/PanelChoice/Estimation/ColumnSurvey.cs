@@ -27,9 +27,6 @@ internal enum Evidence : byte
 /// </summary>
 internal sealed class ColumnSurvey
 {
-    /// <summary>Differences below this share of the largest value in the choice set are rounding.</summary>
-    private const double Rounding = 1e-10;
-
     private readonly Evidence[] byCluster;
     private readonly int K;
 
@@ -70,7 +67,6 @@ internal sealed class ColumnSurvey
     public static ColumnSurvey Of(ChoiceDesign design, int threads)
     {
         var K = design.Layout.Count;
-        var columns = design.Columns.GroupBy(c => c.Parameter).OrderBy(g => g.Key).Select(g => (g.Key, Columns: g.ToArray())).ToArray();
         var chunks = FixedChunks.Count(design.Blocks.Length);
         var squares = new double[chunks][];
         var cells = new long[chunks];
@@ -78,17 +74,13 @@ internal sealed class ColumnSurvey
         FixedChunks.Run(design.Blocks.Length, threads, (chunk, first, end) =>
         {
             squares[chunk] = new double[K];
-            for (var b = first; b < end; b++)
-            {
-                var block = design.Blocks[b];
-                foreach (var (k, own) in columns) squares[chunk][k] += SurveyColumn(design, block, k, own, byPerson);
-                cells[chunk] += SurveyNests(design, block, byPerson);
-            }
+            var survey = new BlockSurvey(design);
+            for (var b = first; b < end; b++) cells[chunk] += survey.Add(design.Blocks[b], squares[chunk], byPerson);
         });
 
         var scale = Enumerable.Repeat(1.0, K).ToArray();
         var total = cells.Sum();
-        foreach (var (k, _) in columns)
+        for (var k = 0; k < design.Layout.Coefficients; k++)
         {
             var sum = 0.0;
             foreach (var part in squares) sum += part[k];
@@ -101,77 +93,5 @@ internal sealed class ColumnSurvey
         var chosen = new bool[design.Alternatives];
         foreach (var j in design.Chosen) chosen[j] = true;
         return new ColumnSurvey(scale, byCluster, chosen, K);
-    }
-
-    /// <summary>Marks the evidence of one column and returns its squared deviations from the mean of the choice set.</summary>
-    private static double SurveyColumn(ChoiceDesign design, DesignBlock block, int k, DesignColumn[] own, Evidence[] byPerson)
-    {
-        var J = design.Alternatives;
-        var K = design.Layout.Count;
-        var values = new double[J];
-        var squares = 0.0;
-        for (var lane = 0; lane < block.Situations; lane++)
-        {
-            var situation = block.FirstSituation + lane;
-            Array.Clear(values);
-            foreach (var c in own) values[c.Alternative] = c.Storage < 0 ? 1 : design.Data[block.DataOffset + (c.Storage * block.Lanes) + lane];
-
-            var mask = block.MaskOffset + (lane / ChoiceDesign.TileLanes * J);
-            var bit = 1 << (lane % ChoiceDesign.TileLanes);
-            var offered = 0;
-            double sum = 0, min = double.PositiveInfinity, max = double.NegativeInfinity;
-            for (var j = 0; j < J; j++)
-            {
-                if ((design.Offered[mask + j] & bit) == 0) continue;
-                offered++;
-                sum += values[j];
-                min = Math.Min(min, values[j]);
-                max = Math.Max(max, values[j]);
-            }
-
-            var rounding = Rounding * Math.Max(Math.Abs(min), Math.Abs(max));
-            if (!(max - min > rounding)) continue;
-            var mean = sum / offered;
-            for (var j = 0; j < J; j++)
-                if ((design.Offered[mask + j] & bit) != 0) squares += (values[j] - mean) * (values[j] - mean);
-            var chosen = values[design.Chosen[situation]];
-            var evidence = Evidence.Varies;
-            if (chosen - min > rounding) evidence |= Evidence.ChosenHasMore;
-            if (max - chosen > rounding) evidence |= Evidence.ChosenHasLess;
-            byPerson[(design.PersonOf[situation] * K) + k] |= evidence;
-        }
-
-        return squares;
-    }
-
-    /// <summary>Marks the nests that are two or more wide and returns the number of offered alternatives.</summary>
-    private static long SurveyNests(ChoiceDesign design, DesignBlock block, Evidence[] byPerson)
-    {
-        var J = design.Alternatives;
-        var K = design.Layout.Count;
-        var nodes = design.Tree.Nodes;
-        var any = new bool[J + nodes.Length];
-        long cells = 0;
-        for (var lane = 0; lane < block.Situations; lane++)
-        {
-            var person = design.PersonOf[block.FirstSituation + lane];
-            var mask = block.MaskOffset + (lane / ChoiceDesign.TileLanes * J);
-            var bit = 1 << (lane % ChoiceDesign.TileLanes);
-            for (var j = 0; j < J; j++)
-            {
-                any[j] = (design.Offered[mask + j] & bit) != 0;
-                if (any[j]) cells++;
-            }
-
-            for (var n = 0; n < nodes.Length; n++)
-            {
-                var width = 0;
-                foreach (var c in nodes[n].Children) if (any[c]) width++;
-                any[J + n] = width > 0;
-                if (width > 1 && design.Layout.NodeParameter[n] is var k && k >= 0) byPerson[(person * K) + k] |= Evidence.Varies;
-            }
-        }
-
-        return cells;
     }
 }

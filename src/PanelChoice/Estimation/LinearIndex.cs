@@ -87,21 +87,22 @@ internal static class LinearIndex
         var used = design.Columns.Where(c => v[c.Parameter] != 0).ToArray();
         var index = new double[J];
         var offered = new bool[J];
+        var reader = design.Store.Reader();
         for (var b = firstBlock; b < endBlock; b++)
         {
             var block = design.Blocks[b];
+            reader.Open(block);
             for (var lane = 0; lane < block.Situations; lane++)
             {
                 var situation = block.FirstSituation + lane;
                 if (personWeight is not null && personWeight[design.PersonOf[situation]] == 0) continue;
-                var mask = block.MaskOffset + (lane / ChoiceDesign.TileLanes * J);
-                for (var j = 0; j < J; j++) offered[j] = (design.Offered[mask + j] >> (lane % ChoiceDesign.TileLanes) & 1) != 0;
+                for (var j = 0; j < J; j++) offered[j] = reader.IsOffered(lane, j);
                 Array.Clear(index);
                 var size = 0.0;
                 foreach (var c in used)
                 {
                     if (!offered[c.Alternative]) continue;
-                    var term = v[c.Parameter] * (c.Storage < 0 ? 1 : design.Data[block.DataOffset + (c.Storage * block.Lanes) + lane]);
+                    var term = v[c.Parameter] * reader.Value(c.Storage, lane);
                     index[c.Alternative] += term;
                     size = Math.Max(size, Math.Abs(term));
                 }

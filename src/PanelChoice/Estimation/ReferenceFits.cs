@@ -25,16 +25,19 @@ internal sealed class ReferenceFits
         var counts = new Dictionary<string, (int[] Offered, double[] Chosen)>(StringComparer.Ordinal);
         var bySpan = counts.GetAlternateLookup<ReadOnlySpan<char>>();
         var key = new char[J];
+        var reader = design.Store.Reader();
         foreach (var block in design.Blocks)
+        {
+            reader.Open(block);
             for (var lane = 0; lane < block.Situations; lane++)
             {
-                var mask = block.MaskOffset + (lane / ChoiceDesign.TileLanes * J);
-                for (var j = 0; j < J; j++) key[j] = (design.Offered[mask + j] >> (lane % ChoiceDesign.TileLanes) & 1) != 0 ? '1' : '0';
+                for (var j = 0; j < J; j++) key[j] = reader.IsOffered(lane, j) ? '1' : '0';
                 if (!bySpan.TryGetValue(key, out var set))
                     counts[new string(key)] = set = ([.. Enumerable.Range(0, J).Where(j => key[j] == '1')], new double[J]);
                 var situation = block.FirstSituation + lane;
                 set.Chosen[design.Chosen[situation]] += personWeight[design.PersonOf[situation]];
             }
+        }
 
         return new ReferenceFits(J, [.. counts.OrderBy(c => c.Key, StringComparer.Ordinal).Select(c => c.Value)]);
     }

@@ -81,19 +81,19 @@ internal sealed class HessianSums(int parameters)
         }
     }
 
-    /// <summary>Adds sign times the sums to a K x K matrix and starts again from zero.</summary>
-    public void Flush(double sign, Span<double> matrix)
+    /// <summary>Adds sign times the sums, each divided by the units of its two parameters, to a K x K matrix and starts again from zero.</summary>
+    public void Flush(double sign, ReadOnlySpan<double> units, Span<double> matrix)
     {
         for (var k = 0; k < parameters; k++)
         {
             for (var q = 0; q < k; q++)
             {
-                var sum = sign * Vector512.Sum(sums[Slot(k, q)]);
+                var sum = sign * Vector512.Sum(sums[Slot(k, q)]) / units[k] / units[q];
                 matrix[(k * parameters) + q] += sum;
                 matrix[(q * parameters) + k] += sum;
             }
 
-            matrix[(k * parameters) + k] += sign * (Vector512.Sum(sums[Slot(k, k)]) + (2 * Vector512.Sum(sums[CrossSlot(k, k)])));
+            matrix[(k * parameters) + k] += sign * (Vector512.Sum(sums[Slot(k, k)]) + (2 * Vector512.Sum(sums[CrossSlot(k, k)]))) / units[k] / units[k];
         }
 
         Array.Clear(sums);

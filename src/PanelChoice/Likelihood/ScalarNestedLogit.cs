@@ -150,11 +150,13 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
         private readonly double[] z;
         private readonly double[] u;
         private readonly double[] d;
+        private readonly BlockReader reader;
         private int chosen;
 
         public Situation(ChoiceDesign design, NestedLogitForm form, double[] theta)
         {
             this.design = design;
+            reader = design.Store.Reader();
             this.theta = theta;
             tree = new TreeProbabilities(design.Tree, form);
             J = design.Alternatives;
@@ -176,11 +178,11 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
         public void Load(int situation)
         {
             var block = design.Blocks[design.BlockOf[situation]];
+            reader.Open(block);
             var lane = situation - block.FirstSituation;
-            var (tile, bit) = Math.DivRem(lane, ChoiceDesign.TileLanes);
             for (var j = 0; j < J; j++)
             {
-                offered[j] = (design.Offered[block.MaskOffset + (tile * J) + j] >> bit & 1) != 0;
+                offered[j] = reader.IsOffered(lane, j);
                 utility[j] = 0;
                 Array.Clear(y[j]);
             }
@@ -188,7 +190,7 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
             foreach (var column in design.Columns)
             {
                 if (!offered[column.Alternative]) continue;
-                var x = column.Storage < 0 ? 1 : design.Data[block.DataOffset + (column.Storage * block.Lanes) + lane];
+                var x = reader.Value(column.Storage, lane);
                 y[column.Alternative][column.Parameter] = x;
                 utility[column.Alternative] += theta[column.Parameter] * x;
             }

@@ -27,6 +27,7 @@ internal sealed class Strip
     {
         this.plan = plan;
         rows = new StripRows(RowCount(plan.J, plan.Nodes), plan.StripLanes);
+        Columns = new StripColumns(plan);
         Theta = new double[plan.K];
         Dissimilarity = new double[plan.Nodes];
     }
@@ -34,17 +35,11 @@ internal sealed class Strip
     /// <summary>Distance between the rows of two child numbers that follow each other.</summary>
     public int Stride => rows.Stride;
 
-    /// <summary>The parameters.</summary>
+    /// <summary>The parameters, coefficients in the units in which columns are held.</summary>
     public double[] Theta { get; }
 
     /// <summary>l of each node; 1 for the root.</summary>
     public double[] Dissimilarity { get; }
-
-    /// <summary>Block of the strip.</summary>
-    public DesignBlock Block { get; private set; } = null!;
-
-    /// <summary>First lane of the strip in its block.</summary>
-    public int FirstLane { get; private set; }
 
     /// <summary>Lanes of the strip, a multiple of 8.</summary>
     public int Lanes { get; private set; }
@@ -90,15 +85,13 @@ internal sealed class Strip
     /// <summary>For the node at work: the logarithm of that sum.</summary>
     public ref double LogOfSum => ref rows.Row((5 * Children) + (2 * plan.Nodes) + 3);
 
-    /// <summary>The strip's lanes of a stored column.</summary>
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public ref double Column(int stored) => ref Unsafe.Add(
-        ref MemoryMarshal.GetReference(plan.Design.Data.AsSpan()), Block.DataOffset + (stored * Block.Lanes) + FirstLane);
+    /// <summary>Its columns.</summary>
+    public StripColumns Columns { get; }
 
     /// <summary>Takes over parameters.</summary>
     public void Begin(ReadOnlySpan<double> parameters)
     {
-        parameters.CopyTo(Theta);
+        for (var k = 0; k < plan.K; k++) Theta[k] = parameters[k] / plan.Units[k];
         for (var n = 0; n < plan.Nodes; n++) Dissimilarity[n] = plan.NodeParameter[n] is var q && q >= 0 ? Theta[q] : 1;
     }
 
@@ -110,13 +103,17 @@ internal sealed class Strip
     /// <returns>False where every lane has weight 0; then nothing else is loaded.</returns>
     public bool Load(DesignBlock block, int firstLane, int lanes, in LaneWeights weights)
     {
-        Block = block;
-        FirstLane = firstLane;
         Lanes = lanes;
         var weight = rows.Lanes(RootOnPath, lanes);
         weights.Fill(plan.Design, block.FirstSituation + firstLane, block.FirstSituation + block.Situations, weight);
         if (!weight.ContainsAnyExcept(0.0)) return false;
-        for (var j = 0; j < plan.J; j++) SumUtility(j);
+        Columns.Open(block, firstLane, lanes);
+        for (var j = 0; j < plan.J; j++)
+        {
+            Columns.Prepare(plan.Leaves[j]);
+            SumUtility(j);
+        }
+
         ApplyMasks();
         return true;
     }
@@ -133,12 +130,13 @@ internal sealed class Strip
         MemoryMarshal.CreateSpan(ref value, Lanes).Fill(constant);
 
         var i = 0;
-        for (; i + 4 <= leaf.Stored.Length; i += 4)
+        ref var x0 = ref Columns.First(leaf);
+        var stride = Columns.StrideOf(leaf);
+        for (; i + 4 <= leaf.Stored.Length; i += 4, x0 = ref Unsafe.Add(ref x0, 4 * stride))
         {
-            ref var x0 = ref Column(leaf.FirstStored + i);
-            ref var x1 = ref Column(leaf.FirstStored + i + 1);
-            ref var x2 = ref Column(leaf.FirstStored + i + 2);
-            ref var x3 = ref Column(leaf.FirstStored + i + 3);
+            ref var x1 = ref Unsafe.Add(ref x0, stride);
+            ref var x2 = ref Unsafe.Add(ref x1, stride);
+            ref var x3 = ref Unsafe.Add(ref x2, stride);
             var b0 = Vector512.Create(Theta[leaf.Stored[i]]);
             var b1 = Vector512.Create(Theta[leaf.Stored[i + 1]]);
             var b2 = Vector512.Create(Theta[leaf.Stored[i + 2]]);
@@ -153,12 +151,11 @@ internal sealed class Strip
             }
         }
 
-        for (; i < leaf.Stored.Length; i++)
+        for (; i < leaf.Stored.Length; i++, x0 = ref Unsafe.Add(ref x0, stride))
         {
-            ref var x = ref Column(leaf.FirstStored + i);
             var b = Vector512.Create(Theta[leaf.Stored[i]]);
             for (nuint lane = 0; lane < (nuint)Lanes; lane += Tile)
-                Vector512.FusedMultiplyAdd(b, Vector512.LoadUnsafe(ref x, lane), Vector512.LoadUnsafe(ref value, lane)).StoreUnsafe(ref value, lane);
+                Vector512.FusedMultiplyAdd(b, Vector512.LoadUnsafe(ref x0, lane), Vector512.LoadUnsafe(ref value, lane)).StoreUnsafe(ref value, lane);
         }
     }
 
@@ -167,9 +164,8 @@ internal sealed class Strip
     {
         var J = plan.J;
         var stride = (nuint)Stride;
-        var first = Block.MaskOffset + (FirstLane / Tile * J);
-        var offered = plan.Design.Offered.AsSpan(first, Lanes / Tile * J);
-        var chosen = plan.Design.ChosenMask.AsSpan(first, Lanes / Tile * J);
+        var offered = Columns.OfferedMasks;
+        var chosen = Columns.ChosenMasks;
         ref var weight = ref OnPath(J + plan.Root);
         ref var value = ref Value(0);
         ref var onPath = ref OnPath(0);

@@ -41,7 +41,7 @@ internal sealed class StripGradient
     /// <summary>Adds the sums to a gradient of K and starts again from zero.</summary>
     public void Flush(Span<double> gradient)
     {
-        for (var k = 0; k < plan.K; k++) gradient[k] += Vector512.Sum(sums[k]);
+        for (var k = 0; k < plan.K; k++) gradient[k] += Vector512.Sum(sums[k]) / plan.Units[k];
         Array.Clear(sums);
     }
 
@@ -54,7 +54,13 @@ internal sealed class StripGradient
         {
             ref var slope = ref strip.Slope(j);
             var leaf = plan.Leaves[j];
-            for (var i = 0; i < leaf.Stored.Length; i++) AddLanes(ref slope, ref strip.Column(leaf.FirstStored + i), scores, leaf.Stored[i], count);
+            ref var column = ref strip.Columns.First(leaf);
+            foreach (var k in leaf.Stored)
+            {
+                AddLanes(ref slope, ref column, 1 / plan.Units[k], scores, k, count);
+                column = ref Unsafe.Add(ref column, strip.Columns.StrideOf(leaf));
+            }
+
             foreach (var k in leaf.Constants)
                 for (var lane = 0; lane < count; lane++) scores[(lane * plan.K) + k] += Unsafe.Add(ref slope, lane);
         }
@@ -64,31 +70,32 @@ internal sealed class StripGradient
             if (plan.NodeParameter[n] is not (>= 0 and var parameter)) continue;
             if (!plan.IsScaled)
             {
-                AddLanes(ref strip.Slope(plan.J + n), ref strip.Tilt(n), scores, parameter, count);
+                AddLanes(ref strip.Slope(plan.J + n), ref strip.Tilt(n), 1, scores, parameter, count);
                 continue;
             }
 
-            AddLanes(ref strip.Flow(n), ref strip.Tilt(n), scores, parameter, count);
+            AddLanes(ref strip.Flow(n), ref strip.Tilt(n), 1, scores, parameter, count);
             foreach (var c in plan.Children[n])
                 for (var lane = 0; lane < count; lane++)
                     scores[(lane * plan.K) + parameter] -= Unsafe.Add(ref strip.OnPath(c), lane) * Unsafe.Add(ref strip.LogConditional(c), lane) / strip.Dissimilarity[n];
         }
     }
 
-    private void AddLanes(ref double left, ref double right, Span<double> scores, int parameter, int count)
+    private void AddLanes(ref double left, ref double right, double factor, Span<double> scores, int parameter, int count)
     {
-        for (var lane = 0; lane < count; lane++) scores[(lane * plan.K) + parameter] += Unsafe.Add(ref left, lane) * Unsafe.Add(ref right, lane);
+        for (var lane = 0; lane < count; lane++) scores[(lane * plan.K) + parameter] += factor * Unsafe.Add(ref left, lane) * Unsafe.Add(ref right, lane);
     }
 
     private void AddColumns(LeafColumns leaf, ref double slope)
     {
         var i = 0;
-        for (; i + 4 <= leaf.Stored.Length; i += 4)
+        ref var x0 = ref strip.Columns.First(leaf);
+        var stride = strip.Columns.StrideOf(leaf);
+        for (; i + 4 <= leaf.Stored.Length; i += 4, x0 = ref Unsafe.Add(ref x0, 4 * stride))
         {
-            ref var x0 = ref strip.Column(leaf.FirstStored + i);
-            ref var x1 = ref strip.Column(leaf.FirstStored + i + 1);
-            ref var x2 = ref strip.Column(leaf.FirstStored + i + 2);
-            ref var x3 = ref strip.Column(leaf.FirstStored + i + 3);
+            ref var x1 = ref Unsafe.Add(ref x0, stride);
+            ref var x2 = ref Unsafe.Add(ref x1, stride);
+            ref var x3 = ref Unsafe.Add(ref x2, stride);
             var s0 = Vector512<double>.Zero;
             var s1 = Vector512<double>.Zero;
             var s2 = Vector512<double>.Zero;
@@ -108,7 +115,7 @@ internal sealed class StripGradient
             sums[leaf.Stored[i + 3]] += s3;
         }
 
-        for (; i < leaf.Stored.Length; i++) sums[leaf.Stored[i]] += Dot(ref slope, ref strip.Column(leaf.FirstStored + i));
+        for (; i < leaf.Stored.Length; i++, x0 = ref Unsafe.Add(ref x0, stride)) sums[leaf.Stored[i]] += Dot(ref slope, ref x0);
         if (leaf.Constants.Length == 0) return;
         var sum = Vector512<double>.Zero;
         foreach (var a in MemoryMarshal.Cast<double, Vector512<double>>(MemoryMarshal.CreateReadOnlySpan(ref slope, strip.Lanes))) sum += a;

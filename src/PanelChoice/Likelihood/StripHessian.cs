@@ -1,3 +1,4 @@
+using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using PanelChoice.Design;
@@ -84,7 +85,7 @@ internal sealed class StripHessian
     }
 
     /// <summary>Adds sign times the sums to a K x K matrix and starts again from zero.</summary>
-    public void Flush(double sign, Span<double> matrix) => sums.Flush(sign, matrix);
+    public void Flush(double sign, Span<double> matrix) => sums.Flush(sign, plan.Units, matrix);
 
     private double FlowScale(int n) => plan.IsScaled ? 1 / strip.Dissimilarity[n] : 1;
 
@@ -165,9 +166,11 @@ internal sealed class StripHessian
         var ofFlow = Vector512.Create(FlowScale(n));
         ref var flow = ref strip.Flow(n);
         ref var p = ref strip.Conditional(j);
+        ref var first = ref strip.Columns.First(leaf);
+        var stride = strip.Columns.StrideOf(leaf);
         for (var i = 0; i < leaf.Stored.Length; i++)
         {
-            ref var x = ref strip.Column(leaf.FirstStored + i);
+            ref var x = ref Unsafe.Add(ref first, (nuint)i * stride);
             ref var weighted = ref left.Row(i);
             ref var z = ref inner.Row(firstInner[n] + rowInParent[j][i]);
             for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
@@ -202,7 +205,7 @@ internal sealed class StripHessian
         }
 
         if (leaf.Stored.Length > 0)
-            sums.AddProducts(panel, ref left.Row(0), left.Stride, ref strip.Column(leaf.FirstStored), strip.Block.Lanes, strip.Lanes);
+            sums.AddProducts(panel, ref left.Row(0), left.Stride, ref first, (int)stride, strip.Lanes);
     }
 
     private void AddNode(int n, int c)

@@ -1,5 +1,6 @@
 using System.Text.Json;
 using PanelChoice.Likelihood;
+using PanelChoice.Tests.Support;
 using Xunit;
 
 namespace PanelChoice.Tests.Reference;

@@ -67,13 +67,22 @@ internal sealed record RandomTreeCase(
             if (isConstant || enters.Length == 0) enters = [random.Next(alternatives)];
             terms[k] = new RandomTerm(
                 enters, isConstant,
-                [.. offered.Select(row => row.Select(o => isConstant ? 1 : o ? Normal.Sample(random, 0, 1) : 0).ToArray())]);
+                [.. offered.Select(row => row.Select((o, j) => isConstant ? 1 : o ? Recorded(Normal.Sample(random, 0, 1), k, j) : 0).ToArray())]);
         }
 
         return new RandomTreeCase(
             names, nests, terms, occasionsOf, offered, chosen, [.. terms.Select(_ => Normal.Sample(random, 0, 0.8))], dissimilarity,
             [.. occasionsOf.Select(_ => random.Next(4) == 0 ? 0 : 0.5 + random.NextDouble())]);
     }
+
+    /// <summary>Rounds a value as columns of real data are, so that every way in which columns are held occurs: as they are, as short and as long whole numbers, mixed.</summary>
+    private static double Recorded(double value, int term, int alternative) => (term % 4) switch
+    {
+        0 => value,
+        1 => Math.Round(value, 2),
+        2 => Math.Round(value, 5),
+        _ => alternative % 2 == 0 ? value : Math.Round(value),
+    };
 
     /// <summary>The same case with persons, or each person's occasions, in another order.</summary>
     public RandomTreeCase InOrder(int[] persons, bool reverseOccasions)

@@ -1,0 +1,199 @@
+using System.Numerics;
+using System.Runtime.InteropServices;
+using System.Runtime.Intrinsics;
+using PanelChoice.Design;
+
+namespace PanelChoice.Estimation;
+
+/// <summary>
+/// The survey of one block, tile by tile of eight situations: each column inside choice sets, and how wide the nests are. Alternatives that a
+/// column does not enter have the value 0. Everything is seen in the units in which columns are held. One instance is a work space of one thread.
+/// </summary>
+internal sealed class BlockSurvey
+{
+    /// <summary>Differences below this share of the largest value in the choice set are rounding.</summary>
+    private const double Rounding = 1e-10;
+
+    private const int Tile = ChoiceDesign.TileLanes;
+    private readonly ChoiceDesign design;
+    private readonly BlockReader reader;
+    private readonly (int Parameter, int[] Alternatives, int[] Columns)[] coefficients;
+    private readonly byte[] isOffered;
+    private double[] values = [];
+    private byte[] varies = [];
+    private byte[] more = [];
+    private byte[] less = [];
+
+    /// <summary>A work space for a design.</summary>
+    public BlockSurvey(ChoiceDesign design)
+    {
+        this.design = design;
+        reader = design.Store.Reader();
+        coefficients =
+        [
+            .. design.Columns.GroupBy(c => c.Parameter).OrderBy(g => g.Key)
+                .Select(g => (g.Key, g.Select(c => c.Alternative).ToArray(), g.Select(c => c.Storage).ToArray())),
+        ];
+        isOffered = new byte[design.Alternatives + design.Tree.Nodes.Length];
+    }
+
+    /// <summary>Surveys a block.</summary>
+    /// <param name="block">The block.</param>
+    /// <param name="squares">To it is added, for each coefficient, the sum of squared deviations from the mean of the choice set.</param>
+    /// <param name="byPerson">Receives the evidence: persons x K.</param>
+    /// <returns>The number of offered alternatives.</returns>
+    public long Add(DesignBlock block, double[] squares, Evidence[] byPerson)
+    {
+        reader.Open(block);
+        var tiles = block.Lanes / Tile;
+        if (varies.Length < tiles) (varies, more, less) = (new byte[tiles], new byte[tiles], new byte[tiles]);
+        foreach (var (k, alternatives, columns) in coefficients)
+        {
+            if (values.Length < block.Lanes * columns.Length) values = new double[block.Lanes * columns.Length];
+            for (var i = 0; i < columns.Length; i++)
+            {
+                var lanes = values.AsSpan(i * block.Lanes, block.Lanes);
+                if (columns[i] < 0) lanes.Fill(1);
+                else ColumnUnfolding.Unfold(reader, columns[i], design.Store.Format.Columns[columns[i]], 0, lanes);
+            }
+
+            var units = columns[0] < 0 ? 1 : design.Store.Format.Columns[columns[0]].Units;
+            squares[k] += SurveyColumn(block, alternatives) / (units * units);
+            Hand(block, k, Evidence.Varies, varies, byPerson);
+            Hand(block, k, Evidence.ChosenHasMore, more, byPerson);
+            Hand(block, k, Evidence.ChosenHasLess, less, byPerson);
+        }
+
+        return SurveyNests(block, byPerson);
+    }
+
+    private double SurveyColumn(DesignBlock block, int[] alternatives)
+    {
+        var J = design.Alternatives;
+        var stride = (nuint)block.Lanes;
+        var squares = Vector512<double>.Zero;
+        ref var value = ref MemoryMarshal.GetArrayDataReference(values);
+        for (var tile = 0; tile < block.Lanes / Tile; tile++)
+        {
+            var lane = (nuint)(tile * Tile);
+            var offered = reader.OfferedMasks.Slice(tile * J, J);
+            var chosen = reader.ChosenMasks.Slice(tile * J, J);
+            var count = Vector512<double>.Zero;
+            foreach (var mask in offered) count += Select(mask, Vector512<double>.One);
+
+            var own = Vector512<double>.Zero;
+            var sum = Vector512<double>.Zero;
+            var ofChosen = Vector512<double>.Zero;
+            var min = Vector512.Create(double.PositiveInfinity);
+            var max = Vector512.Create(double.NegativeInfinity);
+            for (var i = 0; i < alternatives.Length; i++)
+            {
+                var x = Vector512.LoadUnsafe(ref value, lane + ((nuint)i * stride));
+                var lanes = LanesOf(offered[alternatives[i]]);
+                own += lanes & Vector512<double>.One;
+                sum += lanes & x;
+                ofChosen += Select(chosen[alternatives[i]], x);
+                min = Vector512.ConditionalSelect(lanes, Vector512.Min(min, x), min);
+                max = Vector512.ConditionalSelect(lanes, Vector512.Max(max, x), max);
+            }
+
+            var others = count - own;
+            var hasOthers = Vector512.GreaterThan(others, Vector512<double>.Zero);
+            min = Vector512.ConditionalSelect(hasOthers, Vector512.Min(min, Vector512<double>.Zero), min);
+            max = Vector512.ConditionalSelect(hasOthers, Vector512.Max(max, Vector512<double>.Zero), max);
+            var rounding = Vector512.Create(Rounding) * Vector512.Max(Vector512.Abs(min), Vector512.Abs(max));
+            // In a lane where nothing is offered the difference is minus infinity and the comparison false.
+            var spread = Vector512.GreaterThan(max - min, rounding);
+            var mean = sum / Vector512.Max(count, Vector512<double>.One);
+            var deviations = others * mean * mean;
+            for (var i = 0; i < alternatives.Length; i++)
+            {
+                var x = Vector512.LoadUnsafe(ref value, lane + ((nuint)i * stride)) - mean;
+                deviations += LanesOf(offered[alternatives[i]]) & (x * x);
+            }
+
+            squares += spread & deviations;
+            varies[tile] = (byte)spread.ExtractMostSignificantBits();
+            more[tile] = (byte)(spread & Vector512.GreaterThan(ofChosen - min, rounding)).ExtractMostSignificantBits();
+            less[tile] = (byte)(spread & Vector512.GreaterThan(max - ofChosen, rounding)).ExtractMostSignificantBits();
+        }
+
+        return Vector512.Sum(squares);
+    }
+
+    /// <summary>Gives each person of the block the evidence that one of the person's lanes has.</summary>
+    private void Hand(DesignBlock block, int k, Evidence evidence, byte[] found, Evidence[] byPerson)
+    {
+        var K = design.Layout.Count;
+        var end = block.FirstSituation + block.Situations;
+        for (var situation = block.FirstSituation; situation < end;)
+        {
+            var person = design.PersonOf[situation];
+            var next = design.PersonStart[person + 1];
+            if (HasAny(found, situation - block.FirstSituation, next - block.FirstSituation)) byPerson[(person * K) + k] |= evidence;
+            situation = next;
+        }
+    }
+
+    private static bool HasAny(byte[] found, int from, int to)
+    {
+        for (var tile = from / Tile; tile <= (to - 1) / Tile; tile++)
+        {
+            var bits = (int)found[tile];
+            if (tile == from / Tile) bits &= 0xFF << (from % Tile);
+            if (tile == (to - 1) / Tile) bits &= 0xFF >> (Tile - 1 - ((to - 1) % Tile));
+            if (bits != 0) return true;
+        }
+
+        return false;
+    }
+
+    /// <summary>Marks the nests that are two or more wide and counts the offered alternatives.</summary>
+    private long SurveyNests(DesignBlock block, Evidence[] byPerson)
+    {
+        var J = design.Alternatives;
+        var nodes = design.Tree.Nodes;
+        var cells = 0L;
+        foreach (var mask in reader.OfferedMasks) cells += BitOperations.PopCount(mask);
+        for (var n = 0; n < nodes.Length; n++)
+        {
+            if (design.Layout.NodeParameter[n] is not (>= 0 and var k)) continue;
+            for (var tile = 0; tile < block.Lanes / Tile; tile++) varies[tile] = WideAt(reader.OfferedMasks.Slice(tile * J, J), n);
+            Hand(block, k, Evidence.Varies, varies, byPerson);
+        }
+
+        return cells;
+    }
+
+    /// <summary>The lanes of a tile in which two or more of a node's children have something on offer.</summary>
+    private byte WideAt(ReadOnlySpan<byte> offered, int node)
+    {
+        var nodes = design.Tree.Nodes;
+        var J = design.Alternatives;
+        offered.CopyTo(isOffered);
+        var wide = 0;
+        for (var n = 0; n <= node; n++)
+        {
+            int once = 0, twice = 0;
+            foreach (var c in nodes[n].Children)
+            {
+                twice |= once & isOffered[c];
+                once |= isOffered[c];
+            }
+
+            isOffered[J + n] = (byte)once;
+            wide = twice;
+        }
+
+        return (byte)wide;
+    }
+
+    private static Vector512<double> Select(byte mask, Vector512<double> value) => LanesOf(mask) & value;
+
+    /// <summary>All bits of each lane whose bit is set.</summary>
+    private static Vector512<double> LanesOf(byte mask)
+    {
+        var bits = Vector512.Create(1UL, 2, 4, 8, 16, 32, 64, 128);
+        return Vector512.Equals(Vector512.Create((ulong)mask) & bits, bits).AsDouble();
+    }
+}
