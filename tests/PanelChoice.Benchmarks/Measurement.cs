@@ -15,16 +15,25 @@ internal readonly record struct Spread(double Minimum, double Median, double Max
 /// <summary>Times actions side by side: in each repetition every action runs once, so that all see the same machine.</summary>
 internal static class Measurement
 {
-    /// <summary>Seconds of each action, repetition by repetition.</summary>
+    private const double ShortestSeconds = 0.02;
+    private const double LongestWarmUp = 0.5;
+
+    /// <summary>Seconds of processor time of the calling thread for each action, repetition by repetition.</summary>
     /// <param name="repetitions">Repetitions.</param>
-    /// <param name="useThreadClock">Processor time of the calling thread; else wall time.</param>
-    /// <param name="shortest">An action is repeated until it takes this many seconds, and the time is divided.</param>
-    /// <param name="actions">The actions.</param>
-    public static double[][] SideBySide(int repetitions, bool useThreadClock, double shortest, params Action[] actions)
+    /// <param name="actions">The actions; a short one is repeated until it can be timed, and the time is divided.</param>
+    public static double[][] OfThread(int repetitions, params Action[] actions) => SideBySide(repetitions, ThreadClock.Seconds, actions);
+
+    /// <summary>Seconds of wall time for each action, repetition by repetition.</summary>
+    /// <inheritdoc cref="OfThread"/>
+    public static double[][] OfWall(int repetitions, params Action[] actions) => SideBySide(repetitions, Wall, actions);
+
+    /// <summary>Wall time in seconds since some moment.</summary>
+    public static double Wall() => Stopwatch.GetTimestamp() / (double)Stopwatch.Frequency;
+
+    private static double[][] SideBySide(int repetitions, Func<double> clock, Action[] actions)
     {
-        Func<double> clock = useThreadClock ? ThreadClock.Seconds : () => Stopwatch.GetTimestamp() / (double)Stopwatch.Frequency;
         var times = actions.Select(_ => new double[repetitions]).ToArray();
-        var calls = actions.Select(a => WarmUp(a, clock, shortest)).ToArray();
+        var calls = actions.Select(a => WarmUp(a, clock)).ToArray();
         for (var r = 0; r < repetitions; r++)
             for (var a = 0; a < actions.Length; a++)
             {
@@ -37,14 +46,14 @@ internal static class Measurement
     }
 
     /// <summary>Runs an action until the runtime has compiled it in full, and says how many calls make a measurable time.</summary>
-    private static int WarmUp(Action action, Func<double> clock, double shortest)
+    private static int WarmUp(Action action, Func<double> clock)
     {
         var last = 0.0;
-        for (var round = 0; round < 4; round++)
+        for (var round = 0; round < 4 && last < 2 * LongestWarmUp; round++)
         {
             var from = clock();
             var calls = 0;
-            while (calls < 30 && clock() - from < 0.5)
+            while (calls < 30 && clock() - from < LongestWarmUp)
             {
                 action();
                 calls++;
@@ -54,6 +63,6 @@ internal static class Measurement
             Thread.Sleep(150);
         }
 
-        return Math.Max(1, (int)Math.Ceiling(shortest / last));
+        return Math.Max(1, (int)Math.Ceiling(ShortestSeconds / last));
     }
 }
