@@ -52,7 +52,15 @@ public static class PanelAnalysis
     /// <param name="input">What <see cref="Prepare"/> made.</param>
     /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
     /// <exception cref="OperationCanceledException">Cancelled.</exception>
-    public static AnalysisResult Analyse(StudySpecification study, PanelAnalysisInput input, WorkContext work)
+    public static AnalysisResult Analyse(StudySpecification study, PanelAnalysisInput input, WorkContext work) =>
+        Conclude(Fit(study, input, work), work);
+
+    /// <summary>The fit, and what standard errors are made from.</summary>
+    /// <param name="study">The study.</param>
+    /// <param name="input">What <see cref="Prepare"/> made.</param>
+    /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
+    /// <exception cref="OperationCanceledException">Cancelled.</exception>
+    public static PanelAnalysisFit Fit(StudySpecification study, PanelAnalysisInput input, WorkContext work)
     {
         ArgumentNullException.ThrowIfNull(study);
         ArgumentNullException.ThrowIfNull(input);
@@ -63,7 +71,18 @@ public static class PanelAnalysis
         var model = MaximumLikelihood.Fit(likelihood, form, study.Estimate, work);
         // Sentences of later stages name clusters; from here on they know them by pseudonyms alone.
         var pseudonyms = Pseudonyms.Of(input.Panel.Table.Sha256, design.Clusters);
-        var evidence = InferenceInput.From(model, new ClusterRefitter(model, work.Threads), pseudonyms);
+        return new PanelAnalysisFit(study, input, model, InferenceInput.From(model, new ClusterRefitter(model, work.Threads), pseudonyms));
+    }
+
+    /// <summary>Everything after the fit: standard errors, the test of independence, what was found.</summary>
+    /// <param name="fit">What <see cref="Fit"/> made; refits that its evidence has a journal for are taken from there.</param>
+    /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
+    /// <exception cref="OperationCanceledException">Cancelled.</exception>
+    public static AnalysisResult Conclude(PanelAnalysisFit fit, WorkContext work)
+    {
+        ArgumentNullException.ThrowIfNull(fit);
+        ArgumentNullException.ThrowIfNull(work);
+        var (study, input, model, evidence) = fit;
         var inference = StandardErrors.Compute(evidence, study.Inference, work);
         var diagnostics = IndependenceBattery.Run(study, input.Covariates, model, work);
         var stages = new FindingsInput(study, input.Covariates, model, inference, diagnostics);
@@ -76,3 +95,10 @@ public static class PanelAnalysis
 /// <param name="Tree">The nest tree over its alternatives.</param>
 /// <param name="Covariates">The covariates on the estimation sample.</param>
 public sealed record PanelAnalysisInput(ChoicePanel Panel, NestTree Tree, CovariateSet Covariates);
+
+/// <summary>A fitted model on its way to standard errors.</summary>
+/// <param name="Study">The study.</param>
+/// <param name="Input">The panel and its covariates.</param>
+/// <param name="Model">The fitted model.</param>
+/// <param name="Evidence">What standard errors are made from.</param>
+public sealed record PanelAnalysisFit(StudySpecification Study, PanelAnalysisInput Input, FittedModel Model, InferenceInput Evidence);

@@ -17,31 +17,26 @@ internal static class ClusterBootstrap
     /// <summary>Largest share of failed replicates with which a covariance is given.</summary>
     public const double MostFailures = 0.05;
 
+    /// <summary>Why no replicate is made; null when they are.</summary>
+    public static string? Obstacle(InferenceInput input, InferenceSettings settings) =>
+        settings.Replicates <= 0 ? "No bootstrap replicates were asked for."
+        : input.Clusters.Length < 2 ? "There is one cluster only: every draw with replacement is the sample itself."
+        : null;
+
     /// <summary>The estimate, and how it went (null when not asked for or refused beforehand).</summary>
     public static (CovarianceEstimate Covariance, BootstrapSummary? Summary) Estimate(
         InferenceInput input, InferenceSettings settings, WorkContext work)
     {
-        var replicates = settings.Replicates;
-        if (replicates <= 0) return (Refuse("No bootstrap replicates were asked for."), null);
-        if (input.Clusters.Length < 2) return (Refuse("There is one cluster only: every draw with replacement is the sample itself."), null);
-        var summary = Summarise(input, Replicates(input, settings.BootstrapSeed, 0, replicates, work));
+        if (Obstacle(input, settings) is { } reason) return (Refuse(reason), null);
+        var summary = Summarise(input, Replicates(input, settings.BootstrapSeed, 0, settings.Replicates, work));
         return (Covariance(input, summary, settings.Confidence, work.Threads), summary);
     }
 
     /// <summary>Refits of a stretch of replicates. Replicate r is the same whatever stretch it is made in.</summary>
-    public static ImmutableArray<RefitOutcome> Replicates(InferenceInput input, long seed, int first, int count, WorkContext work)
-    {
-        var outcomes = ImmutableArray.CreateBuilder<RefitOutcome>(count);
-        foreach (var batch in Enumerable.Range(first, count).Chunk(16 * Math.Max(1, work.Threads)))
-        {
-            work.Report("bootstrap replicates", outcomes.Count, count);
-            outcomes.AddRange(input.Refitter.Refit(
-                [.. batch.Select(r => new RefitRequest(ClusterDraw.Weights(seed, r, input.Clusters.Length), input.Estimates, []))], work.Cancellation));
-        }
-
-        work.Report("bootstrap replicates", count, count);
-        return outcomes.MoveToImmutable();
-    }
+    public static ImmutableArray<RefitOutcome> Replicates(InferenceInput input, long seed, int first, int count, WorkContext work) =>
+        NumberedRefits.Make(
+            input, RefitSeries.Bootstrap, [.. Enumerable.Range(first, count)],
+            r => new RefitRequest(ClusterDraw.Weights(seed, r, input.Clusters.Length), input.Estimates, []), work);
 
     /// <summary>Counts what became of the replicates and lays their estimates out.</summary>
     public static BootstrapSummary Summarise(InferenceInput input, ImmutableArray<RefitOutcome> outcomes)

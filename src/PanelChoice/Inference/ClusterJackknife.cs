@@ -23,11 +23,13 @@ internal static class ClusterJackknife
     public static (CovarianceEstimate Covariance, JackknifeSummary? Summary) Estimate(InferenceInput input, JackknifeKind kind, WorkContext work)
     {
         if (kind == JackknifeKind.Off) return (Refuse("The jackknife is switched off."), null);
-        var clusters = input.Clusters.Length;
-        if (clusters < 2) return (Refuse("There is one cluster only: without it nothing is left to estimate from."), null);
-        if (kind == JackknifeKind.Auto) kind = clusters <= MostRefits ? JackknifeKind.Refit : JackknifeKind.OneStep;
-        return kind == JackknifeKind.Refit ? ByRefits(input, work) : ByOneStep(input, work);
+        if (input.Clusters.Length < 2) return (Refuse("There is one cluster only: without it nothing is left to estimate from."), null);
+        return Refits(kind, input.Clusters.Length) ? ByRefits(input, work) : ByOneStep(input, work);
     }
+
+    /// <summary>Whether this kind means a full refit without each of so many clusters.</summary>
+    public static bool Refits(JackknifeKind kind, int clusters) =>
+        clusters > 1 && (kind == JackknifeKind.Refit || (kind == JackknifeKind.Auto && clusters <= MostRefits));
 
     private static (CovarianceEstimate, JackknifeSummary) ByRefits(InferenceInput input, WorkContext work)
     {

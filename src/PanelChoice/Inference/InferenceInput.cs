@@ -64,6 +64,9 @@ public sealed record InferenceInput(
     string? NoMaximum,
     IRefitter Refitter)
 {
+    /// <summary>Where outcomes of numbered refits are found and kept; null when each is made here and lives as long as the run.</summary>
+    public IRefitJournal? Journal { get; init; }
+
     /// <summary>Number of occasions.</summary>
     public int Occasions => ClusterOccasions.Sum();
 

@@ -31,52 +31,60 @@ internal sealed record JackknifeRefits(
         var failed = new HashSet<int>();
         double? largest = null;
         var pending = Enumerable.Range(0, clusters).Select(g => new Deletion(g, [], [])).ToList();
-        for (var done = 0; pending.Count > 0; done = clusters - pending.Count)
+        while (pending.Count > 0)
         {
             var again = new List<Deletion>();
-            foreach (var batch in pending.Chunk(16 * Math.Max(1, work.Threads)))
+            var outcomes = Outcomes(input, pending, work);
+            for (var i = 0; i < pending.Count; i++)
             {
-                work.Report("jackknife", done, clusters);
-                var outcomes = input.Refitter.Refit([.. batch.Select(d => d.Request(input))], work.Cancellation);
-                for (var i = 0; i < batch.Length; i++)
+                var deletion = pending[i];
+                var outcome = outcomes[i];
+                if (outcome.Status == FitStatus.Converged && input.Free.All(k => double.IsFinite(outcome.Parameters[k])))
                 {
-                    var deletion = batch[i];
-                    var outcome = outcomes[i];
-                    if (outcome.Status == FitStatus.Converged && input.Free.All(k => double.IsFinite(outcome.Parameters[k])))
-                    {
-                        for (var k = 0; k < f; k++)
-                            if (!deletion.Lost.Contains(input.Free[k]))
-                                deviations[(deletion.Cluster * f) + k] = outcome.Parameters[input.Free[k]] - input.Estimates[input.Free[k]];
-                        largest = Math.Max(largest ?? 0, outcome.Decrement);
-                        done++;
-                        continue;
-                    }
-
-                    failed.Add(deletion.Cluster);
-                    var kind = FailureKinds.Of(outcome);
-                    if (deletion.WithFailure(outcome, input) is not { } next)
-                    {
-                        hopeless.Add((deletion.Cluster, kind));
-                        done++;
-                        continue;
-                    }
-
-                    foreach (var parameter in next.Lost.Except(deletion.Lost))
-                    {
-                        var place = input.Free.IndexOf(parameter);
-                        if (!lost.TryGetValue(place, out var at)) lost[place] = at = [];
-                        at.Add((deletion.Cluster, kind));
-                    }
-
-                    again.Add(next);
+                    for (var k = 0; k < f; k++)
+                        if (!deletion.Lost.Contains(input.Free[k]))
+                            deviations[(deletion.Cluster * f) + k] = outcome.Parameters[input.Free[k]] - input.Estimates[input.Free[k]];
+                    largest = Math.Max(largest ?? 0, outcome.Decrement);
+                    continue;
                 }
+
+                failed.Add(deletion.Cluster);
+                var kind = FailureKinds.Of(outcome);
+                if (deletion.WithFailure(outcome, input) is not { } next)
+                {
+                    hopeless.Add((deletion.Cluster, kind));
+                    continue;
+                }
+
+                foreach (var parameter in next.Lost.Except(deletion.Lost))
+                {
+                    var place = input.Free.IndexOf(parameter);
+                    if (!lost.TryGetValue(place, out var at)) lost[place] = at = [];
+                    at.Add((deletion.Cluster, kind));
+                }
+
+                again.Add(next);
             }
 
             pending = again;
         }
 
-        work.Report("jackknife", clusters, clusters);
         return new JackknifeRefits(deviations, failed.Count, lost, hopeless, largest);
+    }
+
+    /// <summary>The plain refit without a cluster.</summary>
+    public static RefitRequest Without(InferenceInput input, int cluster) => new Deletion(cluster, [], []).Request(input);
+
+    /// <summary>The first round is the numbered series; refits that hold something are asked for once its failures are known.</summary>
+    private static ImmutableArray<RefitOutcome> Outcomes(InferenceInput input, List<Deletion> pending, WorkContext work)
+    {
+        if (pending.All(d => d.Held.IsEmpty))
+            return NumberedRefits.Make(input, RefitSeries.Jackknife, [.. pending.Select(d => d.Cluster)], g => Without(input, g), work);
+        return
+        [
+            .. pending.Chunk(NumberedRefits.BatchPerThread * Math.Max(1, work.Threads))
+                .SelectMany(batch => input.Refitter.Refit([.. batch.Select(d => d.Request(input))], work.Cancellation)),
+        ];
     }
 
     /// <summary>One cluster left out; parameters by their index in the layout.</summary>

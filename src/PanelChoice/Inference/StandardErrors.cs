@@ -19,24 +19,25 @@ public static class StandardErrors
         ArgumentNullException.ThrowIfNull(settings);
         ArgumentNullException.ThrowIfNull(work);
         input.CheckLengths();
-        if (input.NoMaximum is { } reason) return Without(input, settings, reason);
-        if (input.Free.IsEmpty) return Without(input, settings, "Every parameter is fixed, so that nothing was estimated.");
+        if (Obstacle(input) is { } reason) return Without(input, settings, reason);
 
         var pooled = PooledCovariance.Estimate(input, out var bread);
-        if (bread is null) return Without(input, settings, pooled.Refusal!);
-
         var meat = Sandwich.OuterSum(input.Scores.AsMemory(), input.Free.Length, work.Threads);
-        var (cluster, uncorrected) = ClusterCovariance.Estimate(input, bread, work.Threads);
+        var (cluster, uncorrected) = ClusterCovariance.Estimate(input, bread!, work.Threads);
         var (jackknife, deletions) = ClusterJackknife.Estimate(input, settings.Jackknife, work);
         var (bootstrap, replicates) = ClusterBootstrap.Estimate(input, settings, work);
         return Assemble(
             input, settings,
             [
-                pooled, OuterProductCovariance.Estimate(input, meat), RobustCovariance.Estimate(input, bread, meat), cluster, uncorrected, jackknife,
+                pooled, OuterProductCovariance.Estimate(input, meat), RobustCovariance.Estimate(input, bread!, meat), cluster, uncorrected, jackknife,
                 CovarianceEstimate.Refused(CovarianceKind.TwoWay, "The study names no second cluster."), bootstrap,
             ],
             deletions, replicates);
     }
+
+    /// <summary>Why no standard error has a meaning, so that nothing is refitted; null when they have.</summary>
+    internal static string? Obstacle(InferenceInput input) =>
+        input.NoMaximum ?? (input.Free.IsEmpty ? "Every parameter is fixed, so that nothing was estimated." : PooledCovariance.Estimate(input, out _).Refusal);
 
     private static InferenceResult Without(InferenceInput input, InferenceSettings settings, string reason) =>
         Assemble(input, settings, [.. Enum.GetValues<CovarianceKind>().Select(kind => CovarianceEstimate.Refused(kind, reason))], null, null);

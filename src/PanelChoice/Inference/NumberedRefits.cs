@@ -1,0 +1,42 @@
+using System.Collections.Immutable;
+using System.Runtime.InteropServices;
+using PanelChoice.Estimation;
+using PanelChoice.Numerics;
+
+namespace PanelChoice.Inference;
+
+/// <summary>Outcomes of numbered refits: those the journal has are taken from it, the others are made and kept there.</summary>
+internal static class NumberedRefits
+{
+    /// <summary>Refits handed to the refitter at a time, for each thread; what a run that is stopped loses at most.</summary>
+    public const int BatchPerThread = 16;
+
+    /// <summary>One outcome for each number, in the same order.</summary>
+    /// <param name="input">The fit, the refitter and the journal.</param>
+    /// <param name="series">The series.</param>
+    /// <param name="numbers">Numbers in it.</param>
+    /// <param name="request">What to ask the refitter for under a number.</param>
+    /// <param name="work">Threads, progress, cancellation.</param>
+    public static ImmutableArray<RefitOutcome> Make(
+        InferenceInput input, RefitSeries series, IReadOnlyList<int> numbers, Func<int, RefitRequest> request, WorkContext work)
+    {
+        var step = series == RefitSeries.Bootstrap ? "bootstrap replicates" : "jackknife";
+        var outcomes = new RefitOutcome?[numbers.Count];
+        if (input.Journal is { } journal)
+            for (var i = 0; i < outcomes.Length; i++) outcomes[i] = journal.Find(series, numbers[i]);
+        var missing = Enumerable.Range(0, outcomes.Length).Where(i => outcomes[i] is null).ToList();
+        var done = outcomes.Length - missing.Count;
+        foreach (var batch in missing.Chunk(BatchPerThread * Math.Max(1, work.Threads)))
+        {
+            work.Report(step, done, outcomes.Length);
+            ImmutableArray<int> asked = [.. batch.Select(i => numbers[i])];
+            var made = input.Refitter.Refit([.. asked.Select(request)], work.Cancellation);
+            input.Journal?.Keep(series, asked, made);
+            for (var i = 0; i < batch.Length; i++) outcomes[batch[i]] = made[i];
+            done += batch.Length;
+        }
+
+        work.Report(step, done, outcomes.Length);
+        return ImmutableCollectionsMarshal.AsImmutableArray(outcomes)!;
+    }
+}
