@@ -5,6 +5,7 @@ using System.CommandLine.Parsing;
 using System.Reflection;
 using PanelChoice.Cli.Commands;
 using PanelChoice.Cli.Report;
+using PanelChoice.Inference;
 
 namespace PanelChoice.Cli;
 
@@ -93,6 +94,8 @@ internal static class CommandLine
         root.Add(Check(Options));
         root.Add(Build(Options));
         root.Add(Estimate(Options));
+        root.Add(Bootstrap(Options));
+        root.Add(Gather(Options));
         root.Add(Demo(Options));
         return root;
     }
@@ -127,6 +130,39 @@ internal static class CommandLine
         var strict = Strict();
         var command = new Command("estimate", "The main job: fit, standard errors side by side, diagnostics, verdict.") { study, output, strict };
         command.SetAction(r => EstimateCommand.Run(r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict), options(r)));
+        return command;
+    }
+
+    private static Command Bootstrap(Func<ParseResult, RunOptions> options)
+    {
+        var study = Study();
+        var part = new Option<RefitShare>("--part")
+        {
+            Description = "Which part to make, and of how many: 3/16.", HelpName = "I/N", Required = true,
+            CustomParser = result =>
+            {
+                if (RefitShare.Parse(result.Tokens[0].Value) is { } share) return share;
+                result.AddError($"--part needs a number and how many parts there are, such as 3/16, not '{result.Tokens[0].Value}'.");
+                return null!;
+            },
+        };
+        var output = Path("--out", "Folder of the parts; all parts of an analysis go into one.", "DIR");
+        output.Required = true;
+        var command = new Command("bootstrap", "Makes one part of the bootstrap's and the jackknife's refits, for 'gather' to join.") { study, part, output };
+        command.SetAction(r => BootstrapCommand.Run(r.GetRequiredValue(study), r.GetRequiredValue(part), r.GetRequiredValue(output), options(r)));
+        return command;
+    }
+
+    private static Command Gather(Func<ParseResult, RunOptions> options)
+    {
+        var folder = new Argument<string>("DIR") { Description = "The folder of the parts." };
+        folder.Validators.Add(result => Named(result, "DIR"));
+        var study = Path("--study", "The study file, where it is no longer where the parts saw it.", "FILE");
+        var output = Path("--out", "Write result.json, coefficients.csv and replicates.parquet here and not to the folder of the parts.", "DIR");
+        var strict = Strict();
+        var command = new Command("gather", "Joins the parts that 'bootstrap' made and ends as 'estimate' does, bit for bit.") { folder, study, output, strict };
+        command.SetAction(r => GatherCommand.Run(
+            r.GetRequiredValue(folder), r.GetValue(study), r.GetValue(output), r.GetValue(strict), options(r)));
         return command;
     }
 

@@ -22,11 +22,18 @@ internal sealed class OutputException : Exception
     }
 
     /// <summary>Runs something that writes, and turns the system's refusal into this exception.</summary>
-    public static void Guard(string path, Action write)
+    public static void Guard(string path, Action write) => Guard(path, () =>
+    {
+        write();
+        return true;
+    });
+
+    /// <summary>Runs something that writes and gives a value, and turns the system's refusal into this exception.</summary>
+    public static T Guard<T>(string path, Func<T> write)
     {
         try
         {
-            write();
+            return write();
         }
         catch (Exception refused) when (refused is IOException or UnauthorizedAccessException or ArgumentException { ParamName: "path" } or NotSupportedException)
         {

@@ -19,9 +19,10 @@ internal static class StudyRun
         return outcome.Value is { } value ? done(specification, value) : Reject(options, outcome.Problems);
     }
 
-    private static int Reject(RunOptions options, IReadOnlyCollection<Problem> problems)
+    /// <summary>Tells every problem; something that is not there has a code of its own, unless something else is wrong besides.</summary>
+    public static int Reject(RunOptions options, IReadOnlyCollection<Problem> problems)
     {
         foreach (var problem in problems) options.Terminal.Problem(problem.Sentence);
-        return problems.Any(p => p.Id is "study.not_found" or "data.not_found") ? ExitCode.NotFound : ExitCode.Rejected;
+        return problems.All(p => p.Id is "study.not_found" or "data.not_found" or "parts.not_found" or "parts.missing") ? ExitCode.NotFound : ExitCode.Rejected;
     }
 }

@@ -1,6 +1,6 @@
 using PanelChoice.Cli.Report;
-using PanelChoice.Likelihood;
 using PanelChoice.Results;
+using PanelChoice.Study;
 
 namespace PanelChoice.Cli.Commands;
 
@@ -14,38 +14,36 @@ internal static class EstimateCommand
     /// <param name="options">What every command takes.</param>
     public static int Run(string study, string? folder, bool strict, RunOptions options)
     {
-        var kernel = Environment.GetEnvironmentVariable(LikelihoodKernel.Variable);
-        if (!LikelihoodKernel.Knows(kernel))
-        {
-            options.Terminal.Problem($"the environment variable {LikelihoodKernel.Variable} is '{kernel}'; set it to scalar or vector, or unset it.");
-            return ExitCode.Usage;
-        }
-
+        if (!KernelChoice.IsKnown(options)) return ExitCode.Usage;
         return StudyRun.With(
             study, options,
             specification =>
             {
-                // An analysis may take long: a folder that cannot be written is told before it.
-                if (folder is not null)
-                {
-                    foreach (var name in ResultFiles.Names) OutputException.RefuseInput(Path.Combine(folder, name), specification);
-                    OutputException.Guard(folder, () => ResultFiles.Probe(folder));
-                }
-
+                if (folder is not null) Probe(folder, specification);
                 return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, work));
             },
-            (_, result) =>
-            {
-                var letter = EstimateReport.Of(result);
-                if (folder is not null)
-                {
-                    OutputException.Guard(folder, () => ResultFiles.Write(result, folder));
-                    letter.Gap().Paragraph($"Written to {folder}: {string.Join(", ", ResultFiles.Names)}.");
-                }
+            (_, result) => Tell(result, folder, strict, options));
+    }
 
-                options.Print(letter);
-                return CodeOf(result, strict);
-            });
+    /// <summary>An analysis may take long: a folder that cannot be written is told before it.</summary>
+    public static void Probe(string folder, StudySpecification study)
+    {
+        foreach (var name in ResultFiles.Names) OutputException.RefuseInput(Path.Combine(folder, name), study);
+        OutputException.Guard(folder, () => ResultFiles.Probe(folder));
+    }
+
+    /// <summary>Prints the report of a result, writes its files, and gives the exit code.</summary>
+    public static int Tell(AnalysisResult result, string? folder, bool strict, RunOptions options)
+    {
+        var letter = EstimateReport.Of(result);
+        if (folder is not null)
+        {
+            OutputException.Guard(folder, () => ResultFiles.Write(result, folder));
+            letter.Gap().Paragraph($"Written to {folder}: {string.Join(", ", ResultFiles.Names)}.");
+        }
+
+        options.Print(letter);
+        return CodeOf(result, strict);
     }
 
     private static int CodeOf(AnalysisResult result, bool strict) =>

@@ -38,7 +38,7 @@ public partial class ReadmeTests
     [Fact]
     public void Every_command_and_option_of_the_help_is_told()
     {
-        var help = string.Concat(new[] { "check", "build", "estimate", "demo" }.Select(c => CommandLineProcess.InProcess(c, "--help").Out));
+        var help = string.Concat(new[] { "check", "build", "estimate", "bootstrap", "gather", "demo" }.Select(c => CommandLineProcess.InProcess(c, "--help").Out));
         foreach (var option in Option().Matches(help).Select(m => m.Value).Distinct().Where(o => o is not "--help"))
             Assert.Contains("`" + option, Text, StringComparison.Ordinal);
     }

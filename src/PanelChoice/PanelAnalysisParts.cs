@@ -1,0 +1,85 @@
+using PanelChoice.Estimation;
+using PanelChoice.Inference;
+using PanelChoice.Numerics;
+using PanelChoice.Results;
+using PanelChoice.Results.Parts;
+using PanelChoice.Study;
+
+namespace PanelChoice;
+
+/// <summary>The same run divided among machines: each makes a part of the refits, one gathers them and does the rest.</summary>
+public static class PanelAnalysisParts
+{
+    /// <summary>Makes one part of an analysis' refits and leaves it in a folder. Refits that an earlier run left there are not made again.</summary>
+    /// <param name="study">The study.</param>
+    /// <param name="share">Which part.</param>
+    /// <param name="folder">The folder of the parts; it is made when it does not exist.</param>
+    /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
+    /// <returns>What was made, or every problem found with the data or with a file that stands in the part's place.</returns>
+    /// <exception cref="IOException">The folder cannot be written, or another run is at work on the same part.</exception>
+    /// <exception cref="UnauthorizedAccessException">The folder may not be written.</exception>
+    /// <exception cref="OperationCanceledException">Cancelled; refits that were finished are kept.</exception>
+    public static Checked<PanelAnalysisPart> Make(StudySpecification study, RefitShare share, string folder, WorkContext work)
+    {
+        ArgumentNullException.ThrowIfNull(study);
+        ArgumentNullException.ThrowIfNull(share);
+        ArgumentException.ThrowIfNullOrWhiteSpace(folder);
+        ArgumentNullException.ThrowIfNull(work);
+        return PanelAnalysis.Prepare(study, work).Then(input =>
+        {
+            var fit = PanelAnalysis.Fit(study, input, work);
+            var plan = RefitPlan.Of(fit.Evidence, study.Inference);
+            Directory.CreateDirectory(folder);
+            var header = new PartHeader(share, SeenFrom(folder, study.File), OriginOf(fit, plan));
+            return PartJournal.Open(folder, header).Then(journal =>
+            {
+                using (journal)
+                {
+                    if (!journal.WasComplete) plan.Make(fit.Evidence with { Journal = journal }, study.Inference, share, work);
+                    journal.Complete();
+                    return Checked<PanelAnalysisPart>.Good(new PanelAnalysisPart(
+                        share, plan, journal.File, journal.Found, journal.WasComplete, journal.Replaces, fit.Model.Status == FitStatus.Converged));
+                }
+            });
+        });
+    }
+
+    /// <summary>Does everything else that the main job does, with the refits of the parts: the result is the same, bit for bit.</summary>
+    /// <param name="study">The study that the parts were made from.</param>
+    /// <param name="parts">The parts.</param>
+    /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
+    /// <returns>The result, or every problem found with the data, or why the parts do not belong to this study and machine.</returns>
+    /// <exception cref="OperationCanceledException">Cancelled.</exception>
+    public static Checked<AnalysisResult> Conclude(StudySpecification study, GatheredParts parts, WorkContext work)
+    {
+        ArgumentNullException.ThrowIfNull(study);
+        ArgumentNullException.ThrowIfNull(parts);
+        ArgumentNullException.ThrowIfNull(work);
+        if (parts.Against(study) is { } otherStudy) return Checked<AnalysisResult>.Bad([otherStudy]);
+        return PanelAnalysis.Prepare(study, work).Then(input =>
+        {
+            if (parts.Against(study, input.Panel.Table.Sha256) is { } otherData) return Checked<AnalysisResult>.Bad([otherData]);
+            var fit = PanelAnalysis.Fit(study, input, work);
+            return parts.Against(OriginOf(fit, RefitPlan.Of(fit.Evidence, study.Inference))) is { } other
+                ? Checked<AnalysisResult>.Bad([other])
+                : Checked<AnalysisResult>.Good(PanelAnalysis.Conclude(fit with { Evidence = fit.Evidence with { Journal = parts } }, work));
+        });
+    }
+
+    private static RefitOrigin OriginOf(PanelAnalysisFit fit, RefitPlan plan) => RefitOrigin.Of(fit.Study, fit.Input.Panel.Table.Sha256, fit.Model, plan);
+
+    /// <summary>Where the study lies as seen from the folder, so that both may be moved together or mounted elsewhere.</summary>
+    private static string SeenFrom(string folder, string study) =>
+        Path.GetRelativePath(Path.GetFullPath(folder), Path.GetFullPath(study)).Replace(Path.DirectorySeparatorChar, '/');
+}
+
+/// <summary>A part that is done.</summary>
+/// <param name="Share">Which part.</param>
+/// <param name="Plan">The refits of the whole analysis.</param>
+/// <param name="File">The file that holds the part.</param>
+/// <param name="Found">Refits that an earlier run had left there.</param>
+/// <param name="WasComplete">Whether nothing had to be done.</param>
+/// <param name="Replaces">What was wrong with a file that was replaced; null when none was.</param>
+/// <param name="IsTrusted">Whether the fit may be trusted.</param>
+public sealed record PanelAnalysisPart(
+    RefitShare Share, RefitPlan Plan, string File, int Found, bool WasComplete, string? Replaces, bool IsTrusted);
