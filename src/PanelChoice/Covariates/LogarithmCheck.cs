@@ -5,33 +5,38 @@ using PanelChoice.Study;
 
 namespace PanelChoice.Covariates;
 
-/// <summary>Lists the cells whose logarithm a term needs and which do not have one.</summary>
-internal static class LogarithmCheck
+/// <summary>Lists the cells whose logarithm a term needs and which do not have one, part by part.</summary>
+internal sealed class LogarithmCheck
 {
     private const string Id = "term.log_not_positive";
 
-    /// <summary>Looks at every recorded occasion's offered rows of the alternatives that the term enters.</summary>
-    public static ImmutableArray<Problem> Problems(ChoicePanel panel, IEnumerable<PlannedTerm> terms)
+    private readonly ProblemList problems = new();
+
+    /// <summary>Whether nothing is wrong so far.</summary>
+    public bool IsEmpty => problems.IsEmpty;
+
+    /// <summary>What is wrong, in the order of rows.</summary>
+    public ImmutableArray<Problem> Problems => ProblemList.InRowOrder(problems);
+
+    /// <summary>Looks at every recorded occasion's offered rows of the alternatives that a term enters.</summary>
+    public void Add(ChoicePanel part, IEnumerable<PlannedTerm> terms)
     {
-        var problems = new ProblemList();
         var cells = terms.Where(t => t.Specification.Log)
             .Select(t => (t.Specification.Name, ((ColumnSource)t.Specification.Source).Column, t.Applies))
-            .SelectMany(t => Rows(panel, t.Column, t.Applies).Select(row => (Row: row, t.Column, t.Name)))
+            .SelectMany(t => Rows(part, t.Column, t.Applies).Select(row => (Row: row, t.Column, t.Name)))
             .OrderBy(c => c.Row).DistinctBy(c => (c.Row, c.Column));
         foreach (var (row, column, name) in cells)
         {
             if (!problems.Count(Id)) continue;
             problems.List(new Problem(
-                Id, panel.Table.File, $"term '{name}' takes a logarithm, which only a positive value has",
+                Id, part.Table.File, $"term '{name}' takes a logarithm, which only a positive value has",
                 "correct the value, mark the row as not offered, or take transform = \"log\" away")
             {
-                Row = panel.Table.SourceRow[row],
+                Row = part.Table.SourceRow[row],
                 Column = column,
-                Value = panel.Table.Numbers[column][row].ToString("R", CultureInfo.InvariantCulture),
+                Value = part.Table.Numbers[column][row].ToString("R", CultureInfo.InvariantCulture),
             });
         }
-
-        return ProblemList.InRowOrder(problems);
     }
 
     private static IEnumerable<int> Rows(ChoicePanel panel, string column, ImmutableArray<int> applies)

@@ -7,37 +7,78 @@ namespace PanelChoice.Covariates;
 
 /// <summary>
 /// The caution that belongs to <c>previous = "recorded"</c> on a panel with gaps. A history rule that ignores gaps takes the last choice before
-/// an absence for yesterday's: it fakes dependence over time and shrinks the habit term.
+/// an absence for yesterday's: it fakes dependence over time and shrinks the habit term. Parts are first observed, which gives the unit of
+/// distances, and then counted.
 /// </summary>
-internal static class RecordedGaps
+internal sealed class RecordedGaps
 {
-    /// <summary>Counts the used occasions that look back across a gap, and proposes the calendar rule; null when none does.</summary>
-    public static Caution? Find(
-        ChoicePanel panel, OccasionHistory history, HistorySpecification specification, ImmutableArray<TermSpecification> terms, ImmutableArray<int> used)
-    {
-        if (specification.Previous != PreviousRule.Recorded) return null;
-        var steps = terms.Select(t => TermDirection.StepsBack(t.Source)).OfType<int>().Distinct().Order().ToList();
-        if (steps.Count == 0) return null;
+    private readonly ImmutableArray<int> steps;
+    private readonly UsualStep usual;
+    private readonly SortedDictionary<long, int> distances = [];
+    private OccasionAxis? axis;
+    private int across;
+    private int occasions;
 
-        var measure = OccasionAxis.Usual(panel, specification.Holidays);
-        var (axis, unit) = (measure.Position, measure.Step);
-        var distances = new List<long>();
-        var across = 0;
-        var back = steps.ConvertAll(k => (Steps: k, Occasions: history.Back(k)));
-        foreach (var o in used)
+    /// <summary>Nothing observed yet.</summary>
+    /// <param name="history">The study's rule.</param>
+    /// <param name="terms">The terms that may look back.</param>
+    public RecordedGaps(HistorySpecification history, ImmutableArray<TermSpecification> terms)
+    {
+        steps = history.Previous == PreviousRule.Recorded
+            ? [.. terms.Select(t => TermDirection.StepsBack(t.Source)).OfType<int>().Distinct().Order()]
+            : [];
+        usual = new UsualStep(history.Holidays);
+    }
+
+    /// <summary>Learns the unit of distances from a part.</summary>
+    public void Observe(ChoicePanel part)
+    {
+        if (!steps.IsEmpty) usual.Observe(part);
+    }
+
+    /// <summary>Counts the used occasions of a part that look back across a gap, once all parts were observed.</summary>
+    public void Count(SamplePart part)
+    {
+        if (steps.IsEmpty) return;
+        axis = usual.AxisOf(part.Panel);
+        var (position, unit) = (axis.Position, axis.Step);
+        var back = steps.Select(k => (Steps: k, Occasions: part.History.Back(k))).ToList();
+        foreach (var o in part.Used)
         {
-            if (history.JustBefore(o) is var before && before >= 0) distances.Add((axis[o] - axis[before]) / unit);
-            if (back.Exists(b => b.Occasions[o] is var then && then >= 0 && axis[o] - axis[then] > b.Steps * unit)) across++;
+            if (part.History.JustBefore(o) is var before && before >= 0)
+            {
+                var distance = (position[o] - position[before]) / unit;
+                distances[distance] = distances.GetValueOrDefault(distance) + 1;
+            }
+
+            if (back.Exists(b => b.Occasions[o] is var then && then >= 0 && position[o] - position[then] > b.Steps * unit)) across++;
         }
 
+        occasions += part.Used.Length;
+    }
+
+    /// <summary>The caution, which proposes the calendar rule; null when no used occasion looks back across a gap.</summary>
+    public Caution? Caution()
+    {
         if (across == 0) return null;
-        distances.Sort();
-        var usual = distances[(distances.Count - 1) / 2];
-        var remedy = usual > 1 || measure.Rule is not { } rule
+        var remedy = Middle() > 1 || axis!.Rule is not { } rule
             ? "no calendar rule fits distances as uneven as these: longest_gap leaves out what lies too far back"
             : $"previous = \"{rule.ToString().ToLowerInvariant()}\" looks at exactly that distance and leaves out what has no record there";
         return new Caution("history.gaps", string.Create(
             CultureInfo.InvariantCulture,
-            $"{across} of {used.Length} used occasions look back across a gap, because previous = \"recorded\" takes the last record before an absence for the previous occasion; this fakes dependence over time and shrinks the habit term: {remedy}."));
+            $"{across} of {occasions} used occasions look back across a gap, because previous = \"recorded\" takes the last record before an absence for the previous occasion; this fakes dependence over time and shrinks the habit term: {remedy}."));
+    }
+
+    /// <summary>The lower middle one of the distances.</summary>
+    private long Middle()
+    {
+        var place = (distances.Values.Sum() - 1) / 2;
+        foreach (var (distance, count) in distances)
+        {
+            if (place < count) return distance;
+            place -= count;
+        }
+
+        throw new InvalidOperationException("An occasion looks back across a gap, and none has a record before it.");
     }
 }

@@ -11,28 +11,28 @@ namespace PanelChoice.Covariates;
 /// </summary>
 internal sealed class SampleSelection
 {
-    private const int Used = -1;
-
     private readonly ChoicePanel panel;
     private readonly OccasionHistory history;
     private readonly HistoryWords words;
-    private readonly int[] reasonOf;
-    private readonly List<string> reasons = [];
+    private readonly LeftOutBook book;
+    private readonly bool[] isLeftOut;
+    private int stage;
 
-    private SampleSelection(ChoicePanel panel, OccasionHistory history, HistorySpecification specification)
+    private SampleSelection(ChoicePanel panel, OccasionHistory history, HistorySpecification specification, LeftOutBook book)
     {
         this.panel = panel;
         this.history = history;
+        this.book = book;
         words = new HistoryWords(specification, panel.Table.OccasionKind);
-        reasonOf = new int[panel.Occasions];
-        Array.Fill(reasonOf, Used);
+        isLeftOut = new bool[panel.Occasions];
     }
 
-    /// <summary>Selects the estimation sample for a list of terms.</summary>
-    public static (ImmutableArray<int> Used, ImmutableArray<LeftOut> LeftOut) Select(
-        ChoicePanel panel, OccasionHistory history, HistorySpecification specification, ImmutableArray<PlannedTerm> terms, TermValues values)
+    /// <summary>Selects the estimation sample of a panel, or of a part of one, for a list of terms.</summary>
+    /// <returns>The occasions used, ascending; the others are counted in the book.</returns>
+    public static ImmutableArray<int> Select(
+        ChoicePanel panel, OccasionHistory history, HistorySpecification specification, ImmutableArray<PlannedTerm> terms, TermValues values, LeftOutBook book)
     {
-        var selection = new SampleSelection(panel, history, specification);
+        var selection = new SampleSelection(panel, history, specification, book);
         selection.LeaveOut(o => !history.IsKnown(o), HistoryWords.OutsideCalendar);
         selection.LeaveOut(o => panel.OfferedAt(o) < 2, HistoryWords.OneAlternative);
         if (specification.WithoutHistory == MissingHistory.Drop)
@@ -44,57 +44,45 @@ internal sealed class SampleSelection
 
         foreach (var term in terms.Where(t => TermDirection.StepsAhead(t.Specification.Source) is not null))
             selection.LeaveOutMissing(term, values.Of(term));
-        return selection.Outcome();
+        return [.. Enumerable.Range(0, panel.Occasions).Where(o => !selection.isLeftOut[o])];
     }
 
     private void LeaveOut(Func<int, bool> applies, string reason)
     {
-        var number = NumberOf(reason);
-        for (var o = 0; o < reasonOf.Length; o++)
-            if (reasonOf[o] == Used && applies(o)) reasonOf[o] = number;
+        var entry = book.Of(stage++, reason);
+        for (var o = 0; o < isLeftOut.Length; o++)
+            if (!isLeftOut[o] && applies(o)) LeaveOut(o, entry);
+    }
+
+    private void LeaveOut(int occasion, LeftOutBook.Entry entry)
+    {
+        isLeftOut[occasion] = true;
+        entry.Occasions++;
     }
 
     private void LeaveOutMissing(PlannedTerm term, TermValue value)
     {
         var alternatives = panel.Alternatives.Length;
         var offered = panel.Offered.AsSpan();
-        var noRecord = NumberOf(words.NoRecord(term.Specification.Source));
-        var noValue = new int[alternatives];
-        Array.Fill(noValue, Used);
-        for (var o = 0; o < reasonOf.Length; o++)
+        var noRecord = book.Of(stage, words.NoRecord(term.Specification.Source));
+        var noValue = new LeftOutBook.Entry?[alternatives];
+        for (var o = 0; o < isLeftOut.Length; o++)
         {
-            if (reasonOf[o] != Used) continue;
+            if (isLeftOut[o]) continue;
             if (!value.HasRecord(o))
             {
-                reasonOf[o] = noRecord;
+                LeaveOut(o, noRecord);
                 continue;
             }
 
             foreach (var j in term.Applies)
             {
                 if (!offered[(o * alternatives) + j] || !double.IsNaN(value.At(o, j))) continue;
-                if (noValue[j] == Used) noValue[j] = NumberOf(words.NoValue((ColumnSource)term.Specification.Source, panel.Alternatives[j]));
-                reasonOf[o] = noValue[j];
+                LeaveOut(o, noValue[j] ??= book.Of(stage, words.NoValue((ColumnSource)term.Specification.Source, panel.Alternatives[j])));
                 break;
             }
         }
-    }
 
-    private int NumberOf(string reason)
-    {
-        var index = reasons.IndexOf(reason);
-        if (index >= 0) return index;
-        reasons.Add(reason);
-        return reasons.Count - 1;
-    }
-
-    private (ImmutableArray<int> Used, ImmutableArray<LeftOut> LeftOut) Outcome()
-    {
-        var counts = new int[reasons.Count];
-        var used = ImmutableArray.CreateBuilder<int>();
-        for (var o = 0; o < reasonOf.Length; o++)
-            if (reasonOf[o] == Used) used.Add(o);
-            else counts[reasonOf[o]]++;
-        return (used.DrainToImmutable(), [.. reasons.Select((r, i) => new LeftOut(r, counts[i])).Where(l => l.Occasions > 0)]);
+        stage++;
     }
 }

@@ -49,6 +49,12 @@ internal abstract class CellColumn(string file, string name)
     /// <summary>Adds an empty cell.</summary>
     public abstract void Empty(CellPlace at);
 
+    /// <summary>Makes room for more cells.</summary>
+    public abstract void Reserve(int more);
+
+    /// <summary>Drops the first entries; what was wrong with them stays noted.</summary>
+    public abstract void Forget(int count);
+
     /// <summary>Adds a cell written as text that is not blank.</summary>
     protected abstract void Written(CellPlace at, ReadOnlySpan<byte> utf8);
 

@@ -18,6 +18,22 @@ public static class ChoiceTableReader
     public static Checked<ChoiceTable> Read(StudySpecification study)
     {
         ArgumentNullException.ThrowIfNull(study);
+        return Open(study, (file, read) =>
+        {
+            var sha256 = Convert.ToHexStringLower(SHA256.HashData(file));
+            var columns = new ChoiceColumns(study);
+            read(columns);
+            return columns.Finish(sha256);
+        });
+    }
+
+    /// <summary>Opens the panel's file for something that reads it, and turns what can go wrong with files into problems.</summary>
+    /// <typeparam name="T">What is made of it.</typeparam>
+    /// <param name="study">The study.</param>
+    /// <param name="use">Gets the file, and what reads it from its beginning into columns.</param>
+    internal static Checked<T> Open<T>(StudySpecification study, Func<FileStream, Action<ChoiceColumns>, Checked<T>> use)
+        where T : class
+    {
         var source = study.Panel;
         FileStream stream;
         try
@@ -44,11 +60,11 @@ public static class ChoiceTableReader
             try
             {
                 if (stream.Length == 0) return Bad("data.empty_file", "the file is empty", "give a header row and the panel's rows");
-                var sha256 = Convert.ToHexStringLower(SHA256.HashData(stream));
-                stream.Position = 0;
-                var columns = new ChoiceColumns(study);
-                read(stream, source.File, columns);
-                return columns.Finish(sha256);
+                return use(stream, columns =>
+                {
+                    stream.Position = 0;
+                    read(stream, source.File, columns);
+                });
             }
             catch (IOException e)
             {
@@ -56,7 +72,7 @@ public static class ChoiceTableReader
             }
         }
 
-        Checked<ChoiceTable> Bad(string id, string what, string remedy) => Checked<ChoiceTable>.Bad([new Problem(id, source.File, what, remedy)]);
+        Checked<T> Bad(string id, string what, string remedy) => Checked<T>.Bad([new Problem(id, source.File, what, remedy)]);
     }
 
     private static Action<Stream, string, ChoiceColumns>? ReaderFor(string file)

@@ -114,6 +114,7 @@ internal static class CsvChoiceReader
             readings[0].Into.Text(columns.PlaceOf(index), reader.GetSpan(readings[0].Field));
             var place = columns.PlaceOf(index);
             for (var i = 1; i < readings.Length; i++) readings[i].Into.Text(place, reader.GetSpan(readings[i].Field));
+            columns.RowsAdded?.Invoke();
         }
 
         void AddRagged(long row, int fields) => columns.Problems.Add(new Problem(

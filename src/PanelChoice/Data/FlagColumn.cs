@@ -8,7 +8,7 @@ internal sealed class FlagColumn(string file, string name, bool otherwise) : Cel
 {
     private const string Remedy = "write 1 or true, 0 or false";
 
-    private readonly ImmutableArray<bool>.Builder values = ImmutableArray.CreateBuilder<bool>();
+    private readonly ColumnBuffer<bool> values = new();
 
     /// <summary>The entry of a cell already added.</summary>
     public bool this[int index] => values[index];
@@ -16,8 +16,12 @@ internal sealed class FlagColumn(string file, string name, bool otherwise) : Cel
     /// <summary>Number of cells added.</summary>
     public int Count => values.Count;
 
-    /// <summary>Hands the column over; it can take no more cells.</summary>
-    public ImmutableArray<bool> Finish() => values.DrainToImmutable();
+    /// <summary>Hands over the first entries.</summary>
+    public ImmutableArray<bool> Take(int count) => values.Take(count);
+
+    public override void Reserve(int more) => values.Reserve(more);
+
+    public override void Forget(int count) => values.Forget(count);
 
     public override void Whole(CellPlace at, long value) => Add(at, value is 0 or 1 ? value == 1 : null, value.ToString(CultureInfo.InvariantCulture));
 

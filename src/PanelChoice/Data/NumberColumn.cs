@@ -8,10 +8,14 @@ namespace PanelChoice.Data;
 /// </summary>
 internal sealed class NumberColumn(string file, string name) : CellColumn(file, name)
 {
-    private readonly ImmutableArray<double>.Builder values = ImmutableArray.CreateBuilder<double>();
+    private readonly ColumnBuffer<double> values = new();
 
-    /// <summary>Hands the column over; it can take no more cells.</summary>
-    public ImmutableArray<double> Finish() => values.DrainToImmutable();
+    /// <summary>Hands over the first entries.</summary>
+    public ImmutableArray<double> Take(int count) => values.Take(count);
+
+    public override void Reserve(int more) => values.Reserve(more);
+
+    public override void Forget(int count) => values.Forget(count);
 
     public override void Whole(CellPlace at, long value) => values.Add(value);
 

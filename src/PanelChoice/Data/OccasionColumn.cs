@@ -14,13 +14,17 @@ internal sealed class OccasionColumn(string file, string name) : CellColumn(file
     /// <summary>Occasions farther from 0 could lie so far apart that their distance is no whole number of 64 bits.</summary>
     private const long Farthest = 1L << 62;
 
-    private readonly ImmutableArray<long>.Builder values = ImmutableArray.CreateBuilder<long>();
+    private readonly ColumnBuffer<long> values = new();
 
     /// <summary>What the cells hold; none until one could be read.</summary>
     public OccasionKind Kind { get; private set; }
 
-    /// <summary>Hands the column over; it can take no more cells.</summary>
-    public ImmutableArray<long> Finish() => values.DrainToImmutable();
+    /// <summary>Hands over the first entries.</summary>
+    public ImmutableArray<long> Take(int count) => values.Take(count);
+
+    public override void Reserve(int more) => values.Reserve(more);
+
+    public override void Forget(int count) => values.Forget(count);
 
     public override void Whole(CellPlace at, long value)
     {

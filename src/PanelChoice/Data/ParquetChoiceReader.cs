@@ -23,29 +23,40 @@ internal static class ParquetChoiceReader
                     "data.unsupported_type", name, $"the column holds {ParquetDecoding.KindOf(fields[position])}, of which {needed.AskedBy} can make nothing",
                     "store it as numbers, text, truth values or dates") { Column = needed.Name });
 
-        for (var g = 0; g < reader.RowGroupCount && columns.Problems.IsEmpty; g++) ReadGroup(reader, g, fields, positions, name, columns);
+        var rows = 0L;
+        for (var g = 0; g < reader.RowGroupCount && columns.Problems.IsEmpty; g++) rows += ReadGroup(reader, g, fields, positions, name, rows, columns);
     }
 
-    private static void ReadGroup(
-        ParquetReader reader, int number, IReadOnlyList<Field> fields, ImmutableDictionary<string, int> positions, string name, ChoiceColumns columns)
+    /// <summary>Reads a row group and returns how many rows it has.</summary>
+    private static long ReadGroup(
+        ParquetReader reader, int number, IReadOnlyList<Field> fields, ImmutableDictionary<string, int> positions, string name, long firstRow, ChoiceColumns columns)
     {
-        if (!TryRead(() => reader.OpenRowGroupReader(number), name, columns, out var group)) return;
+        if (!TryRead(() => reader.OpenRowGroupReader(number), name, columns, out var group)) return 0;
         var begin = columns.Rows;
         CellPlace[]? places = null;
         // A column that is read in several ways is decoded once; the offered column stays the first.
         foreach (var readings in columns.Readings.GroupBy(r => r.Source, r => r.Into, StringComparer.Ordinal))
         {
             var field = fields[positions[readings.Key]];
-            if (!TryRead(() => ParquetDecoding.DecoderOf(field)!(group, (DataField)field), name, columns, out var fill)) return;
+            if (!TryRead(() => ParquetDecoding.DecoderOf(field)!(group, (DataField)field), name, columns, out var fill)) return 0;
             foreach (var into in readings)
             {
                 // Rows begin once a column of them could be decoded, because a damaged file may claim any number of rows.
-                while (columns.Rows < begin + group.RowCount) columns.BeginRow(columns.Rows + 1);
+                if (columns.Rows == begin) BeginRows((int)group.RowCount);
                 places ??= columns.PlacesFrom(begin);
                 fill(into, places);
                 // Where the first reading is the offered column, it settles the places of all others.
                 if (into == columns.Readings[0].Into) places = null;
             }
+        }
+
+        columns.RowsAdded?.Invoke();
+        return group.RowCount;
+
+        void BeginRows(int rows)
+        {
+            columns.Reserve(rows);
+            for (var row = 1; row <= rows; row++) columns.BeginRow(firstRow + row);
         }
     }
 

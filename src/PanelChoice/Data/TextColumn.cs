@@ -13,16 +13,31 @@ namespace PanelChoice.Data;
 /// <param name="file">The data file as the study writes it.</param>
 /// <param name="name">Name of the column.</param>
 /// <param name="isKey">Whether every row needs a value; otherwise a cell may be empty where the alternative was not offered.</param>
-internal sealed class TextColumn(string file, string name, bool isKey) : CellColumn(file, name)
+/// <param name="known">Values whose codes are given, code by code, when the column is read again; none at the first reading.</param>
+internal sealed class TextColumn(string file, string name, bool isKey, ImmutableArray<string> known) : CellColumn(file, name)
 {
     /// <summary>A longer value is no name; it is free text, or a quote that closed far too late.</summary>
     private const int Longest = 200;
 
-    private readonly ImmutableArray<int>.Builder codes = ImmutableArray.CreateBuilder<int>();
-    private readonly Dictionary<string, int> codeOf = new(StringComparer.Ordinal);
+    private readonly ColumnBuffer<int> codes = new();
+    private readonly Dictionary<string, int> codeOf = Numbered(known);
     private byte[] lastText = [];
     private int lastLength = -1;
     private int lastCode;
+
+    /// <summary>Codes of the entries, in the order in which their values first came up.</summary>
+    public ReadOnlySpan<int> Codes => codes.Span;
+
+    /// <summary>The values that came up, code by code.</summary>
+    public ImmutableArray<string> Values()
+    {
+        var values = new string[codeOf.Count];
+        foreach (var (value, code) in codeOf) values[code] = value;
+        return ImmutableCollectionsMarshal.AsImmutableArray(values);
+    }
+
+    /// <summary>Whether a value came up that is not among the known ones.</summary>
+    public bool HasUnknown => codeOf.Count > known.Length;
 
     /// <summary>Hands the column over with its values in ordinal order; it can take no more cells.</summary>
     public CodedColumn Finish()
@@ -32,8 +47,15 @@ internal sealed class TextColumn(string file, string name, bool isKey) : CellCol
         var rank = new int[levels.Length];
         for (var i = 0; i < levels.Length; i++) rank[codeOf[levels[i]]] = i;
         for (var i = 0; i < codes.Count; i++) if (codes[i] >= 0) codes[i] = rank[codes[i]];
-        return new CodedColumn(codes.DrainToImmutable(), ImmutableCollectionsMarshal.AsImmutableArray(levels));
+        return new CodedColumn(codes.Take(codes.Count), ImmutableCollectionsMarshal.AsImmutableArray(levels));
     }
+
+    /// <summary>Hands over the codes of the first entries.</summary>
+    public ImmutableArray<int> Take(int count) => codes.Take(count);
+
+    public override void Reserve(int more) => codes.Reserve(more);
+
+    public override void Forget(int count) => codes.Forget(count);
 
     public override void Whole(CellPlace at, long value)
     {
@@ -92,6 +114,13 @@ internal sealed class TextColumn(string file, string name, bool isKey) : CellCol
         }
 
         codes.Add(code);
+    }
+
+    private static Dictionary<string, int> Numbered(ImmutableArray<string> values)
+    {
+        var codes = new Dictionary<string, int>(values.Length, StringComparer.Ordinal);
+        for (var code = 0; code < values.Length; code++) codes.Add(values[code], code);
+        return codes;
     }
 
     private int CodeOf(ReadOnlySpan<char> text)

@@ -25,23 +25,34 @@ public static class ChoicePanelBuilder
     {
         ArgumentNullException.ThrowIfNull(study);
         ArgumentNullException.ThrowIfNull(table);
-        if (table.Alternative.Levels.Length > MostAlternatives)
-            return Checked<ChoicePanel>.Bad(
-            [
-                new Problem(
-                    "data.too_many_alternatives", table.File,
-                    string.Create(CultureInfo.InvariantCulture, $"the column holds {table.Alternative.Levels.Length:#,0} alternatives, and a panel can have {MostAlternatives:#,0}"),
-                    "name the column of alternatives under [panel] alternative, or join alternatives") { Column = study.Panel.Alternative },
-            ]);
+        if (TooMany(study, table.File, table.Alternative.Levels) is { } many) return Checked<ChoicePanel>.Bad([many]);
         var problems = new ProblemList();
-        StudyFit.Check(study, table, problems);
-        var personOrder = NameOrder.Of(table.Person.Levels);
+        StudyFit.Check(study, table.Alternative.Levels, table.OccasionKind, problems);
+        var panel = Build(study, table, NameOrder.Of(table.Person.Levels), ClusterNames.Of(study, table), problems);
+        return panel is null ? Checked<ChoicePanel>.Bad(ProblemList.InRowOrder(problems)) : Checked<ChoicePanel>.Good(panel);
+    }
+
+    /// <summary>Builds the panel of a table, or of a part of one that holds whole persons.</summary>
+    /// <param name="study">The study.</param>
+    /// <param name="table">The table.</param>
+    /// <param name="personOrder">Person codes of the table in the panel's order.</param>
+    /// <param name="clusters">Order of the clusters of the whole panel; null where persons are the clusters.</param>
+    /// <param name="problems">Takes what is wrong with its rows, besides what is there already.</param>
+    /// <returns>The panel; null where there are problems.</returns>
+    internal static ChoicePanel? Build(StudySpecification study, ChoiceTable table, int[] personOrder, ClusterNames? clusters, ProblemList problems)
+    {
         var order = RowOrder.Of(table, NameOrder.Ranks(personOrder));
         var (occasionStart, personStart) = Check(study, table, order, problems);
-        return problems.IsEmpty
-            ? Checked<ChoicePanel>.Good(Assemble(study, table, personOrder, order, occasionStart, personStart))
-            : Checked<ChoicePanel>.Bad(ProblemList.InRowOrder(problems));
+        return problems.IsEmpty ? Assemble(study, table, personOrder, clusters, order, occasionStart, personStart) : null;
     }
+
+    /// <summary>The problem of a column that holds anything but alternatives; null where it holds few enough.</summary>
+    internal static Problem? TooMany(StudySpecification study, string file, ImmutableArray<string> alternatives) => alternatives.Length <= MostAlternatives
+        ? null
+        : new Problem(
+            "data.too_many_alternatives", file,
+            string.Create(CultureInfo.InvariantCulture, $"the column holds {alternatives.Length:#,0} alternatives, and a panel can have {MostAlternatives:#,0}"),
+            "name the column of alternatives under [panel] alternative, or join alternatives") { Column = study.Panel.Alternative };
 
     /// <summary>Finds where occasions begin in the ordered rows (with a closing entry), and where persons begin among the occasions, checking each.</summary>
     private static (List<int> OccasionStart, int[] PersonStart) Check(StudySpecification study, ChoiceTable table, RowOrder order, ProblemList problems)
@@ -70,7 +81,7 @@ public static class ChoicePanelBuilder
     }
 
     private static ChoicePanel Assemble(
-        StudySpecification study, ChoiceTable table, int[] personOrder, RowOrder order, List<int> occasionStart, int[] personStart)
+        StudySpecification study, ChoiceTable table, int[] personOrder, ClusterNames? clusters, RowOrder order, List<int> occasionStart, int[] personStart)
     {
         var alternatives = table.Alternative.Levels.Length;
         var occasions = occasionStart.Count - 1;
@@ -96,10 +107,9 @@ public static class ChoicePanelBuilder
             }
 
         var persons = personOrder.Select(p => table.Person.Levels[p]).ToImmutableArray();
-        var (clusters, clusterOf) = Clusters(study, table, order, persons);
         return new ChoicePanel(
             table, persons, table.Alternative.Levels, Immutable(personStart), Immutable(personOf), Immutable(occasion), Immutable(row), Immutable(offered),
-            Immutable(chosen), Weights(table, order), study.Inference.Cluster, clusters, clusterOf);
+            Immutable(chosen), Weights(table, order), study.Inference.Cluster, clusters?.Names ?? persons, ClusterOf(study, table, order, clusters));
     }
 
     private static ImmutableArray<double> Weights(ChoiceTable table, RowOrder order)
@@ -112,16 +122,12 @@ public static class ChoicePanelBuilder
         return Immutable(weights);
     }
 
-    private static (ImmutableArray<string> Names, ImmutableArray<int> Of) Clusters(
-        StudySpecification study, ChoiceTable table, RowOrder order, ImmutableArray<string> persons)
+    private static ImmutableArray<int> ClusterOf(StudySpecification study, ChoiceTable table, RowOrder order, ClusterNames? clusters)
     {
-        if (study.Inference.Cluster == "person") return (persons, [.. Enumerable.Range(0, persons.Length)]);
+        var persons = Enumerable.Range(0, order.PersonStart.Length - 1);
+        if (clusters is null) return [.. persons];
         var column = table.Texts[study.Inference.Cluster];
-        var codes = Enumerable.Range(0, persons.Length)
-            .Select(p => column.Codes[FirstRowWith(order, p, r => column.Codes[r] != CodedColumn.NoValue)]).ToArray();
-        var clusterOrder = NameOrder.Of(column.Levels);
-        var rank = NameOrder.Ranks(clusterOrder);
-        return ([.. clusterOrder.Select(c => column.Levels[c])], [.. codes.Select(c => rank[c])]);
+        return [.. persons.Select(p => clusters.Rank[column.Codes[FirstRowWith(order, p, r => column.Codes[r] != CodedColumn.NoValue)]])];
     }
 
     /// <summary>The person's first row with a value: every person has an offered row, because the chosen one is, and there no cell is empty.</summary>

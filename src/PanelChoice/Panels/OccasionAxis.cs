@@ -40,28 +40,15 @@ internal sealed record OccasionAxis(long[] Position, long Step, OccasionUnit Uni
         _ => Usual(panel, history.Holidays),
     };
 
-    /// <summary>
-    /// The line that the occasions themselves suggest. The step is the largest one that divides every distance within persons, so that a
-    /// survey taken every second year has no gaps; dates that all are working days are counted in working days.
-    /// </summary>
+    /// <summary>The line that the occasions of a whole panel themselves suggest (<see cref="UsualStep"/>).</summary>
     public static OccasionAxis Usual(ChoicePanel panel, ImmutableArray<DateOnly> holidays)
     {
-        var isDate = panel.Table.OccasionKind == OccasionKind.Date;
-        var common = 0L;
-        for (var o = 1; o < panel.Occasions; o++)
-            if (panel.PersonOf[o] == panel.PersonOf[o - 1]) common = CommonDivisor(panel.Occasion[o] - panel.Occasion[o - 1], common);
-        if (common == 0) return new OccasionAxis([.. panel.Occasion], 1, isDate ? OccasionUnit.Day : OccasionUnit.WholeNumber, null);
-        if (!isDate) return new OccasionAxis([.. panel.Occasion], common, OccasionUnit.WholeNumber, common == 1 ? PreviousRule.Step : null);
-        if (common % 7 == 0) return new OccasionAxis([.. panel.Occasion], common, OccasionUnit.Week, common == 7 ? PreviousRule.Week : null);
-
-        var calendar = new WorkingCalendar(holidays);
-        return panel.Occasion.All(calendar.IsWorkingDay)
-            ? Workdays(panel, calendar)
-            : new OccasionAxis([.. panel.Occasion], 1, OccasionUnit.Day, PreviousRule.Day);
+        var usual = new UsualStep(holidays);
+        usual.Observe(panel);
+        return usual.AxisOf(panel);
     }
 
-    private static OccasionAxis Workdays(ChoicePanel panel, WorkingCalendar calendar) => new(
+    /// <summary>Occasions numbered in working days.</summary>
+    public static OccasionAxis Workdays(ChoicePanel panel, WorkingCalendar calendar) => new(
         [.. panel.Occasion.Select(day => calendar.IsWorkingDay(day) ? calendar.Number(day) : Off)], 1, OccasionUnit.Workday, PreviousRule.Workday);
-
-    private static long CommonDivisor(long a, long b) => b == 0 ? a : CommonDivisor(b, a % b);
 }

@@ -8,10 +8,10 @@ namespace PanelChoice.Panels;
 internal static class StudyFit
 {
     /// <summary>Notes every alternative that the study names and the data do not have, and every history rule that the occasions cannot serve.</summary>
-    public static void Check(StudySpecification study, ChoiceTable table, ProblemList problems)
+    public static void Check(StudySpecification study, ImmutableArray<string> alternatives, OccasionKind occasionKind, ProblemList problems)
     {
-        CheckAlternatives(study, table.Alternative.Levels, problems);
-        CheckHistory(study, table.OccasionKind, problems);
+        CheckAlternatives(study, alternatives, problems);
+        CheckHistory(study, occasionKind, problems);
     }
 
     private static void CheckAlternatives(StudySpecification study, ImmutableArray<string> alternatives, ProblemList problems)
