@@ -1,6 +1,5 @@
 using System.Collections.Immutable;
 using System.Globalization;
-using PanelChoice.Data;
 using PanelChoice.Panels;
 using PanelChoice.Study;
 
@@ -22,16 +21,13 @@ public static class CovariateBuilder
         ArgumentNullException.ThrowIfNull(study);
         ArgumentNullException.ThrowIfNull(panel);
         ArgumentNullException.ThrowIfNull(tree);
-        var problems = new List<Problem>();
-        var planned = Plan(study, panel, study.Terms, problems);
-        if (problems.Count > 0) return Checked<CovariateSet>.Bad([.. problems]);
-
-        var history = new OccasionHistory(panel, study.History);
-        var values = new TermValues(panel, tree, history);
-        var (used, leftOut) = SampleSelection.Select(panel, history, study.History, planned, values);
-        return used.IsEmpty
-            ? Checked<CovariateSet>.Bad([EmptySample(panel, leftOut)])
-            : new CovariateFiller(study, panel, history, values, study.Terms, used).Fill(planned, leftOut);
+        var survey = new CovariateSurvey(study, study.Terms);
+        var leftOut = new LeftOutBook();
+        if (!survey.Plan(panel)) return Checked<CovariateSet>.Bad(survey.Problems);
+        var part = new SampleSelector(study, tree).Select(panel, leftOut)!;
+        return part.Used.IsEmpty
+            ? Checked<CovariateSet>.Bad([EmptySample(panel.Table.File, leftOut.Reasons)])
+            : Fill(survey, part, leftOut.Reasons);
     }
 
     /// <summary>
@@ -49,56 +45,32 @@ public static class CovariateBuilder
         ArgumentNullException.ThrowIfNull(study);
         ArgumentNullException.ThrowIfNull(panel);
         ArgumentNullException.ThrowIfNull(tree);
-        var problems = new List<Problem>();
-        var planned = Plan(study, panel, terms, problems);
-        if (used.IsEmpty) problems.Add(EmptySample(panel, []));
-        if (problems.Count > 0) return Checked<CovariateSet>.Bad([.. problems]);
-
-        var history = new OccasionHistory(panel, study.History);
-        var values = new TermValues(panel, tree, history);
+        var survey = new CovariateSurvey(study, terms);
+        survey.Plan(panel);
+        if (used.IsEmpty) survey.Reject(EmptySample(panel.Table.File, []));
+        if (!survey.Problems.IsEmpty) return Checked<CovariateSet>.Bad(survey.Problems);
         var outside = panel.Occasions - used.Length;
-        ImmutableArray<LeftOut> leftOut = outside > 0 ? [new LeftOut("not in the given sample", outside)] : [];
-        return new CovariateFiller(study, panel, history, values, terms, used).Fill(planned, leftOut);
+        var history = new OccasionHistory(panel, study.History);
+        var part = new SamplePart(panel, history, new TermValues(panel, tree, history), used);
+        return Fill(survey, part, outside > 0 ? [new LeftOut("not in the given sample", outside)] : []);
     }
 
-    private static ImmutableArray<PlannedTerm> Plan(
-        StudySpecification study, ChoicePanel panel, ImmutableArray<TermSpecification> terms, List<Problem> problems)
+    private static Checked<CovariateSet> Fill(CovariateSurvey survey, SamplePart part, ImmutableArray<LeftOut> leftOut)
     {
-        CheckRule(study, panel, terms, problems);
-        var planned = new TermPlanner(study, panel, problems).Plan(terms);
-        problems.AddRange(LogarithmCheck.Problems(panel, planned));
-        return planned;
+        var all = survey.Add(part);
+        survey.CountGaps(part);
+        return survey.Finish(leftOut).Then(outline => Checked<CovariateSet>.Good(new CovariateSet(
+            part.Panel, part.Used, [.. all.Covariates.Where(c => outline.Keeps(c))], leftOut, outline.StockStarts, outline.Cautions)));
     }
 
-    private static void CheckRule(StudySpecification study, ChoicePanel panel, ImmutableArray<TermSpecification> terms, List<Problem> problems)
-    {
-        var needsRule = terms.FirstOrDefault(t => TermDirection.StepsBack(t.Source) is not null || TermDirection.StepsAhead(t.Source) is not null);
-        if (study.History.Previous is null && needsRule is not null)
-            problems.Add(new Problem(
-                "study.no_previous", study.File, $"term '{needsRule.Name}' looks at another occasion, and [history] does not say which is the previous one",
-                "state previous = \"recorded\", \"step\", \"day\", \"workday\" or \"week\"")
-            {
-                Line = needsRule.Line,
-            });
-        var pairs = (study.History.Previous, panel.Table.OccasionKind) switch
-        {
-            (PreviousRule.Step, OccasionKind.Date) => "counts whole numbers, and the occasions are dates",
-            (PreviousRule.Day or PreviousRule.Workday or PreviousRule.Week, OccasionKind.WholeNumber) => "counts dates, and the occasions are whole numbers",
-            _ => null,
-        };
-        if (pairs is null) return;
-        var rule = study.History.Previous.ToString()!.ToLowerInvariant();
-        var remedy = panel.Table.OccasionKind == OccasionKind.Date ? "use \"recorded\", \"day\", \"workday\" or \"week\"" : "use \"recorded\" or \"step\"";
-        problems.Add(new Problem("study.previous_does_not_fit", study.File, $"previous = \"{rule}\" {pairs}", remedy));
-    }
-
-    private static Problem EmptySample(ChoicePanel panel, ImmutableArray<LeftOut> leftOut)
+    /// <summary>The problem of a sample in which nothing is left.</summary>
+    internal static Problem EmptySample(string file, ImmutableArray<LeftOut> leftOut)
     {
         var reasons = leftOut.IsEmpty
             ? ""
             : ": " + string.Join("; ", leftOut.Select(l => string.Create(CultureInfo.InvariantCulture, $"{l.Occasions} {l.Reason}")));
         return new Problem(
-            "sample.empty", panel.Table.File, "no occasion is left to estimate from" + reasons,
+            "sample.empty", file, "no occasion is left to estimate from" + reasons,
             "let the terms look back less far, choose another previous, or state without_history = \"zero\"");
     }
 }

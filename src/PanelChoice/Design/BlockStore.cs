@@ -55,6 +55,15 @@ public abstract class BlockReader
     /// <summary>Whether an alternative is offered in a lane of the open block.</summary>
     public bool IsOffered(int lane, int alternative) => (OfferedMasks[(lane / ChoiceDesign.TileLanes * format.Alternatives) + alternative] >> (lane % ChoiceDesign.TileLanes) & 1) != 0;
 
+    /// <summary>The alternative chosen in a lane of the open block; -1 in a padding lane.</summary>
+    public int ChosenAt(int lane)
+    {
+        var masks = ChosenMasks.Slice(lane / ChoiceDesign.TileLanes * format.Alternatives, format.Alternatives);
+        var alternative = masks.Length - 1;
+        while (alternative >= 0 && (masks[alternative] >> (lane % ChoiceDesign.TileLanes) & 1) == 0) alternative--;
+        return alternative;
+    }
+
     /// <summary>The value of a stored column in a lane of the open block; 1 for column -1.</summary>
     public double Value(int column, int lane)
     {

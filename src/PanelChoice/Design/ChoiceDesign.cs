@@ -27,10 +27,7 @@ public sealed record DesignBlock(int Index, int FirstSituation, int Situations, 
 /// <param name="Columns">Products coefficient x covariate, ordered by alternative, then parameter.</param>
 /// <param name="Blocks">The blocks in order.</param>
 /// <param name="Store">Their columns and masks.</param>
-/// <param name="Chosen">Chosen alternative of each situation.</param>
-/// <param name="PanelOccasion">Panel occasion of each situation.</param>
 /// <param name="PersonStart">First situation of each of the sample's persons; one more entry closes the last.</param>
-/// <param name="PanelPerson">Panel person of each of the sample's persons.</param>
 /// <param name="PersonWeight">Sampling weight of each of the sample's persons (1 without weights).</param>
 /// <param name="ClusterBy">"person" or the cluster column.</param>
 /// <param name="ClusterOf">Cluster of each of the sample's persons, numbered 0 to G - 1 without holes.</param>
@@ -41,10 +38,7 @@ public sealed record ChoiceDesign(
     ImmutableArray<DesignColumn> Columns,
     ImmutableArray<DesignBlock> Blocks,
     BlockStore Store,
-    ImmutableArray<int> Chosen,
-    ImmutableArray<int> PanelOccasion,
     ImmutableArray<int> PersonStart,
-    ImmutableArray<int> PanelPerson,
     ImmutableArray<double> PersonWeight,
     string ClusterBy,
     ImmutableArray<int> ClusterOf,
@@ -54,7 +48,7 @@ public sealed record ChoiceDesign(
     public const int TileLanes = 8;
 
     /// <summary>Number of situations.</summary>
-    public int Situations => Chosen.Length;
+    public int Situations => PersonStart[^1];
 
     /// <summary>Number of persons in the sample.</summary>
     public int Persons => PersonWeight.Length;
@@ -62,16 +56,20 @@ public sealed record ChoiceDesign(
     /// <summary>Number of alternatives.</summary>
     public int Alternatives => Tree.Alternatives.Length;
 
-    /// <summary>Person (index into the sample's persons) of each situation.</summary>
-    public ImmutableArray<int> PersonOf { get; } = Expand(PersonStart);
+    /// <summary>Person (index into the sample's persons) of each situation: looked up, because a large panel has no memory to spare for each situation.</summary>
+    public SituationIndex PersonOf => new(PersonStart);
 
-    /// <summary>Block of each situation, for code that walks situations one by one.</summary>
-    public ImmutableArray<int> BlockOf { get; } = [.. Blocks.SelectMany((b, i) => Enumerable.Repeat(i, b.Situations))];
+    /// <summary>Block of each situation.</summary>
+    public SituationIndex BlockOf { get; } = new([.. Blocks.Select(b => b.FirstSituation)]);
+}
 
-    private static ImmutableArray<int> Expand(ImmutableArray<int> start)
-    {
-        var persons = new int[start[^1]];
-        for (var p = 0; p + 1 < start.Length; p++) Array.Fill(persons, p, start[p], start[p + 1] - start[p]);
-        return [.. persons];
-    }
+/// <summary>Finds the run of situations, a person's or a block's, that a situation belongs to.</summary>
+/// <param name="start">First situation of each run, ascending.</param>
+public readonly struct SituationIndex(ImmutableArray<int> start)
+{
+    private readonly ImmutableArray<int> start = start;
+
+    /// <summary>The run of a situation.</summary>
+    /// <param name="situation">The situation.</param>
+    public int this[int situation] => start.BinarySearch(situation) is var at && at >= 0 ? at : ~at - 1;
 }

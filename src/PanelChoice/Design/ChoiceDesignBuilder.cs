@@ -34,10 +34,7 @@ public static class ChoiceDesignBuilder
         var clusterNumber = clusterNames.Select((c, i) => (c, i)).ToDictionary(x => x.c, x => x.i);
         return new ChoiceDesign(
             tree, layout, columns, blocks, store,
-            [.. covariates.Used.Select(occasion => panel.Chosen[occasion])],
-            covariates.Used,
             persons.Start,
-            persons.Panel,
             [.. persons.Panel.Select(p => panel.Weight[p])],
             panel.ClusterBy,
             [.. persons.Panel.Select(p => clusterNumber[panel.ClusterOf[p]])],

@@ -33,6 +33,7 @@ internal sealed class SituationScores
     private readonly double[] z;
     private readonly double[] raw;
     private readonly double[] product;
+    private int chosen;
 
     /// <summary>A work space.</summary>
     /// <param name="design">The design.</param>
@@ -124,7 +125,7 @@ internal sealed class SituationScores
         for (var r = 0; r < phi; r++)
             for (var c = 0; c < r; c++) Omega[(r * phi) + c] = Omega[(c * phi) + r];
 
-        Derivatives(design.Chosen[situation]);
+        Derivatives(chosen);
         Array.Copy(full, Residual, J);
         Array.Clear(Score);
         for (var r = 0; r < phi; r++) Accumulate(full[r], z.AsSpan(r * K, K), Score);
@@ -153,9 +154,14 @@ internal sealed class SituationScores
 
     private void LoadDesign(int situation)
     {
-        var block = design.Blocks[design.BlockOf[situation]];
-        reader.Open(block);
+        if (reader.Block is not { } block || situation < block.FirstSituation || situation >= block.FirstSituation + block.Situations)
+        {
+            block = design.Blocks[design.BlockOf[situation]];
+            reader.Open(block);
+        }
+
         var lane = situation - block.FirstSituation;
+        chosen = reader.ChosenAt(lane);
         for (var j = 0; j < J; j++)
         {
             offered[j] = reader.IsOffered(lane, j);

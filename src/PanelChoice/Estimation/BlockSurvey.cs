@@ -41,10 +41,12 @@ internal sealed class BlockSurvey
     /// <param name="block">The block.</param>
     /// <param name="squares">To it is added, for each coefficient, the sum of squared deviations from the mean of the choice set.</param>
     /// <param name="byPerson">Receives the evidence: persons x K.</param>
+    /// <param name="isEverChosen">Is told the alternatives that are chosen.</param>
     /// <returns>The number of offered alternatives.</returns>
-    public long Add(DesignBlock block, double[] squares, Evidence[] byPerson)
+    public long Add(DesignBlock block, double[] squares, Evidence[] byPerson, bool[] isEverChosen)
     {
         reader.Open(block);
+        for (var i = 0; i < reader.ChosenMasks.Length; i++) if (reader.ChosenMasks[i] != 0) isEverChosen[i % design.Alternatives] = true;
         var tiles = block.Lanes / Tile;
         if (varies.Length < tiles) (varies, more, less) = (new byte[tiles], new byte[tiles], new byte[tiles]);
         foreach (var (k, alternatives, columns) in coefficients)
@@ -126,9 +128,8 @@ internal sealed class BlockSurvey
     {
         var K = design.Layout.Count;
         var end = block.FirstSituation + block.Situations;
-        for (var situation = block.FirstSituation; situation < end;)
+        for (int situation = block.FirstSituation, person = design.PersonOf[situation]; situation < end; person++)
         {
-            var person = design.PersonOf[situation];
             var next = design.PersonStart[person + 1];
             if (HasAny(found, situation - block.FirstSituation, next - block.FirstSituation)) byPerson[(person * K) + k] |= evidence;
             situation = next;

@@ -71,11 +71,12 @@ internal sealed class ColumnSurvey
         var squares = new double[chunks][];
         var cells = new long[chunks];
         var byPerson = new Evidence[design.Persons * K];
+        var chosen = new bool[design.Alternatives];
         FixedChunks.Run(design.Blocks.Length, threads, (chunk, first, end) =>
         {
             squares[chunk] = new double[K];
             var survey = new BlockSurvey(design);
-            for (var b = first; b < end; b++) cells[chunk] += survey.Add(design.Blocks[b], squares[chunk], byPerson);
+            for (var b = first; b < end; b++) cells[chunk] += survey.Add(design.Blocks[b], squares[chunk], byPerson, chosen);
         });
 
         var scale = Enumerable.Repeat(1.0, K).ToArray();
@@ -90,8 +91,6 @@ internal sealed class ColumnSurvey
         var byCluster = new Evidence[design.Clusters.Length * K];
         for (var p = 0; p < design.Persons; p++)
             for (var k = 0; k < K; k++) byCluster[(design.ClusterOf[p] * K) + k] |= byPerson[(p * K) + k];
-        var chosen = new bool[design.Alternatives];
-        foreach (var j in design.Chosen) chosen[j] = true;
         return new ColumnSurvey(scale, byCluster, chosen, K);
     }
 }

@@ -60,20 +60,26 @@ internal sealed record Curvature(double Condition, ImmutableArray<int> Weakest, 
     {
         var design = likelihood.Design;
         var v = function.Direction(function.Coordinates(parameters), direction);
-        var scores = likelihood.Scores(parameters);
+        var scores = Array.Empty<double>();
         double along = 0, apart = 0;
-        for (var s = 0; s < design.Situations; s++)
+        foreach (var block in design.Blocks)
         {
-            if (personWeight[design.PersonOf[s]] == 0) continue;
-            var sum = 0.0;
-            for (var k = 0; k < v.Length; k++)
+            if (scores.Length < block.Situations * v.Length) scores = new double[block.Situations * v.Length];
+            likelihood.Scores(parameters, block, scores);
+            for (int s = 0, person = design.PersonOf[block.FirstSituation]; s < block.Situations; s++)
             {
-                var term = scores[(s * v.Length) + k] * v[k];
-                sum += term;
-                apart += term * term;
-            }
+                if (block.FirstSituation + s == design.PersonStart[person + 1]) person++;
+                if (personWeight[person] == 0) continue;
+                var sum = 0.0;
+                for (var k = 0; k < v.Length; k++)
+                {
+                    var term = scores[(s * v.Length) + k] * v[k];
+                    sum += term;
+                    apart += term * term;
+                }
 
-            along += sum * sum;
+                along += sum * sum;
+            }
         }
 
         return apart > 0 ? along / apart : 0;

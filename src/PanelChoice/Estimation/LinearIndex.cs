@@ -63,7 +63,7 @@ internal static class LinearIndex
         var value = new double[J + nodes.Length];
         var largest = new double[nodes.Length];
 
-        return Walk(design, v, 0, design.Blocks.Length, personWeight, (situation, index, size, offered) =>
+        return Walk(design, v, 0, design.Blocks.Length, personWeight, (chosen, index, size, offered) =>
         {
             for (var j = 0; j < J; j++) value[j] = offered[j] ? index[j] : double.NegativeInfinity;
 
@@ -74,13 +74,13 @@ internal static class LinearIndex
                 value[J + n] = l[n] * largest[n];
             }
 
-            for (var c = design.Chosen[situation]; c != J + design.Tree.Root; c = J + parent[c])
+            for (var c = chosen; c != J + design.Tree.Root; c = J + parent[c])
                 if (value[c] - largest[parent[c]] < -tolerance * size) return false;
             return true;
         });
     }
 
-    /// <summary>Calls back with each situation's index, its largest single term and availability until the callback says false.</summary>
+    /// <summary>Calls back with each situation's choice, index, its largest single term and availability until the callback says false.</summary>
     private static bool Walk(ChoiceDesign design, double[] v, int firstBlock, int endBlock, double[]? personWeight, Func<int, double[], double, bool[], bool> each)
     {
         var J = design.Alternatives;
@@ -92,10 +92,10 @@ internal static class LinearIndex
         {
             var block = design.Blocks[b];
             reader.Open(block);
-            for (var lane = 0; lane < block.Situations; lane++)
+            for (int lane = 0, person = design.PersonOf[block.FirstSituation]; lane < block.Situations; lane++)
             {
-                var situation = block.FirstSituation + lane;
-                if (personWeight is not null && personWeight[design.PersonOf[situation]] == 0) continue;
+                if (block.FirstSituation + lane == design.PersonStart[person + 1]) person++;
+                if (personWeight is not null && personWeight[person] == 0) continue;
                 for (var j = 0; j < J; j++) offered[j] = reader.IsOffered(lane, j);
                 Array.Clear(index);
                 var size = 0.0;
@@ -107,7 +107,7 @@ internal static class LinearIndex
                     size = Math.Max(size, Math.Abs(term));
                 }
 
-                if (!each(situation, index, size, offered)) return false;
+                if (!each(reader.ChosenAt(lane), index, size, offered)) return false;
             }
         }
 

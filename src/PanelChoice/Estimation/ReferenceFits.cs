@@ -29,13 +29,13 @@ internal sealed class ReferenceFits
         foreach (var block in design.Blocks)
         {
             reader.Open(block);
-            for (var lane = 0; lane < block.Situations; lane++)
+            for (int lane = 0, person = design.PersonOf[block.FirstSituation]; lane < block.Situations; lane++)
             {
+                if (block.FirstSituation + lane == design.PersonStart[person + 1]) person++;
                 for (var j = 0; j < J; j++) key[j] = reader.IsOffered(lane, j) ? '1' : '0';
                 if (!bySpan.TryGetValue(key, out var set))
                     counts[new string(key)] = set = ([.. Enumerable.Range(0, J).Where(j => key[j] == '1')], new double[J]);
-                var situation = block.FirstSituation + lane;
-                set.Chosen[design.Chosen[situation]] += personWeight[design.PersonOf[situation]];
+                set.Chosen[reader.ChosenAt(lane)] += personWeight[person];
             }
         }
 

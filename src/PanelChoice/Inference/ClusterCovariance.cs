@@ -18,8 +18,10 @@ internal static class ClusterCovariance
     /// <summary>Both forms: with the factor, and without.</summary>
     /// <param name="input">What is known of the model.</param>
     /// <param name="bread">H^-1, F x F.</param>
+    /// <param name="scores">Sums of the scores of each cluster, G x F.</param>
     /// <param name="threads">Threads; no figure depends on it.</param>
-    public static (CovarianceEstimate Corrected, CovarianceEstimate Uncorrected) Estimate(InferenceInput input, double[] bread, int threads)
+    public static (CovarianceEstimate Corrected, CovarianceEstimate Uncorrected) Estimate(
+        InferenceInput input, double[] bread, ReadOnlyMemory<double> scores, int threads)
     {
         var clusters = input.Clusters.Length;
         if (clusters < 2)
@@ -29,7 +31,7 @@ internal static class ClusterCovariance
         }
 
         var f = input.Free.Length;
-        var meat = Sandwich.OuterSum(Sandwich.ClusterScores(input), f, threads);
+        var meat = Sandwich.OuterSum(scores, f, threads);
         var factor = clusters / (clusters - 1.0);
         var cautions = Cautions(input);
         return (

@@ -1,3 +1,4 @@
+using System.Collections.Immutable;
 using System.Runtime.InteropServices;
 using PanelChoice.Numerics;
 using PanelChoice.Study;
@@ -16,15 +17,15 @@ internal static class ClusterJackknife
     /// <summary>Up to this number of clusters the automatic choice is a full refit without each.</summary>
     public const int MostRefits = 1000;
 
-    /// <summary>Entries of the clusters' information matrices, at 8 bytes each, that the one-step form may hold: 2 gigabytes.</summary>
-    public const long MostEntries = 1L << 28;
+    /// <summary>Clusters whose information the one-step form holds at a time: those of all would outgrow the panel.</summary>
+    public const int ClustersAtOnce = 2_048;
 
     /// <summary>The estimate, and how it went (null when off or refused beforehand).</summary>
-    public static (CovarianceEstimate Covariance, JackknifeSummary? Summary) Estimate(InferenceInput input, JackknifeKind kind, WorkContext work)
+    public static (CovarianceEstimate Covariance, JackknifeSummary? Summary) Estimate(InferenceInput input, ScoreSums scores, JackknifeKind kind, WorkContext work)
     {
         if (kind == JackknifeKind.Off) return (Refuse("The jackknife is switched off."), null);
         if (input.Clusters.Length < 2) return (Refuse("There is one cluster only: without it nothing is left to estimate from."), null);
-        return Refits(kind, input.Clusters.Length) ? ByRefits(input, work) : ByOneStep(input, work);
+        return Refits(kind, input.Clusters.Length) ? ByRefits(input, work) : ByOneStep(input, scores.ByCluster, work);
     }
 
     /// <summary>Whether this kind means a full refit without each of so many clusters.</summary>
@@ -62,22 +63,23 @@ internal static class ClusterJackknife
         return (covariance, summary);
     }
 
-    private static (CovarianceEstimate, JackknifeSummary?) ByOneStep(InferenceInput input, WorkContext work)
+    private static (CovarianceEstimate, JackknifeSummary?) ByOneStep(InferenceInput input, ImmutableArray<double> scores, WorkContext work)
     {
         var clusters = input.Clusters.Length;
         var f = input.Free.Length;
-        var entries = (long)clusters * input.Estimates.Length * input.Estimates.Length;
-        if (entries > MostEntries)
-            return (Refuse($"The information of {clusters} clusters by {input.Estimates.Length} parameters would take {entries >> 27} gigabytes."), null);
-        var scores = Sandwich.ClusterScores(input);
-        var parts = input.ClusterInformation();
+        ImmutableArray<double> parts = [];
         var deviations = new double[clusters * f];
         var failures = new List<(int Cluster, int Term)>();
         var without = new double[f * f];
         for (var g = 0; g < clusters; g++)
         {
-            if (g % 256 == 0) work.Report("jackknife", g, clusters);
-            for (var i = 0; i < without.Length; i++) without[i] = input.Information[i] - parts[(g * f * f) + i];
+            if (g % ClustersAtOnce == 0)
+            {
+                work.Report("jackknife", g, clusters);
+                parts = input.ClusterInformation(g, Math.Min(ClustersAtOnce, clusters - g));
+            }
+
+            for (var i = 0; i < without.Length; i++) without[i] = input.Information[i] - parts[(g % ClustersAtOnce * f * f) + i];
             var row = deviations.AsSpan(g * f, f);
             if (ScaledCholesky.Factor(without, f, out var failed) is not { } factor)
             {

@@ -34,10 +34,11 @@ public sealed record NullValue(double Value, int? Parameter, string? Withheld);
 /// <param name="Free">Indices of the F free parameters, ascending.</param>
 /// <param name="Nulls">What each of the F free parameters is tested against.</param>
 /// <param name="Contribution">What a contribution is.</param>
-/// <param name="Scores">N x F derivatives of the weighted contributions, row by row.</param>
-/// <param name="ClusterOf">Cluster of each of the N contributions, 0 to G - 1.</param>
+/// <param name="Contributions">N.</param>
+/// <param name="Scores">Makes the sums of the derivatives of the weighted contributions on a number of threads; called only where there is a maximum.</param>
 /// <param name="Information">F x F: minus the Hessian of the weighted log-likelihood, row by row.</param>
-/// <param name="ClusterInformation">Makes its G parts, G x F x F, row by row; called only by estimators that need them.</param>
+/// <param name="ClusterInformation">Makes its parts for a run of clusters, given the first and their number: that many x F x F, row by row; called only by
+/// estimators that need them.</param>
 /// <param name="ClusterBy">What a cluster is: "person", or the cluster column.</param>
 /// <param name="Clusters">Names of the G clusters as sentences may give them: stand-ins where ids must not be passed on.</param>
 /// <param name="ClusterOccasions">Occasions in each cluster.</param>
@@ -52,10 +53,10 @@ public sealed record InferenceInput(
     ImmutableArray<int> Free,
     ImmutableArray<NullValue> Nulls,
     ContributionKind Contribution,
-    ImmutableArray<double> Scores,
-    ImmutableArray<int> ClusterOf,
+    int Contributions,
+    Func<int, ScoreSums> Scores,
     ImmutableArray<double> Information,
-    Func<ImmutableArray<double>> ClusterInformation,
+    Func<int, int, ImmutableArray<double>> ClusterInformation,
     string ClusterBy,
     ImmutableArray<string> Clusters,
     ImmutableArray<int> ClusterOccasions,
@@ -84,9 +85,8 @@ public sealed record InferenceInput(
         var free = layout.Free;
         if (!clusterNames.IsDefault && clusterNames.Length != design.Clusters.Length)
             throw new ArgumentException("There are not as many names as clusters.", nameof(clusterNames));
-        var clusterOf = design.PersonOf.Select(p => design.ClusterOf[p]).ToImmutableArray();
         var occasions = new int[design.Clusters.Length];
-        foreach (var g in clusterOf) occasions[g]++;
+        for (var p = 0; p < design.Persons; p++) occasions[design.ClusterOf[p]] += design.PersonStart[p + 1] - design.PersonStart[p];
         var weighted = design.PersonWeight.Any(w => w != 1);
         return new InferenceInput(
             model.Parameters,
@@ -95,52 +95,62 @@ public sealed record InferenceInput(
             free,
             [.. free.Select(k => NullOf(k, model))],
             ContributionKind.Occasion,
-            WeightedScores(model),
-            clusterOf,
+            design.Situations,
+            threads => ScoreSums.Of(model, threads),
             [.. free.SelectMany(r => free.Select(c => -model.Hessian[(r * layout.Count) + c]))],
-            () => ClusterParts(model),
+            (first, count) => ClusterParts(model, first, count),
             design.ClusterBy,
             clusterNames.IsDefault ? design.Clusters : clusterNames,
             ImmutableCollectionsMarshal.AsImmutableArray(occasions),
             weighted,
-            weighted ? design.PersonOf.Average(p => design.PersonWeight[p]) : 1,
+            weighted ? MeanOverSituations(design) : 1,
             model.Status == FitStatus.Converged ? null : Unsettled(model.Status),
             refitter);
     }
 
-    private static ImmutableArray<double> WeightedScores(FittedModel model)
+    /// <summary>The mean weight over situations, summed in their order.</summary>
+    private static double MeanOverSituations(ChoiceDesign design)
     {
-        var design = model.Design;
-        var all = model.Likelihood.Scores(model.Parameters.AsSpan());
-        var k = model.Layout.Count;
-        var free = model.Layout.Free;
-        var scores = new double[design.Situations * free.Length];
-        for (var s = 0; s < design.Situations; s++)
-        {
-            var weight = design.PersonWeight[design.PersonOf[s]];
-            for (var f = 0; f < free.Length; f++) scores[(s * free.Length) + f] = weight * all[(s * k) + free[f]];
-        }
-
-        return ImmutableCollectionsMarshal.AsImmutableArray(scores);
+        var sum = 0.0;
+        for (var p = 0; p < design.Persons; p++)
+            for (var s = design.PersonStart[p]; s < design.PersonStart[p + 1]; s++) sum += design.PersonWeight[p];
+        return sum / design.Situations;
     }
 
-    private static ImmutableArray<double> ClusterParts(FittedModel model)
+    private static ImmutableArray<double> ClusterParts(FittedModel model, int firstCluster, int count)
     {
         var design = model.Design;
-        var persons = model.Likelihood.PersonInformation(model.Parameters.AsSpan());
         var k = model.Layout.Count;
         var free = model.Layout.Free;
         var f = free.Length;
-        var parts = new double[design.Clusters.Length * f * f];
-        for (var p = 0; p < design.Persons; p++)
+        var parts = new double[count * f * f];
+        foreach (var (first, end) in PersonsOf(design, firstCluster, count))
         {
-            var into = design.ClusterOf[p] * f * f;
-            for (var r = 0; r < f; r++)
-                for (var c = 0; c < f; c++)
-                    parts[into + (r * f) + c] += design.PersonWeight[p] * persons[(((p * k) + free[r]) * k) + free[c]];
+            var persons = model.Likelihood.PersonInformation(model.Parameters.AsSpan(), first, end);
+            for (var p = first; p < end; p++)
+            {
+                var into = (design.ClusterOf[p] - firstCluster) * f * f;
+                for (var r = 0; r < f; r++)
+                    for (var c = 0; c < f; c++)
+                        parts[into + (r * f) + c] += design.PersonWeight[p] * persons[((((p - first) * k) + free[r]) * k) + free[c]];
+            }
         }
 
         return ImmutableCollectionsMarshal.AsImmutableArray(parts);
+    }
+
+    /// <summary>Runs of persons who belong to a run of clusters, ascending.</summary>
+    private static IEnumerable<(int First, int End)> PersonsOf(ChoiceDesign design, int firstCluster, int count)
+    {
+        for (var p = 0; p < design.Persons; p++)
+        {
+            if (!IsIn(p)) continue;
+            var first = p;
+            while (p < design.Persons && IsIn(p)) p++;
+            yield return (first, p);
+        }
+
+        bool IsIn(int person) => design.ClusterOf[person] >= firstCluster && design.ClusterOf[person] < firstCluster + count;
     }
 
     private static NullValue NullOf(int parameter, FittedModel model)
@@ -182,7 +192,7 @@ public sealed record InferenceInput(
     {
         var f = Free.Length;
         var fits = Labels.Length == Estimates.Length && Kinds.Length == Estimates.Length && Nulls.Length == f
-            && Scores.Length == ClusterOf.Length * f && Information.Length == f * f && ClusterOccasions.Length == Clusters.Length;
+            && Information.Length == f * f && ClusterOccasions.Length == Clusters.Length;
         if (!fits) throw new ArgumentException("The lengths of an inference input do not fit together.");
     }
 }

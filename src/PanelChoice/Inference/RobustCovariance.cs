@@ -10,7 +10,7 @@ internal static class RobustCovariance
     /// <param name="input">What is known of the model.</param>
     /// <param name="bread">H^-1, F x F.</param>
     /// <param name="meat">sum s_it s_it', F x F.</param>
-    public static CovarianceEstimate Estimate(InferenceInput input, double[] bread, double[] meat)
+    public static CovarianceEstimate Estimate(InferenceInput input, double[] bread, ReadOnlySpan<double> meat)
     {
         if (input.Contribution == ContributionKind.Person)
             return CovarianceEstimate.Refused(

@@ -22,14 +22,17 @@ public static class StandardErrors
         if (Obstacle(input) is { } reason) return Without(input, settings, reason);
 
         var pooled = PooledCovariance.Estimate(input, out var bread);
-        var meat = Sandwich.OuterSum(input.Scores.AsMemory(), input.Free.Length, work.Threads);
-        var (cluster, uncorrected) = ClusterCovariance.Estimate(input, bread!, work.Threads);
-        var (jackknife, deletions) = ClusterJackknife.Estimate(input, settings.Jackknife, work);
+        var scores = input.Scores(work.Threads);
+        if (scores.OuterProduct.Length != bread!.Length || scores.ByCluster.Length != input.Clusters.Length * input.Free.Length)
+            throw new ArgumentException("The sums of scores do not fit the rest of an inference input.", nameof(input));
+        var meat = scores.OuterProduct;
+        var (cluster, uncorrected) = ClusterCovariance.Estimate(input, bread, scores.ByCluster.AsMemory(), work.Threads);
+        var (jackknife, deletions) = ClusterJackknife.Estimate(input, scores, settings.Jackknife, work);
         var (bootstrap, replicates) = ClusterBootstrap.Estimate(input, settings, work);
         return Assemble(
             input, settings,
             [
-                pooled, OuterProductCovariance.Estimate(input, meat), RobustCovariance.Estimate(input, bread!, meat), cluster, uncorrected, jackknife,
+                pooled, OuterProductCovariance.Estimate(input, meat.AsSpan()), RobustCovariance.Estimate(input, bread, meat.AsSpan()), cluster, uncorrected, jackknife,
                 CovarianceEstimate.Refused(CovarianceKind.TwoWay, "The study names no second cluster."), bootstrap,
             ],
             deletions, replicates);

@@ -43,9 +43,21 @@ public interface IChoiceLikelihood
     /// <summary>Derivatives of log P of each situation, unweighted: situations x K, row by row.</summary>
     double[] Scores(ReadOnlySpan<double> parameters);
 
+    /// <summary>Derivatives of log P of each situation of one block, unweighted, for callers that cannot hold those of all.</summary>
+    /// <param name="parameters">K parameters.</param>
+    /// <param name="block">One of the design's blocks.</param>
+    /// <param name="scores">Receives the block's situations x K, row by row; may be longer.</param>
+    void Scores(ReadOnlySpan<double> parameters, DesignBlock block, Span<double> scores);
+
     /// <summary>Log P of each situation's choice, unweighted.</summary>
     double[] LogProbabilities(ReadOnlySpan<double> parameters);
 
     /// <summary>Minus the second derivatives of each person's log-likelihood, unweighted: persons x K x K, row by row.</summary>
     double[] PersonInformation(ReadOnlySpan<double> parameters);
+
+    /// <summary>The same for a run of persons.</summary>
+    /// <param name="parameters">K parameters.</param>
+    /// <param name="firstPerson">First person.</param>
+    /// <param name="endPerson">Person after the last.</param>
+    double[] PersonInformation(ReadOnlySpan<double> parameters, int firstPerson, int endPerson);
 }

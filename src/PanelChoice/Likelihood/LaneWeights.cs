@@ -37,9 +37,8 @@ internal readonly ref struct LaneWeights
             return;
         }
 
-        for (var lane = 0; lane < filled;)
+        for (int lane = 0, p = design.PersonOf[first]; lane < filled; p++)
         {
-            var p = design.PersonOf[first + lane];
             var run = Math.Min(filled, design.PersonStart[p + 1] - first) - lane;
             lanes.Slice(lane, run).Fill(person[p]);
             lane += run;

@@ -102,6 +102,20 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
         return scores;
     }
 
+    public void Scores(ReadOnlySpan<double> parameters, DesignBlock block, Span<double> scores)
+    {
+        var own = scores[..(block.Situations * K)];
+        own.Fill(double.NaN);
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return;
+        own.Clear();
+        var work = new Situation(Design, form, parameters.ToArray());
+        for (var s = 0; s < block.Situations; s++)
+        {
+            work.Load(block.FirstSituation + s);
+            work.AddGradient(1, own.Slice(s * K, K));
+        }
+    }
+
     public double[] LogProbabilities(ReadOnlySpan<double> parameters)
     {
         if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Situations);
@@ -116,16 +130,19 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
         return log;
     }
 
-    public double[] PersonInformation(ReadOnlySpan<double> parameters)
+    public double[] PersonInformation(ReadOnlySpan<double> parameters) => PersonInformation(parameters, 0, Design.Persons);
+
+    public double[] PersonInformation(ReadOnlySpan<double> parameters, int firstPerson, int endPerson)
     {
-        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Persons * K * K);
+        var persons = endPerson - firstPerson;
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(persons * K * K);
         var theta = parameters.ToArray();
-        var information = new double[Design.Persons * K * K];
-        Numerics.FixedChunks.Run(Design.Persons, threads, (_, first, end) =>
+        var information = new double[persons * K * K];
+        Numerics.FixedChunks.Run(persons, threads, (_, first, end) =>
         {
             var work = new Situation(Design, form, theta);
             for (var person = first; person < end; person++)
-                for (var s = Design.PersonStart[person]; s < Design.PersonStart[person + 1]; s++)
+                for (var s = Design.PersonStart[firstPerson + person]; s < Design.PersonStart[firstPerson + person + 1]; s++)
                 {
                     work.Load(s);
                     work.AddHessian(-1, information.AsSpan(person * K * K, K * K));
@@ -195,7 +212,7 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
                 utility[column.Alternative] += theta[column.Parameter] * x;
             }
 
-            chosen = design.Chosen[situation];
+            chosen = reader.ChosenAt(lane);
             tree.Compute(utility, offered);
         }
 

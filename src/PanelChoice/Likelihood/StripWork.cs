@@ -68,7 +68,7 @@ internal sealed class StripWork
         }
     }
 
-    /// <summary>Writes the derivatives of log P of a block's situations, situations x K.</summary>
+    /// <summary>Writes the derivatives of log P of a block's situations, the block's situations x K.</summary>
     public void Scores(DesignBlock block, Span<double> scores)
     {
         for (var lane = 0; lane < block.Situations; lane += strip.Lanes)
@@ -77,7 +77,7 @@ internal sealed class StripWork
             probabilities.Up();
             probabilities.Down();
             var count = Math.Min(strip.Lanes, block.Situations - lane);
-            gradient.WriteLanes(scores.Slice((block.FirstSituation + lane) * plan.K, count * plan.K));
+            gradient.WriteLanes(scores.Slice(lane * plan.K, count * plan.K));
         }
     }
 

@@ -72,9 +72,23 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood
         var scores = new double[Design.Situations * K];
         Run(Design.Blocks.Length, parameters, (work, _, first, end) =>
         {
-            for (var b = first; b < end; b++) work.Scores(Design.Blocks[b], scores);
+            for (var b = first; b < end; b++) work.Scores(Design.Blocks[b], scores.AsSpan(Design.Blocks[b].FirstSituation * K));
         });
         return scores;
+    }
+
+    public void Scores(ReadOnlySpan<double> parameters, DesignBlock block, Span<double> scores)
+    {
+        if (!ParameterDomain.Contains(Design.Layout, parameters))
+        {
+            scores[..(block.Situations * K)].Fill(double.NaN);
+            return;
+        }
+
+        if (!idle.TryTake(out var work)) work = new StripWork(plan);
+        work.Begin(parameters);
+        work.Scores(block, scores);
+        idle.Add(work);
     }
 
     public double[] LogProbabilities(ReadOnlySpan<double> parameters)
@@ -88,17 +102,20 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood
         return log;
     }
 
-    public double[] PersonInformation(ReadOnlySpan<double> parameters)
+    public double[] PersonInformation(ReadOnlySpan<double> parameters) => PersonInformation(parameters, 0, Design.Persons);
+
+    public double[] PersonInformation(ReadOnlySpan<double> parameters, int firstPerson, int endPerson)
     {
-        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Persons * K * K);
-        var information = new double[Design.Persons * K * K];
-        Run(Design.Persons, parameters, (work, _, first, end) =>
+        var persons = endPerson - firstPerson;
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(persons * K * K);
+        var information = new double[persons * K * K];
+        Run(persons, parameters, (work, _, first, end) =>
         {
-            for (var person = first; person < end; person++)
+            for (var p = first; p < end; p++)
             {
-                var from = Design.PersonStart[person];
+                var from = Design.PersonStart[firstPerson + p];
                 work.AddInformation(
-                    Design.Blocks[Design.BlockOf[from]], from, Design.PersonStart[person + 1], information.AsSpan(person * K * K, K * K));
+                    Design.Blocks[Design.BlockOf[from]], from, Design.PersonStart[firstPerson + p + 1], information.AsSpan(p * K * K, K * K));
             }
         });
         return information;

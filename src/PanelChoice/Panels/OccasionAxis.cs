@@ -1,5 +1,4 @@
 using System.Collections.Immutable;
-using PanelChoice.Data;
 using PanelChoice.Study;
 
 namespace PanelChoice.Panels;

@@ -110,12 +110,14 @@ public class AnalyticCovarianceTests
         var (model, refitter) = NewtonRefitter.Fit(design, design.PlainStart());
         var input = InferenceInput.From(model, refitter);
         var f = input.Free.Length;
-        var parts = input.ClusterInformation();
+        var parts = input.ClusterInformation(0, 7);
         for (var i = 0; i < f * f; i++)
         {
             var sum = Enumerable.Range(0, 7).Sum(g => parts[(g * f * f) + i]);
             Assert.InRange(Math.Abs(sum - input.Information[i]), 0, 1e-10 * Math.Max(1, Math.Abs(sum)));
         }
+
+        Assert.Equal(parts.AsEnumerable(), [.. input.ClusterInformation(0, 3), .. input.ClusterInformation(3, 1), .. input.ClusterInformation(4, 3)]);
     }
 
     [Fact]
@@ -230,10 +232,10 @@ public class AnalyticCovarianceTests
     public void Everything_fixed_is_said_and_lengths_that_do_not_fit_are_a_mistake_of_the_caller()
     {
         var input = new LinearToy(7, 5, _ => 3).Input();
-        var none = StandardErrors.Compute(input with { Free = [], Nulls = [], Scores = [], Information = [] }, Settings(), WorkContext.Quiet);
+        var none = StandardErrors.Compute(input with { Free = [], Nulls = [], Information = [] }, Settings(), WorkContext.Quiet);
         Assert.All(none.Covariances.Values, c => Assert.Contains("fixed", c.Refusal, StringComparison.Ordinal));
         Assert.Empty(none.Parameters);
-        Assert.Throws<ArgumentException>(() => StandardErrors.Compute(input with { Scores = [] }, Settings(), WorkContext.Quiet));
+        Assert.Throws<ArgumentException>(() => StandardErrors.Compute(input with { Scores = _ => new ScoreSums([], []) }, Settings(), WorkContext.Quiet));
     }
 
     private static void Same(Matrix<double> expected, CovarianceEstimate actual, double tolerance = 1e-10)

@@ -181,13 +181,13 @@ public class ClusterJackknifeTests
     public void A_one_step_without_enough_information_left_is_refused_and_names_person_and_term()
     {
         var input = new LinearToy(28, 6, _ => 3).Input();
-        var parts = input.ClusterInformation().ToArray();
+        var parts = input.ClusterInformation(0, 6).ToArray();
         // Person 3 holds all the information on x2.
         for (var g = 0; g < 6; g++)
             for (var i = 0; i < 3; i++) parts[(g * 9) + 6 + i] = parts[(g * 9) + (i * 3) + 2] = g == 2 && i == 2 ? 10 : 0;
         var whole = Enumerable.Range(0, 9).Select(i => Enumerable.Range(0, 6).Sum(g => parts[(g * 9) + i]));
         var result = StandardErrors.Compute(
-            input with { Information = [.. whole], ClusterInformation = () => [.. parts] }, Settings(JackknifeKind.OneStep), WorkContext.Quiet);
+            input with { Information = [.. whole], ClusterInformation = (_, _) => [.. parts] }, Settings(JackknifeKind.OneStep), WorkContext.Quiet);
         Assert.Contains("without person 3 ", result.Covariances[CovarianceKind.Jackknife].Refusal, StringComparison.Ordinal);
         Assert.Contains("'x2'", result.Covariances[CovarianceKind.Jackknife].Refusal, StringComparison.Ordinal);
         Assert.Equal(1, result.Jackknife!.Failures);

@@ -47,9 +47,11 @@ internal sealed class LinearToy : IRefitter
         return new InferenceInput(
             [.. b], [.. Enumerable.Range(0, f).Select(k => $"x{k}")], [.. Enumerable.Repeat(ParameterKind.Coefficient, f)],
             [.. Enumerable.Range(0, f)], [.. Enumerable.Repeat(new NullValue(0, null, null), f)], ContributionKind.Occasion,
-            [.. Enumerable.Range(0, Y.Count).SelectMany(i => Enumerable.Range(0, f).Select(k => X[i, k] * e[i]))],
-            ClusterOf, [.. (X.Transpose() * X).ToRowMajorArray()],
-            () => [.. Enumerable.Range(0, Clusters).SelectMany(g => (Rows(g).Transpose() * Rows(g)).ToRowMajorArray())],
+            Y.Count,
+            threads => ScoreSums.Of(
+                Enumerable.Range(0, Y.Count).SelectMany(i => Enumerable.Range(0, f).Select(k => X[i, k] * e[i])).ToArray(), ClusterOf, Clusters, threads),
+            [.. (X.Transpose() * X).ToRowMajorArray()],
+            (first, count) => [.. Enumerable.Range(first, count).SelectMany(g => (Rows(g).Transpose() * Rows(g)).ToRowMajorArray())],
             "person", [.. Enumerable.Range(1, Clusters).Select(g => $"{g}")],
             [.. Enumerable.Range(0, Clusters).Select(g => ClusterOf.Count(c => c == g))], false, 1, null, this);
     }

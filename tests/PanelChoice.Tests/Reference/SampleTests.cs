@@ -26,7 +26,7 @@ public class SampleTests
         {
             var count = counts.GetProperty(sample.Design.Tree.Alternatives[j]);
             Assert.Equal(count.GetProperty("available").GetInt32(), Enumerable.Range(0, expected.Occasions).Count(s => sample.Design.IsOffered(s, j)));
-            Assert.Equal(count.GetProperty("chosen").GetInt32(), sample.Design.Chosen.Count(c => c == j));
+            Assert.Equal(count.GetProperty("chosen").GetInt32(), Enumerable.Range(0, expected.Occasions).Count(s => sample.Design.ChosenAt(s) == j));
         }
     }
 
@@ -46,7 +46,7 @@ public class SampleTests
                 {
                     if (!design.IsOffered(s, column.Alternative)) continue;
                     offered += design.Value(s, column);
-                    if (design.Chosen[s] == column.Alternative) chosen += design.Value(s, column);
+                    if (design.ChosenAt(s) == column.Alternative) chosen += design.Value(s, column);
                 }
 
             agreement.Compare($"{parameter} over offered rows", Sum(sums[parameter], "sum_available_rows"), offered);

@@ -11,6 +11,12 @@ internal static class DesignCells
         return reader.IsOffered(situation - reader.Block!.FirstSituation, alternative);
     }
 
+    public static int ChosenAt(this ChoiceDesign design, int situation)
+    {
+        var reader = ReaderAt(design, situation);
+        return reader.ChosenAt(situation - reader.Block!.FirstSituation);
+    }
+
     public static double Value(this ChoiceDesign design, int situation, DesignColumn column)
     {
         var reader = ReaderAt(design, situation);
