@@ -1,4 +1,6 @@
 using System.CommandLine;
+using PanelChoice.Design;
+using PanelChoice.Likelihood;
 
 namespace PanelChoice.Benchmarks;
 
@@ -10,6 +12,8 @@ internal static class BenchmarkCommand
 
     private const int Usage = 64;
 
+    private static readonly string[] Cases = ["S", "M", "L"];
+
     /// <summary>Rows that are measured case by case.</summary>
     private static readonly (string Name, Action<CaseAtWork> Measure)[] ByCase =
     [
@@ -18,40 +22,59 @@ internal static class BenchmarkCommand
         ("threads", LikelihoodRows.Threads),
     ];
 
-    private static readonly string[] Others = ["elementary"];
+    /// <summary>Rows that have a case of their own.</summary>
+    private static readonly (string Name, Action<string[]> Measure)[] Others =
+    [
+        ("whole", _ => WholeRunRows.Run(CommuteShape.Medium)), ("loading", _ => LoadingRows.Run(CommuteShape.Medium)), ("growth", _ => GrowthRows.Run()),
+        ("narrow", NarrowRows.Run),
+    ];
+
+    private static readonly string[] Rows = ["elementary", .. ByCase.Select(r => r.Name), .. Others.Select(r => r.Name)];
 
     /// <summary>Parses and measures.</summary>
     public static int Run(string[] args)
     {
-        var cases = Words("--case", "Cases: S, M, L; all of them when left out.", ["S", "M", "L"]);
-        var rows = Words("--rows", "Rows of the table; all of them when left out.", [.. Others, .. ByCase.Select(r => r.Name)]);
+        var cases = Words("--case", "Cases; all when left out", Cases);
+        var rows = Words("--rows", "Rows of the table; all when left out", Rows);
         var root = new RootCommand("Measures the speed of PanelChoice as ratios of things timed side by side in one run.") { cases, rows };
         root.SetAction(r => Measure(r.GetRequiredValue(cases), r.GetRequiredValue(rows)));
+        root.Add(InProcessOfItsOwn<string>("load", "a study file", LoadingRows.Load));
+        root.Add(InProcessOfItsOwn<int>("size", "situations", GrowthRows.Size));
         var parsed = root.Parse(args);
         if (parsed.Errors.Count == 0) return parsed.Invoke(new InvocationConfiguration { EnableDefaultExceptionHandler = false });
         foreach (var error in parsed.Errors) Console.Error.WriteLine(error.Message);
         return Usage;
     }
 
-    private static Option<string[]> Words(string name, string description, string[] all)
+    private static Option<string[]> Words(string name, string description, string[] all) => new(name)
     {
-        var option = new Option<string[]>(name)
+        Description = $"{description}. Several are divided by commas: {string.Join(",", all)}",
+        DefaultValueFactory = _ => all,
+        CustomParser = result =>
         {
-            Description = $"{description} Several are divided by commas: {string.Join(",", all)}",
-            DefaultValueFactory = _ => all,
-            CustomParser = result =>
-            {
-                var words = result.Tokens.SelectMany(t => t.Value.Split(',')).ToArray();
-                foreach (var word in words.Except(all)) result.AddError($"{name} knows {string.Join(", ", all)}, not '{word}'.");
-                return words;
-            },
-        };
-        return option;
+            var words = result.Tokens.SelectMany(t => t.Value.Split(',')).ToArray();
+            foreach (var word in words.Except(all)) result.AddError($"{name} knows {string.Join(", ", all)}, not '{word}'.");
+            return words;
+        },
+    };
+
+    /// <summary>A measurement that the program starts itself in for, because time and memory must be its alone.</summary>
+    private static Command InProcessOfItsOwn<T>(string name, string of, Action<T> measure)
+    {
+        var argument = new Argument<T>("of") { Description = of };
+        var command = new Command(name) { argument };
+        command.Hidden = true;
+        command.SetAction(r =>
+        {
+            measure(r.GetRequiredValue(argument));
+            return 0;
+        });
+        return command;
     }
 
     private static int Measure(string[] cases, string[] rows)
     {
-        Console.WriteLine($"Kernel {KernelName()}; {Environment.ProcessorCount} processors; {ThreadClock.Name} unless a row says otherwise");
+        Console.WriteLine($"Kernel {KernelName()}; {Environment.ProcessorCount} processors; {ThreadClock.Name} unless a row says otherwise; times are minima");
         RatioTable.Heading();
         if (rows.Contains("elementary")) ElementaryRows.Run();
         foreach (var name in cases)
@@ -60,20 +83,39 @@ internal static class BenchmarkCommand
                 var wanted = ByCase.Where(r => rows.Contains(r.Name) && Belongs(r.Name, name, isRounded)).ToArray();
                 if (wanted.Length == 0) continue;
                 var work = new CaseAtWork(CommuteCase.Make(CommuteShape.Of(name), isRounded));
+                Tell(work);
                 foreach (var row in wanted) row.Measure(work);
             }
 
+        foreach (var (name, measure) in Others)
+            if (rows.Contains(name)) measure(cases);
         return Agreement.IsBroken ? Wrong : 0;
     }
 
-    /// <summary>Which rows a case is measured for: the replicates only where a goal is set, threads where there is enough for two.</summary>
+    /// <summary>Which rows a case is measured for: replicates only where a goal is set, threads where there is enough for two.</summary>
     private static bool Belongs(string row, string name, bool isRounded) => row switch
     {
         "bootstrap" => name is "S" or "M",
         "jackknife" => name == "S" && isRounded,
-        "threads" => name != "S",
+        "threads" => name == "M",
         _ => true,
     };
 
-    private static string KernelName() => new CaseAtWork(CommuteCase.Make(CommuteShape.Small, isRounded: true)).Likelihood.Kernel;
+    private static void Tell(CaseAtWork work)
+    {
+        var shape = work.Made.Shape;
+        var codings = work.Design.Store.Format.Columns.GroupBy(c => c.Coding).OrderBy(g => g.Key);
+        RatioTable.Remark(
+            $"{work.Label}: {shape.Persons:#,0} persons x {shape.Occasions} occasions, {shape.Alternatives} alternatives, {work.Design.Layout.Count} parameters; "
+            + $"{work.Design.Store.Bytes / 1e6:#,0.0} MB in columns of {string.Join(", ", codings.Select(g => $"{Word(g.Key)} ({g.Count()})"))}");
+    }
+
+    private static string Word(ColumnCoding coding) => coding switch
+    {
+        ColumnCoding.Whole16 => "16-bit integers",
+        ColumnCoding.Whole32 => "32-bit integers",
+        _ => "doubles",
+    };
+
+    private static string KernelName() => new VectorNestedLogit(CommuteCase.Make(CommuteShape.Small, isRounded: true).Design(), CommuteCase.Form, 1).Kernel;
 }

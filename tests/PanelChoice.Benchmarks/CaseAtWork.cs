@@ -40,6 +40,9 @@ internal sealed class CaseAtWork
     public LikelihoodEvaluation GradientPass() => Likelihood.Evaluate(Theta, PersonWeight, Derivatives.Gradient);
 
     /// <summary>A fit that knows nothing beforehand, from one start.</summary>
-    public FittedModel ColdFit() => MaximumLikelihood.Fit(
-        Likelihood, CommuteCase.Form, new EstimateSettings(CommuteCase.Form, Starts: 1, Seed: 7), WorkContext.Quiet);
+    public FittedModel ColdFit() => ColdFit(Likelihood);
+
+    /// <summary>The same fit by another likelihood of the design.</summary>
+    public static FittedModel ColdFit(IChoiceLikelihood likelihood) => MaximumLikelihood.Fit(
+        likelihood, CommuteCase.Form, new EstimateSettings(CommuteCase.Form, Starts: 1, Seed: 7), WorkContext.Quiet);
 }

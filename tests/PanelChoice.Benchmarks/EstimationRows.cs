@@ -24,6 +24,7 @@ internal static class EstimationRows
         RatioTable.Row(
             "4", "cold fit, one start / gradient pass", work.Label, times[1], times[0], work.Made.Shape.Name == "S" ? Goal.AtMost(55) : Goal.AtMost(22));
         RatioTable.Remark($"{fitted.Status}, log-likelihood {fitted.LogLikelihood:F6}, Newton decrement {decrement:E1}");
+        WhereItGoes(work, times[0].Min());
         Agreement.Holds(fitted.Status == FitStatus.Converged && decrement < 1e-9, $"{work.Label}: the fit ended as {fitted.Status} with decrement {decrement:E1}");
     }
 
@@ -73,6 +74,17 @@ internal static class EstimationRows
             () => summary = ClusterJackknife.Estimate(input, sums, JackknifeKind.Refit, WorkContext.Quiet).Summary);
         RatioTable.Row("7", $"jackknife over {work.Design.Clusters.Length} persons, full refits / gradient pass", work.Label, times[1], times[0], Goal.AtMost(6000));
         Agreement.Holds(summary!.Failures == 0, $"{work.Label}: {summary.Failures} refits of the jackknife failed");
+    }
+
+    /// <summary>The parts of one fit, in gradient passes.</summary>
+    private static void WhereItGoes(CaseAtWork work, double pass)
+    {
+        var watched = new WatchedLikelihood(work.Likelihood);
+        var from = ThreadClock.Seconds();
+        CaseAtWork.ColdFit(watched);
+        var all = ThreadClock.Seconds() - from;
+        var parts = watched.Asked.Select(a => $"{a.Value.Calls} x {a.Key} {a.Value.Seconds / pass:F1}");
+        RatioTable.Remark($"in gradient passes: {string.Join(", ", parts)}, all else {(all - watched.Asked.Values.Sum(a => a.Seconds)) / pass:F1}");
     }
 
     /// <summary>How far replicates end from their optimum, in standard errors: the Newton decrement, evaluated anew.</summary>

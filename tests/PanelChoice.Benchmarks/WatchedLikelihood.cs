@@ -1,0 +1,55 @@
+using PanelChoice.Design;
+using PanelChoice.Likelihood;
+
+namespace PanelChoice.Benchmarks;
+
+/// <summary>A likelihood that writes down what it was asked and how long that took, so that a fit can be told apart into its passes.</summary>
+internal sealed class WatchedLikelihood(IChoiceLikelihood watched) : IChoiceLikelihood
+{
+    private readonly SortedDictionary<string, (int Calls, double Seconds)> asked = new(StringComparer.Ordinal);
+
+    public ChoiceDesign Design => watched.Design;
+
+    public string Kernel => watched.Kernel;
+
+    /// <summary>What was asked, how often, and the seconds it took.</summary>
+    public IReadOnlyDictionary<string, (int Calls, double Seconds)> Asked => asked;
+
+    public LikelihoodEvaluation Evaluate(ReadOnlySpan<double> parameters, ReadOnlySpan<double> personWeight, Derivatives derivatives)
+    {
+        var from = ThreadClock.Seconds();
+        var at = watched.Evaluate(parameters, personWeight, derivatives);
+        WriteDown($"{derivatives} on {(personWeight.Contains(0) ? "the thinned sample" : "all data")}", from);
+        return at;
+    }
+
+    public double[] Scores(ReadOnlySpan<double> parameters)
+    {
+        var from = ThreadClock.Seconds();
+        var scores = watched.Scores(parameters);
+        WriteDown("scores", from);
+        return scores;
+    }
+
+    public double[] LogProbabilities(ReadOnlySpan<double> parameters)
+    {
+        var from = ThreadClock.Seconds();
+        var log = watched.LogProbabilities(parameters);
+        WriteDown("log P", from);
+        return log;
+    }
+
+    public double[] PersonInformation(ReadOnlySpan<double> parameters)
+    {
+        var from = ThreadClock.Seconds();
+        var information = watched.PersonInformation(parameters);
+        WriteDown("information by person", from);
+        return information;
+    }
+
+    private void WriteDown(string what, double from)
+    {
+        var before = asked.GetValueOrDefault(what);
+        asked[what] = (before.Calls + 1, before.Seconds + ThreadClock.Seconds() - from);
+    }
+}
