@@ -22,10 +22,10 @@ internal static class BenchmarkCommand
         ("threads", LikelihoodRows.Threads),
     ];
 
-    /// <summary>Rows that have a case of their own.</summary>
+    /// <summary>Rows that are measured once.</summary>
     private static readonly (string Name, Action<string[]> Measure)[] Others =
     [
-        ("whole", _ => WholeRunRows.Run(CommuteShape.Medium)), ("loading", _ => LoadingRows.Run(CommuteShape.Medium)), ("growth", _ => GrowthRows.Run()),
+        ("whole", cases => WholeRunRows.Run(OneOf(cases))), ("loading", cases => LoadingRows.Run(OneOf(cases))), ("growth", _ => GrowthRows.Run()),
         ("narrow", NarrowRows.Run),
     ];
 
@@ -100,6 +100,9 @@ internal static class BenchmarkCommand
         "threads" => name == "M",
         _ => true,
     };
+
+    /// <summary>The case of rows that are measured for one: M, unless it was not asked for.</summary>
+    private static CommuteShape OneOf(string[] cases) => CommuteShape.Of(cases.Contains("M") ? "M" : cases[^1]);
 
     private static void Tell(CaseAtWork work)
     {

@@ -24,7 +24,7 @@ internal enum GoalSign
 /// <summary>The table of ratios, printed row by row as they are measured. A missed goal is a word in a row and nothing more.</summary>
 internal static class RatioTable
 {
-    private const string Line = "{0,-4}{1,-70}{2,-9}{3,11}{4,11}{5,10}{6,10}{7,10}  {8}";
+    private const string Line = "{0,-4}{1,-76}{2,-9}{3,11}{4,11}{5,10}{6,10}{7,10}  {8}";
 
     /// <summary>Prints the heading.</summary>
     public static void Heading()
