@@ -1,6 +1,7 @@
 using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
+using System.Runtime.Intrinsics.X86;
 
 namespace PanelChoice.Design;
 
@@ -36,10 +37,7 @@ internal static class ColumnUnfolding
     {
         ref var first = ref MemoryMarshal.GetReference(to);
         for (nuint lane = 0; lane < (nuint)to.Length; lane += Tile)
-        {
-            var (low, high) = Vector128.Widen(Vector128.LoadUnsafe(ref from, lane));
-            Doubles(Vector256.Create(low, high)).StoreUnsafe(ref first, lane);
-        }
+            Doubles(Whole32(Vector128.LoadUnsafe(ref from, lane))).StoreUnsafe(ref first, lane);
     }
 
     private static void Unfold(ref int from, Span<double> to)
@@ -49,8 +47,17 @@ internal static class ColumnUnfolding
     }
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    private static Vector256<int> Whole32(Vector128<short> whole)
+    {
+        if (Avx2.IsSupported) return Avx2.ConvertToVector256Int32(whole);
+        var (low, high) = Vector128.Widen(whole);
+        return Vector256.Create(low, high);
+    }
+
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
     private static Vector512<double> Doubles(Vector256<int> whole)
     {
+        if (Avx512F.IsSupported) return Avx512F.ConvertToVector512Double(whole);
         var (low, high) = Vector256.Widen(whole);
         return Vector512.ConvertToDouble(Vector512.Create(low, high));
     }

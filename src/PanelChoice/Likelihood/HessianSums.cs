@@ -29,9 +29,9 @@ internal sealed class HessianSums(int parameters)
     /// <param name="left">First left row; rows up to a multiple of 4 are read, what is in the surplus does not matter.</param>
     /// <param name="leftStride">Distance between left rows.</param>
     /// <param name="right">First right row.</param>
-    /// <param name="rightStride">Distance between right rows.</param>
+    /// <param name="places">Distance of each right row from the first.</param>
     /// <param name="lanes">Lanes of the strip.</param>
-    public void AddProducts(HessianPanel panel, ref double left, int leftStride, ref double right, int rightStride, int lanes)
+    public void AddProducts(HessianPanel panel, ref double left, int leftStride, ref double right, ReadOnlySpan<nuint> places, int lanes)
     {
         foreach (var (row, column) in panel.Blocks)
         {
@@ -41,8 +41,8 @@ internal sealed class HessianSums(int parameters)
             var l1 = l0 + (nuint)leftStride;
             var l2 = l1 + (nuint)leftStride;
             var l3 = l2 + (nuint)leftStride;
-            var r0 = (nuint)(column * rightStride);
-            var r1 = hasTwin ? r0 + (nuint)rightStride : r0;
+            var r0 = places[column];
+            var r1 = hasTwin ? places[column + 1] : r0;
             var s00 = Vector512<double>.Zero;
             var s01 = Vector512<double>.Zero;
             var s10 = Vector512<double>.Zero;

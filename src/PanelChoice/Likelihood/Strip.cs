@@ -130,13 +130,12 @@ internal sealed class Strip
         MemoryMarshal.CreateSpan(ref value, Lanes).Fill(constant);
 
         var i = 0;
-        ref var x0 = ref Columns.First(leaf);
-        var stride = Columns.StrideOf(leaf);
-        for (; i + 4 <= leaf.Stored.Length; i += 4, x0 = ref Unsafe.Add(ref x0, 4 * stride))
+        for (; i + 4 <= leaf.Stored.Length; i += 4)
         {
-            ref var x1 = ref Unsafe.Add(ref x0, stride);
-            ref var x2 = ref Unsafe.Add(ref x1, stride);
-            ref var x3 = ref Unsafe.Add(ref x2, stride);
+            ref var x0 = ref Columns.Column(leaf.FirstStored + i);
+            ref var x1 = ref Columns.Column(leaf.FirstStored + i + 1);
+            ref var x2 = ref Columns.Column(leaf.FirstStored + i + 2);
+            ref var x3 = ref Columns.Column(leaf.FirstStored + i + 3);
             var b0 = Vector512.Create(Theta[leaf.Stored[i]]);
             var b1 = Vector512.Create(Theta[leaf.Stored[i + 1]]);
             var b2 = Vector512.Create(Theta[leaf.Stored[i + 2]]);
@@ -151,11 +150,12 @@ internal sealed class Strip
             }
         }
 
-        for (; i < leaf.Stored.Length; i++, x0 = ref Unsafe.Add(ref x0, stride))
+        for (; i < leaf.Stored.Length; i++)
         {
+            ref var x = ref Columns.Column(leaf.FirstStored + i);
             var b = Vector512.Create(Theta[leaf.Stored[i]]);
             for (nuint lane = 0; lane < (nuint)Lanes; lane += Tile)
-                Vector512.FusedMultiplyAdd(b, Vector512.LoadUnsafe(ref x0, lane), Vector512.LoadUnsafe(ref value, lane)).StoreUnsafe(ref value, lane);
+                Vector512.FusedMultiplyAdd(b, Vector512.LoadUnsafe(ref x, lane), Vector512.LoadUnsafe(ref value, lane)).StoreUnsafe(ref value, lane);
         }
     }
 

@@ -4,8 +4,8 @@ using PanelChoice.Design;
 namespace PanelChoice.Likelihood;
 
 /// <summary>
-/// The columns of a strip as doubles. An alternative whose columns are all held as doubles is read where it stands; where one of them is held
-/// as whole numbers, all its columns are unfolded into rows of the strip, in the units in which they are held (<see cref="StripPlan.Units"/>).
+/// The columns of a strip as doubles, in the units in which they are held (<see cref="StripPlan.Units"/>). A column held as doubles is read
+/// where it stands: copying it would cost as much as all that is done with it. One held as whole numbers is unfolded into a row of the strip.
 /// </summary>
 internal sealed class StripColumns
 {
@@ -13,6 +13,7 @@ internal sealed class StripColumns
     private readonly StripPlan plan;
     private readonly BlockReader reader;
     private readonly StripRows unfolded;
+    private readonly int[] rowOf;
     private int firstLane;
     private int lanes;
 
@@ -21,7 +22,9 @@ internal sealed class StripColumns
     {
         this.plan = plan;
         reader = plan.Design.Store.Reader();
-        unfolded = new StripRows(plan.UnfoldedRows, plan.StripLanes);
+        var rows = 0;
+        rowOf = [.. plan.Design.Store.Format.Columns.Select(c => c.Coding == ColumnCoding.AsIs ? -1 : rows++)];
+        unfolded = new StripRows(rows, plan.StripLanes);
     }
 
     /// <summary>Availability masks of the strip, tile by tile.</summary>
@@ -41,21 +44,14 @@ internal sealed class StripColumns
     /// <summary>Makes an alternative's columns ready to be read.</summary>
     public void Prepare(LeafColumns leaf)
     {
-        if (leaf.FirstUnfolded < 0) return;
         var columns = plan.Design.Store.Format.Columns;
-        for (var i = 0; i < leaf.Stored.Length; i++)
-        {
-            var column = leaf.FirstStored + i;
-            ColumnUnfolding.Unfold(reader, column, columns[column], firstLane, unfolded.Lanes(leaf.FirstUnfolded + i, lanes));
-        }
+        for (var column = leaf.FirstStored; column < leaf.FirstStored + leaf.Stored.Length; column++)
+            if (rowOf[column] >= 0) ColumnUnfolding.Unfold(reader, column, columns[column], firstLane, unfolded.Lanes(rowOf[column], lanes));
     }
 
-    /// <summary>The strip's lanes of an alternative's first column.</summary>
+    /// <summary>The strip's lanes of a stored column. Columns do not move: their distances from each other stay the same while the strip is open.</summary>
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public ref double First(LeafColumns leaf) => ref leaf.FirstUnfolded < 0 ? ref InPlace(leaf.FirstStored) : ref unfolded.Row(leaf.FirstUnfolded);
-
-    /// <summary>Distance from one column of an alternative to the next.</summary>
-    public nuint StrideOf(LeafColumns leaf) => (nuint)(leaf.FirstUnfolded < 0 ? reader.Block!.Lanes : unfolded.Stride);
-
-    private ref double InPlace(int column) => ref Unsafe.Add(ref Unsafe.As<byte, double>(ref reader.Column(column)), firstLane);
+    public ref double Column(int stored) => ref rowOf[stored] >= 0
+        ? ref unfolded.Row(rowOf[stored])
+        : ref Unsafe.Add(ref Unsafe.As<byte, double>(ref reader.Column(stored)), firstLane);
 }

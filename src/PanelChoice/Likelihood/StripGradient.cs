@@ -54,13 +54,8 @@ internal sealed class StripGradient
         {
             ref var slope = ref strip.Slope(j);
             var leaf = plan.Leaves[j];
-            ref var column = ref strip.Columns.First(leaf);
-            foreach (var k in leaf.Stored)
-            {
-                AddLanes(ref slope, ref column, 1 / plan.Units[k], scores, k, count);
-                column = ref Unsafe.Add(ref column, strip.Columns.StrideOf(leaf));
-            }
-
+            for (var i = 0; i < leaf.Stored.Length; i++)
+                AddLanes(ref slope, ref strip.Columns.Column(leaf.FirstStored + i), 1 / plan.Units[leaf.Stored[i]], scores, leaf.Stored[i], count);
             foreach (var k in leaf.Constants)
                 for (var lane = 0; lane < count; lane++) scores[(lane * plan.K) + k] += Unsafe.Add(ref slope, lane);
         }
@@ -89,13 +84,12 @@ internal sealed class StripGradient
     private void AddColumns(LeafColumns leaf, ref double slope)
     {
         var i = 0;
-        ref var x0 = ref strip.Columns.First(leaf);
-        var stride = strip.Columns.StrideOf(leaf);
-        for (; i + 4 <= leaf.Stored.Length; i += 4, x0 = ref Unsafe.Add(ref x0, 4 * stride))
+        for (; i + 4 <= leaf.Stored.Length; i += 4)
         {
-            ref var x1 = ref Unsafe.Add(ref x0, stride);
-            ref var x2 = ref Unsafe.Add(ref x1, stride);
-            ref var x3 = ref Unsafe.Add(ref x2, stride);
+            ref var x0 = ref strip.Columns.Column(leaf.FirstStored + i);
+            ref var x1 = ref strip.Columns.Column(leaf.FirstStored + i + 1);
+            ref var x2 = ref strip.Columns.Column(leaf.FirstStored + i + 2);
+            ref var x3 = ref strip.Columns.Column(leaf.FirstStored + i + 3);
             var s0 = Vector512<double>.Zero;
             var s1 = Vector512<double>.Zero;
             var s2 = Vector512<double>.Zero;
@@ -115,7 +109,7 @@ internal sealed class StripGradient
             sums[leaf.Stored[i + 3]] += s3;
         }
 
-        for (; i < leaf.Stored.Length; i++, x0 = ref Unsafe.Add(ref x0, stride)) sums[leaf.Stored[i]] += Dot(ref slope, ref x0);
+        for (; i < leaf.Stored.Length; i++) sums[leaf.Stored[i]] += Dot(ref slope, ref strip.Columns.Column(leaf.FirstStored + i));
         if (leaf.Constants.Length == 0) return;
         var sum = Vector512<double>.Zero;
         foreach (var a in MemoryMarshal.Cast<double, Vector512<double>>(MemoryMarshal.CreateReadOnlySpan(ref slope, strip.Lanes))) sum += a;

@@ -34,6 +34,10 @@ internal sealed class StripHessian
     private readonly int[][] rowInParent;
     private readonly double[] chi;
 
+    /// <summary>Distances of the rows of one node's inner derivatives, and of one alternative's columns, from the first of them.</summary>
+    private readonly nuint[] innerPlaces;
+    private readonly nuint[] places;
+
     /// <summary>Sums over strips of the plan's design.</summary>
     public StripHessian(StripPlan plan, Strip strip, StripProbabilities probabilities)
     {
@@ -59,6 +63,8 @@ internal sealed class StripHessian
         inner = new StripRows(firstInner[^1], plan.StripLanes);
         left = new StripRows(panels.Max(p => p.LeftRows) + HessianPanel.BlockRows, plan.StripLanes);
         chi = new double[plan.StripLanes];
+        innerPlaces = [.. Enumerable.Range(0, plan.K).Select(i => (nuint)(i * inner.Stride))];
+        places = new nuint[plan.K];
     }
 
     /// <summary>Adds the strip.</summary>
@@ -166,11 +172,9 @@ internal sealed class StripHessian
         var ofFlow = Vector512.Create(FlowScale(n));
         ref var flow = ref strip.Flow(n);
         ref var p = ref strip.Conditional(j);
-        ref var first = ref strip.Columns.First(leaf);
-        var stride = strip.Columns.StrideOf(leaf);
         for (var i = 0; i < leaf.Stored.Length; i++)
         {
-            ref var x = ref Unsafe.Add(ref first, (nuint)i * stride);
+            ref var x = ref strip.Columns.Column(leaf.FirstStored + i);
             ref var weighted = ref left.Row(i);
             ref var z = ref inner.Row(firstInner[n] + rowInParent[j][i]);
             for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
@@ -204,8 +208,11 @@ internal sealed class StripHessian
             foreach (var k in leaf.Constants) sums.Add(sums.CrossSlot(panel.Cross, k), sum);
         }
 
-        if (leaf.Stored.Length > 0)
-            sums.AddProducts(panel, ref left.Row(0), left.Stride, ref first, (int)stride, strip.Lanes);
+        if (leaf.Stored.Length == 0) return;
+        ref var first = ref strip.Columns.Column(leaf.FirstStored);
+        for (var i = 0; i < leaf.Stored.Length; i++)
+            places[i] = (nuint)(Unsafe.ByteOffset(ref first, ref strip.Columns.Column(leaf.FirstStored + i)) / sizeof(double));
+        sums.AddProducts(panel, ref left.Row(0), left.Stride, ref first, places, strip.Lanes);
     }
 
     private void AddNode(int n, int c)
@@ -243,7 +250,7 @@ internal sealed class StripHessian
         }
 
         if (panel.RightRows > 0)
-            sums.AddProducts(panel, ref left.Row(0), left.Stride, ref inner.Row(firstInner[m]), inner.Stride, strip.Lanes);
+            sums.AddProducts(panel, ref left.Row(0), left.Stride, ref inner.Row(firstInner[m]), innerPlaces, strip.Lanes);
     }
 
     /// <summary>The part D_m e_m of y_m: into z of the node above, and its cross term with that node's l.</summary>
@@ -279,7 +286,7 @@ internal sealed class StripHessian
                 (ofFlow * Vector512.LoadUnsafe(ref flow, lane) * Vector512.LoadUnsafe(ref from, lane)).StoreUnsafe(ref weighted, lane);
         }
 
-        sums.AddProducts(panel, ref left.Row(0), left.Stride, ref inner.Row(firstInner[plan.Root]), inner.Stride, strip.Lanes);
+        sums.AddProducts(panel, ref left.Row(0), left.Stride, ref inner.Row(firstInner[plan.Root]), innerPlaces, strip.Lanes);
     }
 
     private Vector512<double> SumOf(ref double row)

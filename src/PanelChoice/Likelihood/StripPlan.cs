@@ -7,8 +7,7 @@ namespace PanelChoice.Likelihood;
 /// <param name="FirstStored">First stored column.</param>
 /// <param name="Stored">Parameter of each stored column.</param>
 /// <param name="Constants">Parameters whose covariate is the constant 1.</param>
-/// <param name="FirstUnfolded">First row that its columns are unfolded into; -1 where all are held as doubles and read where they stand.</param>
-internal sealed record LeafColumns(int FirstStored, int[] Stored, int[] Constants, int FirstUnfolded);
+internal sealed record LeafColumns(int FirstStored, int[] Stored, int[] Constants);
 
 /// <summary>
 /// What the vector kernel works out once for a design: the tree and the columns as plain arrays, and how many situations make a strip.
@@ -36,13 +35,7 @@ internal sealed class StripPlan
         for (var n = 0; n < Nodes; n++)
             foreach (var c in Children[n]) Parent[c] = n;
 
-        Leaves = new LeafColumns[J];
-        for (var j = 0; j < J; j++)
-        {
-            Leaves[j] = ColumnsOf(design, j, UnfoldedRows);
-            if (Leaves[j].FirstUnfolded >= 0) UnfoldedRows += Leaves[j].Stored.Length;
-        }
-
+        Leaves = [.. Enumerable.Range(0, J).Select(j => ColumnsOf(design, j))];
         Units = [.. Enumerable.Repeat(1.0, K)];
         foreach (var column in design.Columns)
             if (column.Storage >= 0) Units[column.Parameter] = design.Store.Format.Columns[column.Storage].Units;
@@ -84,9 +77,6 @@ internal sealed class StripPlan
     /// <summary>Columns of each alternative.</summary>
     public LeafColumns[] Leaves { get; }
 
-    /// <summary>Rows into which columns are unfolded.</summary>
-    public int UnfoldedRows { get; }
-
     /// <summary>
     /// For each parameter how many units one of its covariates' own makes as its columns are held: 100 for hours held as hundredths of an hour.
     /// The kernel works in held units: its coefficient is the user's divided by this, and so are its derivatives afterwards.
@@ -102,7 +92,7 @@ internal sealed class StripPlan
     /// <summary>Most lanes in a strip.</summary>
     public int StripLanes { get; }
 
-    private static LeafColumns ColumnsOf(ChoiceDesign design, int alternative, int nextUnfolded)
+    private static LeafColumns ColumnsOf(ChoiceDesign design, int alternative)
     {
         var columns = design.Columns.Where(c => c.Alternative == alternative).ToList();
         var stored = columns.Where(c => c.Storage >= 0).ToList();
@@ -110,9 +100,8 @@ internal sealed class StripPlan
         for (var i = 0; i < stored.Count; i++)
             if (stored[i].Storage != first + i)
                 throw new ArgumentException("The stored columns of an alternative do not follow each other.", nameof(design));
-        var isCoded = stored.Any(c => design.Store.Format.Columns[c.Storage].Coding != ColumnCoding.AsIs);
         return new LeafColumns(
-            first, [.. stored.Select(c => c.Parameter)], [.. columns.Where(c => c.Storage < 0).Select(c => c.Parameter)], isCoded ? nextUnfolded : -1);
+            first, [.. stored.Select(c => c.Parameter)], [.. columns.Where(c => c.Storage < 0).Select(c => c.Parameter)]);
     }
 
     private int[] SupportOf(int node)

@@ -4,8 +4,9 @@ using System.Runtime.Intrinsics;
 namespace PanelChoice.Numerics;
 
 /// <summary>
-/// Exponential and natural logarithm of eight numbers at a time, in plain vector arithmetic: the same steps on 512-bit and narrower vectors.
-/// Small enough to be put in place inside a loop; the constants stand in the bodies, because static fields would be read again for each vector.
+/// Exponential and natural logarithm of eight numbers at a time, small enough to be put in place inside a loop; the constants stand in the
+/// bodies, because static fields would be read again for each vector. Plain vector arithmetic serves every width; for the exponential there is a
+/// faster way where the machine has 512-bit instructions (<see cref="WideElementary"/>).
 /// <para>
 /// The polynomials interpolate the function at the Chebyshev nodes of the reduced interval (computed with 80 digits, then rounded), which leaves
 /// less than 0.01 (exp) and 0.05 (log) units in the last place; the stated errors are those of the rounded steps.
@@ -22,7 +23,11 @@ internal static class VectorElementary
     /// <code>e^x = 2^n (1 + r + r^2 q(r)),  q = even(r^2) + r odd(r^2)</code>
     /// </summary>
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public static Vector512<double> Exp(Vector512<double> x)
+    public static Vector512<double> Exp(Vector512<double> x) => WideElementary.IsSupported ? WideElementary.Exp(x) : PlainExp(x);
+
+    /// <summary><see cref="Exp"/> for any width.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    internal static Vector512<double> PlainExp(Vector512<double> x)
     {
         // Added to 1.5 x 2^52 a number is rounded to a whole one, which stands in the low bits of the sum.
         var shifter = Vector512.Create(6755399441055744.0);
