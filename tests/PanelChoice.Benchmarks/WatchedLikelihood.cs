@@ -3,7 +3,7 @@ using PanelChoice.Likelihood;
 
 namespace PanelChoice.Benchmarks;
 
-/// <summary>A likelihood that writes down what it was asked and how long that took, so that a fit can be told apart into its passes.</summary>
+/// <summary>A likelihood that writes down what a fit asks of it and how long that takes, so that the fit can be told apart into its passes.</summary>
 internal sealed class WatchedLikelihood(IChoiceLikelihood watched) : IChoiceLikelihood
 {
     private readonly SortedDictionary<string, (int Calls, double Seconds)> asked = new(StringComparer.Ordinal);
@@ -23,29 +23,20 @@ internal sealed class WatchedLikelihood(IChoiceLikelihood watched) : IChoiceLike
         return at;
     }
 
-    public double[] Scores(ReadOnlySpan<double> parameters)
+    public double[] Scores(ReadOnlySpan<double> parameters) => throw new NotSupportedException();
+
+    public void Scores(ReadOnlySpan<double> parameters, DesignBlock block, Span<double> scores)
     {
         var from = ThreadClock.Seconds();
-        var scores = watched.Scores(parameters);
-        WriteDown("scores", from);
-        return scores;
+        watched.Scores(parameters, block, scores);
+        WriteDown("scores of a block", from);
     }
 
-    public double[] LogProbabilities(ReadOnlySpan<double> parameters)
-    {
-        var from = ThreadClock.Seconds();
-        var log = watched.LogProbabilities(parameters);
-        WriteDown("log P", from);
-        return log;
-    }
+    public double[] LogProbabilities(ReadOnlySpan<double> parameters) => throw new NotSupportedException();
 
-    public double[] PersonInformation(ReadOnlySpan<double> parameters)
-    {
-        var from = ThreadClock.Seconds();
-        var information = watched.PersonInformation(parameters);
-        WriteDown("information by person", from);
-        return information;
-    }
+    public double[] PersonInformation(ReadOnlySpan<double> parameters) => throw new NotSupportedException();
+
+    public double[] PersonInformation(ReadOnlySpan<double> parameters, int firstPerson, int endPerson) => throw new NotSupportedException();
 
     private void WriteDown(string what, double from)
     {

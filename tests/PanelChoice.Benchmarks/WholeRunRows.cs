@@ -63,7 +63,8 @@ internal static class WholeRunRows
             Time("covariances", () => StandardErrors.Compute(
                 InferenceInput.From(model, refitter), study.Inference with { Replicates = 0, Jackknife = JackknifeKind.Off }, WorkContext.Quiet));
             var evidence = InferenceInput.From(model, refitter);
-            Time("jackknife", () => ClusterJackknife.Estimate(evidence, study.Inference.Jackknife, WorkContext.Quiet));
+            var sums = evidence.Scores(1);
+            Time("jackknife", () => ClusterJackknife.Estimate(evidence, sums, study.Inference.Jackknife, WorkContext.Quiet));
             Time("replicates", () => ClusterBootstrap.Estimate(evidence, study.Inference, WorkContext.Quiet));
             Time("diagnostics", () => IndependenceBattery.Run(study, input.Covariates, model, WorkContext.Quiet));
 
