@@ -60,7 +60,7 @@ public static class PanelAnalysisParts
         {
             if (parts.Against(study, input.Panel.Table.Sha256) is { } otherData) return Checked<AnalysisResult>.Bad([otherData]);
             var fit = PanelAnalysis.Fit(study, input, work);
-            return parts.Against(OriginOf(fit, RefitPlan.Of(fit.Evidence, study.Inference))) is { } other
+            return parts.Against(study, OriginOf(fit, RefitPlan.Of(fit.Evidence, study.Inference))) is { } other
                 ? Checked<AnalysisResult>.Bad([other])
                 : Checked<AnalysisResult>.Good(PanelAnalysis.Conclude(fit with { Evidence = fit.Evidence with { Journal = parts } }, work));
         });

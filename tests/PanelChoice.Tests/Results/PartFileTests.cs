@@ -47,6 +47,12 @@ public sealed class PartFileTests : IDisposable
     }
 
     [Fact]
+    public void Nothing_that_an_outcome_holds_is_left_out() =>
+        Assert.Equal(
+            ["Decrement", "FailedParameters", "FailureKind", "Iterations", "LogLikelihood", "Parameters", "Retried", "Status"],
+            typeof(RefitOutcome).GetProperties().Select(p => p.Name).Order(StringComparer.Ordinal));
+
+    [Fact]
     public void A_file_that_breaks_off_anywhere_is_never_taken_for_complete_and_goes_on_to_the_same_bytes()
     {
         var whole = File.ReadAllBytes(Write());

@@ -51,17 +51,18 @@ public sealed class GatheredParts : IRefitJournal
         throw new InvalidOperationException("A refit was made that no part holds, although the parts are complete.");
 
     /// <summary>Why these parts do not belong to an analysis; null when they do.</summary>
-    /// <param name="here">What the analysis' refits depend on.</param>
-    internal Problem? Against(RefitOrigin here) => here.Against(Origin) is { } difference
-        ? new Problem("parts.other_origin", StudyFile, $"the parts were made from something else and differ in {difference.Words}", difference.Remedy)
+    /// <param name="study">Its study.</param>
+    /// <param name="here">What its refits depend on.</param>
+    internal Problem? Against(StudySpecification study, RefitOrigin here) => here.Against(Origin) is { } difference
+        ? new Problem("parts.other_origin", study.File, $"the parts were made from something else and differ in {difference.Words}", difference.Remedy)
         : null;
 
     /// <summary>Why the study at hand is not the one that the parts were made from; null when it is. Told before its data are read.</summary>
     /// <param name="study">The study.</param>
-    internal Problem? Against(StudySpecification study) => Against(Origin with { Study = study.Sha256 });
+    internal Problem? Against(StudySpecification study) => Against(study, Origin with { Study = study.Sha256 });
 
     /// <summary>Why the data at hand are not those that the parts were made from; null when they are. Told before the fit.</summary>
     /// <param name="study">The study.</param>
     /// <param name="dataSha256">SHA-256 of its data.</param>
-    internal Problem? Against(StudySpecification study, string dataSha256) => Against(Origin with { Study = study.Sha256, Data = dataSha256 });
+    internal Problem? Against(StudySpecification study, string dataSha256) => Against(study, Origin with { Study = study.Sha256, Data = dataSha256 });
 }

@@ -6,8 +6,8 @@ using PanelChoice.Study;
 namespace PanelChoice.Results.Parts;
 
 /// <summary>
-/// A part while it is being made: refits are added to the unfinished file and flushed to the disk as they are done, so that a process that is
-/// ended at any moment loses at most those it was at work on. The same call on the same folder goes on from there. The file takes its final
+/// A part while it is being made: refits are added to the unfinished file as they are done, so that a process that is ended at any moment
+/// loses at most those it was at work on. The same call on the same folder goes on from there. The file takes its final
 /// name only when everything is in it. One process at a time can have it open.
 /// </summary>
 internal sealed class PartJournal : IRefitJournal, IDisposable
@@ -98,7 +98,9 @@ internal sealed class PartJournal : IRefitJournal, IDisposable
             this.outcomes.Add((series, numbers[i]), outcomes[i]);
         }
 
-        stream!.Flush(flushToDisk: true);
+        // To the system, which outlives this process. What a machine that fails takes away is seen by the seals and made again, and
+        // waiting for the disk behind every batch can take longer than the batch.
+        stream!.Flush();
     }
 
     /// <summary>Closes the part with its end and gives it its final name.</summary>
