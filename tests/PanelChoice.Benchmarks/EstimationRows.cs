@@ -80,11 +80,21 @@ internal static class EstimationRows
     private static void WhereItGoes(CaseAtWork work, double pass)
     {
         var watched = new WatchedLikelihood(work.Likelihood);
-        var from = ThreadClock.Seconds();
-        CaseAtWork.ColdFit(watched);
-        var all = ThreadClock.Seconds() - from;
-        var parts = watched.Asked.Select(a => $"{a.Value.Calls} x {a.Key} {a.Value.Seconds / pass:F1}");
-        RatioTable.Remark($"in gradient passes: {string.Join(", ", parts)}, all else {(all - watched.Asked.Values.Sum(a => a.Seconds)) / pass:F1}");
+        var all = Seconds(() => CaseAtWork.ColdFit(watched));
+        var survey = Seconds(() => ColumnSurvey.Of(work.Design, 1));
+        var reference = Seconds(() => ReferenceFits.Of(work.Design, work.PersonWeight).Constants());
+        var rest = all - survey - reference - watched.Asked.Values.Sum(a => a.Seconds);
+        var passes = watched.Asked.Select(a => $"{a.Value.Calls} x {a.Key} {a.Value.Seconds / pass:F1}");
+        RatioTable.Remark(
+            $"in gradient passes: {string.Join(", ", passes)}, survey of columns {survey / pass:F1}, likelihoods to compare with {reference / pass:F1}, "
+            + $"all else {rest / pass:F1}");
+
+        static double Seconds(Action action)
+        {
+            var from = ThreadClock.Seconds();
+            action();
+            return ThreadClock.Seconds() - from;
+        }
     }
 
     /// <summary>How far replicates end from their optimum, in standard errors: the Newton decrement, evaluated anew.</summary>
