@@ -55,7 +55,7 @@ internal static class EstimationRows
         var times = Measurement.OfThread(
             RepetitionsOfReplicates,
             () => work.Likelihood.Evaluate(work.Theta, draw, Derivatives.Gradient),
-            () => summary = ClusterBootstrap.Estimate(input, settings, WorkContext.Quiet).Summary);
+            () => summary = ClusterBootstrap.Estimate(Fresh(work, input), settings, WorkContext.Quiet).Summary);
         var goal = work.Made.Shape.Name switch { "S" => Goal.AtMost(1200), "M" => Goal.AtMost(200), _ => null };
         RatioTable.Row("6", $"{Replicates}-replicate bootstrap of full refits / separate weighted gradient pass", work.Label, times[1], times[0], goal);
         Agreement.Holds(summary!.Done == Replicates, $"{work.Label}: {summary.Done} of {Replicates} replicates converged");
@@ -71,7 +71,7 @@ internal static class EstimationRows
         var times = Measurement.OfThread(
             RepetitionsOfReplicates,
             () => work.GradientPass(),
-            () => summary = ClusterJackknife.Estimate(input, sums, JackknifeKind.Refit, WorkContext.Quiet).Summary);
+            () => summary = ClusterJackknife.Estimate(Fresh(work, input), sums, JackknifeKind.Refit, WorkContext.Quiet).Summary);
         RatioTable.Row("7", $"jackknife over {work.Design.Clusters.Length} persons, full refits / gradient pass", work.Label, times[1], times[0], Goal.AtMost(6000));
         Agreement.Holds(summary!.Failures == 0, $"{work.Label}: {summary.Failures} refits of the jackknife failed");
     }
@@ -96,6 +96,9 @@ internal static class EstimationRows
             return ThreadClock.Seconds() - from;
         }
     }
+
+    /// <summary>With a refitter that has learnt nothing yet, so that the pass before the first replicate counts.</summary>
+    private static InferenceInput Fresh(CaseAtWork work, InferenceInput input) => input with { Refitter = new ClusterRefitter(work.Model, 1) };
 
     /// <summary>How far replicates end from their optimum, in standard errors: the Newton decrement, evaluated anew.</summary>
     private static void Farthest(CaseAtWork work, InferenceInput input, BootstrapSummary summary)

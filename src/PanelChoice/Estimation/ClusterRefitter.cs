@@ -1,42 +1,54 @@
 using System.Collections.Immutable;
 using System.Runtime.InteropServices;
 using PanelChoice.Likelihood;
-using PanelChoice.Numerics;
-using PanelChoice.Optimisation;
 
 namespace PanelChoice.Estimation;
 
 /// <summary>
-/// Full refits of a fitted model under other cluster weights: exact Newton from the request's start, usually three or four steps. Requests run
-/// side by side, each on one thread and each seeing only itself, so that outcomes have the same bits for any number of threads and any batch.
-/// A request whose clusters no longer tell a parameter (its column does not vary among them, goes one way only, its nest is never two wide)
-/// fails by name before anything is fitted; one that ends nowhere is tried again from other starts.
+/// Full refits of a fitted model under other cluster weights. Requests that start from the full estimate go side by side (<see cref="BatchedRefits"/>), each
+/// read of the data serving many of them; what does not settle there, looks like anything but an ordinary maximum, or starts elsewhere goes by exact
+/// Newton steps from its start (<see cref="ExactRefit"/>), which also find the kinds of failure. A request sees only itself either way, so that outcomes have
+/// the same bits for any number of threads and any batch.
 /// </summary>
 public sealed class ClusterRefitter : IRefitter
 {
-    /// <summary>Below this decrement the last Newton step is taken without another evaluation: its error is of the order of 1e-10 standard errors.</summary>
-    private static readonly MinimisationSettings Warm = new(UncheckedLastStep: 1e-5, MaxIterations: 100);
+    /// <summary>
+    /// How close to its maximum, in its own pooled standard errors, a replicate must be on a large sample, and on one below <see cref="VectorNestedLogit.SituationsForThreads"/>
+    /// situations, where the two passes more that it takes cost less than a millisecond and replicates then agree with any other way of finding them to 8 digits.
+    /// </summary>
+    internal const double Tolerance = 1e-5, ToleranceOfSmall = 1e-9;
 
     private readonly FittedModel model;
     private readonly IChoiceLikelihood likelihood;
     private readonly ColumnSurvey survey;
-    private readonly StartingPoints points;
-    private readonly double samplingWeight;
+    private readonly ExactRefit exact;
     private readonly int threads;
+    private readonly bool isSmall;
+    private readonly long mostEntries;
+    private readonly Lock expanding = new();
+    private BatchedRefits? batched;
+    private bool isExpanded;
 
     /// <summary>A refitter of a model.</summary>
     /// <param name="model">The fitted model.</param>
     /// <param name="threads">Threads, 1 or more; no figure depends on it.</param>
     public ClusterRefitter(FittedModel model, int threads)
+        : this(model, threads, ClusterExpansion.MostEntries)
+    {
+    }
+
+    /// <summary>A refitter of a model that may hold so many doubles for first steps.</summary>
+    internal ClusterRefitter(FittedModel model, int threads, long mostEntries)
     {
         ArgumentNullException.ThrowIfNull(model);
         ArgumentOutOfRangeException.ThrowIfLessThan(threads, 1);
         this.model = model;
         this.threads = threads;
+        this.mostEntries = mostEntries;
+        isSmall = model.Design.Situations < VectorNestedLogit.SituationsForThreads;
         likelihood = LikelihoodKernel.Create(model.Design, model.Form, 1);
         survey = model.Survey ?? ColumnSurvey.Of(model.Design, threads);
-        points = new StartingPoints(model.Design, model.Form);
-        samplingWeight = MinusLogLikelihood.MeanWeight(model.Design, [.. model.Design.PersonWeight]);
+        exact = new ExactRefit(model, likelihood, survey);
     }
 
     /// <inheritdoc/>
@@ -44,148 +56,64 @@ public sealed class ClusterRefitter : IRefitter
     public ImmutableArray<RefitOutcome> Refit(ImmutableArray<RefitRequest> batch, CancellationToken cancellation)
     {
         foreach (var request in batch) Validate(request);
-        var outcomes = new RefitOutcome[batch.Length];
-        if (threads == 1 || batch.Length == 1)
+        cancellation.ThrowIfCancellationRequested();
+        var refits = new PreparedRefit[batch.Length];
+        var outcomes = new RefitOutcome?[batch.Length];
+        Each(batch.Length, i =>
         {
-            for (var i = 0; i < batch.Length; i++) outcomes[i] = Refit(batch[i], cancellation);
+            refits[i] = PreparedRefit.Of(model, batch[i]);
+            outcomes[i] = exact.WithoutEvidence(refits[i]);
+        }, cancellation);
+
+        int[] together = [.. Enumerable.Range(0, batch.Length).Where(i => outcomes[i] is null && !refits[i].Active.IsEmpty && StartsFromEstimate(batch[i]))];
+        if (together.Length > 0 && Batched(cancellation) is { } side) SideBySide(side, refits, together, outcomes, cancellation);
+        int[] left = [.. Enumerable.Range(0, batch.Length).Where(i => outcomes[i] is null)];
+        Each(left.Length, i => outcomes[left[i]] = exact.Run(refits[left[i]], cancellation), cancellation);
+        return ImmutableCollectionsMarshal.AsImmutableArray(outcomes)!;
+    }
+
+    /// <summary>On a small sample threads share the requests; on a large one they share each pass.</summary>
+    private void SideBySide(BatchedRefits side, PreparedRefit[] refits, int[] which, RefitOutcome?[] outcomes, CancellationToken cancellation)
+    {
+        var groups = isSmall ? Math.Min(threads, which.Length) : 1;
+        Each(groups, group =>
+        {
+            int[] own = [.. which.Where((_, i) => i % groups == group)];
+            var found = side.Run([.. own.Select(i => refits[i])], isSmall ? 1 : threads, cancellation);
+            for (var i = 0; i < own.Length; i++) outcomes[own[i]] = found[i];
+        }, cancellation);
+    }
+
+    private void Each(int count, Action<int> action, CancellationToken cancellation)
+    {
+        if (threads == 1 || count <= 1)
+        {
+            for (var i = 0; i < count; i++) action(i);
         }
         else
         {
-            Parallel.For(
-                0, batch.Length, new ParallelOptions { MaxDegreeOfParallelism = threads, CancellationToken = cancellation },
-                i => outcomes[i] = Refit(batch[i], cancellation));
+            Parallel.For(0, count, new ParallelOptions { MaxDegreeOfParallelism = threads, CancellationToken = cancellation }, action);
         }
-
-        return ImmutableCollectionsMarshal.AsImmutableArray(outcomes);
     }
 
-    private RefitOutcome Refit(RefitRequest request, CancellationToken cancellation)
+    private bool StartsFromEstimate(RefitRequest request) => model.Status == FitStatus.Converged && request.Start.AsSpan().SequenceEqual(model.Parameters.AsSpan());
+
+    /// <summary>Made when the first request comes that it can serve; null where too many clusters would have to be held.</summary>
+    private BatchedRefits? Batched(CancellationToken cancellation)
     {
-        cancellation.ThrowIfCancellationRequested();
-        var design = model.Design;
-        var layout = design.Layout;
-        var weight = new double[design.Persons];
-        for (var p = 0; p < weight.Length; p++) weight[p] = design.PersonWeight[p] * request.ClusterWeight[design.ClusterOf[p]];
-        var start = request.Start.ToArray();
-        for (var k = 0; k < start.Length; k++) start[k] = layout.Parameters[k].Fixed ?? start[k];
-        ImmutableArray<int> active = [.. layout.Free.Except(model.Held).Except(request.Held)];
-
-        if (WithoutEvidence(request, active, weight) is { } failure)
+        lock (expanding)
         {
-            var at = likelihood.Evaluate(start, weight, Derivatives.None);
-            return new RefitOutcome(failure.Status, [.. start], at.Value, 0, false, KindOf(failure.Status), failure.About);
-        }
-
-        var search = new LocalSearch(likelihood, model.Form, weight, survey.Scale, cancellation);
-        var best = search.Run(start, active, Warm, []);
-        var iterations = best.Iterations;
-        var retried = false;
-        if (best.Kind is SearchEndKind.Boundary or SearchEndKind.Stopped)
-        {
-            foreach (var from in OtherStarts(start, active, search))
+            if (!isExpanded)
             {
-                var end = search.Run(from, active, Warm, []);
-                iterations += end.Iterations;
-                if (!IsBetter(end, best)) continue;
-                (best, retried) = (end, true);
-                if (end.Kind is SearchEndKind.Maximum or SearchEndKind.Separated) break;
+                var shared = LikelihoodKernel.Create(model.Design, model.Form, threads);
+                if (ClusterExpansion.Of(model, shared, survey.Scale, mostEntries, cancellation) is { } expansion)
+                    batched = new BatchedRefits(expansion, model, shared, isSmall ? ToleranceOfSmall : Tolerance);
+                isExpanded = true;
             }
-        }
 
-        var (status, about) = Judge(best, active, weight);
-        return new RefitOutcome(status, [.. best.Parameters], best.LogLikelihood, iterations, retried, KindOf(status), about)
-        {
-            Decrement = status == FitStatus.Converged ? best.Last.Decrement * InSamplingUnits(weight) : double.NaN,
-        };
-    }
-
-    /// <summary>
-    /// A search measures decrements with the request's weights scaled to mean 1 over the situations that count. In a draw with replacement the clones
-    /// count too, so that its pooled standard errors are smaller: there the sampling weights alone are scaled.
-    /// </summary>
-    private double InSamplingUnits(double[] weight) =>
-        Math.Sqrt(Math.Max(1, MinusLogLikelihood.MeanWeight(model.Design, weight) / samplingWeight));
-
-    /// <summary>A maximum beats what stopped anywhere and a boundary that is not above it; otherwise the higher point wins.</summary>
-    private static bool IsBetter(SearchEnd end, SearchEnd best) => (end.Kind, best.Kind) switch
-    {
-        (SearchEndKind.Maximum, SearchEndKind.Stopped) => true,
-        (SearchEndKind.Maximum, _) => end.LogLikelihood >= best.LogLikelihood - (1e-9 * Math.Abs(best.LogLikelihood)),
-        _ => end.LogLikelihood > best.LogLikelihood && end.Kind != SearchEndKind.Stopped,
-    };
-
-    /// <summary>Parameters that the clusters with positive weight cannot tell, seen column by column.</summary>
-    private (FitStatus Status, ImmutableArray<int> About)? WithoutEvidence(RefitRequest request, ImmutableArray<int> active, double[] weight)
-    {
-        var layout = model.Design.Layout;
-        var evidence = survey.Of(request.ClusterWeight.AsSpan());
-        var isScaled = model.Form == Study.NestedLogitForm.UtilityScaled;
-        ImmutableArray<int> silent = [.. active.Where(k => (isScaled || layout.Nests.IsEmpty) && !evidence[k].HasFlag(Evidence.Varies))];
-        if (!silent.IsEmpty) return (FitStatus.NotIdentified, silent);
-        var oneSided = Separation.OneSided(model.Design, model.Form, evidence, active, weight);
-        return oneSided.IsEmpty ? null : (FitStatus.Separated, oneSided);
-    }
-
-    /// <summary>The estimate of the whole sample, a jittered start, plain logit, and half the dissimilarities.</summary>
-    private IEnumerable<double[]> OtherStarts(double[] start, ImmutableArray<int> active, LocalSearch search)
-    {
-        double[] Hold(double[] at)
-        {
-            var held = (double[])start.Clone();
-            foreach (var k in active) held[k] = at[k];
-            return held;
-        }
-
-        var full = Hold([.. model.Parameters]);
-        if (!full.AsSpan().SequenceEqual(start)) yield return full;
-        yield return Hold(Jittered(start, active));
-        ImmutableArray<int> coefficients = [.. active.Where(k => k < model.Layout.Coefficients)];
-        foreach (var common in new[] { 1.0, 0.5, 0.2 })
-        {
-            if (common < 1 && points.Free.IsEmpty) yield break;
-            var from = Hold(points.With(start, [.. points.Free.Select(_ => common)]));
-            var given = search.Run(from, coefficients, Warm with { UncheckedLastStep = 0, Tolerance = 0.03 }, []);
-            yield return given.Kind == SearchEndKind.Maximum ? given.Parameters : from;
+            return batched;
         }
     }
-
-    private double[] Jittered(double[] start, ImmutableArray<int> active)
-    {
-        var random = new CounterRandom(0, "refit jitter", 0);
-        var at = (double[])start.Clone();
-        foreach (var k in active)
-        {
-            var z = MathNet.Numerics.Distributions.Normal.Sample(random, 0, 1);
-            at[k] = k < model.Layout.Coefficients
-                ? ((at[k] * survey.Scale[k] * (1 + (0.2 * z))) + (0.1 * z)) / survey.Scale[k]
-                : at[k] * Math.Exp(0.3 * z);
-        }
-
-        return at;
-    }
-
-    private (FitStatus Status, ImmutableArray<int> About) Judge(SearchEnd end, ImmutableArray<int> active, double[] weight)
-    {
-        switch (end.Kind)
-        {
-            case SearchEndKind.Separated: return (FitStatus.Separated, end.About);
-            case SearchEndKind.Boundary: return (FitStatus.Boundary, end.About);
-            case SearchEndKind.Stopped: return (FitStatus.Stopped, []);
-            default:
-                var function = new MinusLogLikelihood(likelihood, weight, survey.Scale, active, end.Parameters);
-                var curvature = Curvature.Of(likelihood, function, end.Last.At, end.Parameters, weight);
-                return curvature.IsIdentified ? (FitStatus.Converged, []) : (FitStatus.NotIdentified, curvature.Weakest);
-        }
-    }
-
-    private static string? KindOf(FitStatus status) => status switch
-    {
-        FitStatus.Converged => null,
-        FitStatus.NotIdentified => "not identified",
-        FitStatus.Separated => "separated",
-        FitStatus.Boundary => "boundary",
-        _ => "stopped",
-    };
 
     private void Validate(RefitRequest request)
     {

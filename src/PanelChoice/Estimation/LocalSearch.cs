@@ -62,10 +62,15 @@ internal sealed class LocalSearch(
 
     /// <summary>A dissimilarity below this at a decrement this small, with less information than this about its logarithm, has lost its say: the
     /// choices inside its nest are told with certainty, and the likelihood creeps towards 0 as exp(-1/l) does, below rounding.</summary>
-    private const double Silent = 1e-6, SilentDecrement = 1e-3;
+    public const double Silent = 1e-6;
+
+    private const double SilentDecrement = 1e-3;
 
     /// <summary>Beyond these values a search that stops on its way is asked whether the likelihood still rises.</summary>
-    private const double Small = 0.01, Large = 30;
+    public const double Small = 0.01, Large = 30;
+
+    /// <summary>A Newton step at least this long, in utilities for a column's standard deviation, at a decrement below that: the mark of separation.</summary>
+    public const double SuspectStep = 0.3, SuspectDecrement = 0.1;
 
     /// <summary>Two points this close, in standard errors, with equal log-likelihood are the same maximum.</summary>
     public const double SameMaximum = 0.01;
@@ -181,7 +186,7 @@ internal sealed class LocalSearch(
     /// </summary>
     private double[]? RunsAway(Standing at, MinusLogLikelihood function)
     {
-        if (at.Decrement > 0.1) return null;
+        if (at.Decrement > SuspectDecrement) return null;
         var along = at.Spectrum.Coordinates(at.At.Gradient);
         var floor = TrustRegionStep.Flat * at.Spectrum.Largest;
         for (var i = 0; i < along.Length; i++) along[i] = at.Spectrum.Values[i] > floor ? -along[i] / at.Spectrum.Values[i] : 0;
@@ -194,7 +199,7 @@ internal sealed class LocalSearch(
             longest = Math.Max(longest, Math.Abs(step[i]));
         }
 
-        if (longest < 0.3) return null;
+        if (longest < SuspectStep) return null;
         for (var i = 0; i < step.Length; i++) step[i] = Math.Abs(step[i]) < 1e-3 * longest ? 0 : step[i] / longest;
         var v = function.Direction(at.Point, step);
         return LinearIndex.NeverGoesAgainstChoices(likelihood.Design, form, function.Parameters(at.Point), v, personWeight, DirectionRounding) ? v : null;

@@ -15,7 +15,6 @@ internal sealed class MinusLogLikelihood
 {
     private readonly IChoiceLikelihood likelihood;
     private readonly double[] personWeight;
-    private readonly double unit;
     private readonly double[] scale;
     private readonly double[] all;
 
@@ -33,14 +32,22 @@ internal sealed class MinusLogLikelihood
         this.scale = scale;
         Active = active;
         all = parameters.ToArray();
-        unit = MeanWeight(likelihood.Design, personWeight);
+        (Unit, Situations) = MeanAndCount(likelihood.Design, personWeight);
     }
 
     /// <summary>Parameters that move.</summary>
     public ImmutableArray<int> Active { get; }
 
-    /// <summary>Mean weight of a situation.</summary>
-    public static double MeanWeight(ChoiceDesign design, double[] personWeight)
+    /// <summary>Situations with a weight above 0.</summary>
+    public long Situations { get; }
+
+    /// <summary>Mean weight of these situations: what the log-likelihood is divided by.</summary>
+    public double Unit { get; }
+
+    /// <summary>Mean weight of a situation, among those with a weight above 0.</summary>
+    public static double MeanWeight(ChoiceDesign design, double[] personWeight) => MeanAndCount(design, personWeight).Mean;
+
+    private static (double Mean, long Count) MeanAndCount(ChoiceDesign design, double[] personWeight)
     {
         double sum = 0;
         long situations = 0;
@@ -52,7 +59,7 @@ internal sealed class MinusLogLikelihood
             situations += own;
         }
 
-        return sum > 0 ? sum / situations : 1;
+        return (sum > 0 ? sum / situations : 1, situations);
     }
 
     /// <summary>The coordinates of a point.</summary>
@@ -99,7 +106,7 @@ internal sealed class MinusLogLikelihood
     public static double Dissimilarity(double x) => x > 30 ? x + Log1p(Math.Exp(-x)) : Log1p(Math.Exp(x));
 
     /// <summary>The log-likelihood that belongs to a value of this function.</summary>
-    public double LogLikelihood(double value) => -value * unit;
+    public double LogLikelihood(double value) => -value * Unit;
 
     /// <summary>The function with its derivatives by the coordinates.</summary>
     public SmoothValue Evaluate(ReadOnlySpan<double> x)
@@ -120,14 +127,24 @@ internal sealed class MinusLogLikelihood
         for (var i = 0; i < n; i++)
         {
             var di = Slope(i, parameters);
-            gradient[i] = -at.Gradient[Active[i]] * di / unit;
+            gradient[i] = -at.Gradient[Active[i]] * di / Unit;
             for (var j = 0; j < n; j++)
-                hessian[(i * n) + j] = -at.Hessian[(Active[i] * K) + Active[j]] * di * Slope(j, parameters) / unit;
+                hessian[(i * n) + j] = -at.Hessian[(Active[i] * K) + Active[j]] * di * Slope(j, parameters) / Unit;
             // The second derivative of l by its coordinate is s (1 - s), s its slope.
             if (IsDissimilarity(Active[i])) hessian[(i * n) + i] += gradient[i] * (1 - di);
         }
 
-        return new SmoothValue(-at.Value / unit, gradient, hessian);
+        return new SmoothValue(-at.Value / Unit, gradient, hessian);
+    }
+
+    /// <summary>The gradient by the coordinates at a point where the likelihood is known with its first derivatives.</summary>
+    /// <param name="parameters">All K parameters.</param>
+    /// <param name="at">The log-likelihood there, with its gradient.</param>
+    public double[] GradientInCoordinates(ReadOnlySpan<double> parameters, LikelihoodEvaluation at)
+    {
+        var gradient = new double[Active.Length];
+        for (var i = 0; i < gradient.Length; i++) gradient[i] = -at.Gradient[Active[i]] * Slope(i, parameters) / Unit;
+        return gradient;
     }
 
     /// <summary>Derivative of a parameter by its coordinate.</summary>
@@ -146,5 +163,6 @@ internal sealed class MinusLogLikelihood
         return u == 1 ? x : Math.Log(u) * x / (u - 1);
     }
 
-    private bool IsDissimilarity(int k) => k >= likelihood.Design.Layout.Coefficients;
+    /// <summary>Whether one of the K parameters is a dissimilarity.</summary>
+    public bool IsDissimilarity(int k) => k >= likelihood.Design.Layout.Coefficients;
 }

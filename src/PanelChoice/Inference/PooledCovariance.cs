@@ -1,3 +1,5 @@
+using PanelChoice.Numerics;
+
 namespace PanelChoice.Inference;
 
 /// <summary>

@@ -17,14 +17,18 @@ namespace PanelChoice.Likelihood;
 /// alone; the width is in the kernel's name. Where the machine has no 512-bit vectors, a tile of eight lanes is worked in halves or quarters.
 /// </para>
 /// </summary>
-internal sealed class VectorNestedLogit : IChoiceLikelihood
+internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihood
 {
     /// <summary>Below this many situations handing work to another thread costs more than it brings.</summary>
     internal const int SituationsForThreads = 50_000;
 
+    /// <summary>Persons whose derivatives are held at a time.</summary>
+    private const int PersonsAtOnce = 2048;
+
     private readonly StripPlan plan;
     private readonly int threads;
     private readonly ConcurrentBag<StripWork> idle = [];
+    private readonly ConcurrentBag<ReplicateWork> idleReplicates = [];
 
     /// <summary>The kernel on a design.</summary>
     /// <param name="design">The design.</param>
@@ -119,6 +123,61 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood
             }
         });
         return information;
+    }
+
+    /// <summary>Blocks outside, points inside: the columns of a block are still in the cache for the points after the first.</summary>
+    public LikelihoodEvaluation[] Gradients(IReadOnlyList<WeightedPoint> points, CancellationToken cancellation)
+    {
+        ArgumentNullException.ThrowIfNull(points);
+        var length = 1 + K;
+        var chunks = FixedChunks.Count(Design.Blocks.Length);
+        var inside = points.Select(p => ParameterDomain.Contains(Design.Layout, p.Parameters)).ToArray();
+        var parts = new double[chunks * points.Count * length];
+        FixedChunks.Run(Design.Blocks.Length, threads, (chunk, first, end) =>
+        {
+            if (cancellation.IsCancellationRequested) return;
+            if (!idleReplicates.TryTake(out var work)) work = new ReplicateWork(plan);
+            for (var b = first; b < end; b++)
+                for (var i = 0; i < points.Count; i++)
+                {
+                    if (!inside[i]) continue;
+                    work.Begin(points[i].Parameters);
+                    work.AddBlock(Design.Blocks[b], points[i].PersonWeight, parts.AsSpan(((chunk * points.Count) + i) * length, length));
+                }
+
+            idleReplicates.Add(work);
+        });
+        cancellation.ThrowIfCancellationRequested();
+        return [.. points.Select((_, i) => inside[i] ? Sum(i) : ParameterDomain.Undefined(K, Derivatives.Gradient))];
+
+        LikelihoodEvaluation Sum(int i)
+        {
+            var total = new double[length];
+            for (var chunk = 0; chunk < chunks; chunk++)
+                for (var k = 0; k < length; k++) total[k] += parts[(((chunk * points.Count) + i) * length) + k];
+            return new LikelihoodEvaluation(total[0], ImmutableCollectionsMarshal.AsImmutableArray(total[1..]), []);
+        }
+    }
+
+    public void ForEachPerson(double[] parameters, PersonDerivatives take, CancellationToken cancellation)
+    {
+        ArgumentNullException.ThrowIfNull(take);
+        var length = K + (K * K);
+        var window = new double[Math.Min(Design.Persons, PersonsAtOnce) * length];
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) Array.Fill(window, double.NaN);
+        for (var from = 0; from < Design.Persons; from += PersonsAtOnce)
+        {
+            cancellation.ThrowIfCancellationRequested();
+            var count = Math.Min(PersonsAtOnce, Design.Persons - from);
+            if (!double.IsNaN(window[0])) FixedChunks.Run(count, threads, (_, first, end) =>
+            {
+                if (!idleReplicates.TryTake(out var work)) work = new ReplicateWork(plan);
+                work.Begin(parameters);
+                for (var p = first; p < end; p++) work.PersonDerivatives(from + p, window.AsSpan(p * length, length));
+                idleReplicates.Add(work);
+            });
+            for (var p = 0; p < count; p++) take(from + p, window.AsSpan(p * length, K), window.AsSpan((p * length) + K, K * K));
+        }
     }
 
     /// <summary>Runs the action for every chunk of items with a work space that holds the parameters.</summary>

@@ -1,8 +1,8 @@
 using System.Collections.Immutable;
 using PanelChoice.Design;
 using PanelChoice.Estimation;
-using PanelChoice.Inference;
 using PanelChoice.Likelihood;
+using PanelChoice.Numerics;
 using PanelChoice.Study;
 
 namespace PanelChoice.Tests.Inference;

@@ -1,4 +1,4 @@
-namespace PanelChoice.Inference;
+namespace PanelChoice.Numerics;
 
 /// <summary>
 /// Cholesky factor of a symmetric matrix scaled to unit diagonal, so that the units of the covariates do not decide what counts as

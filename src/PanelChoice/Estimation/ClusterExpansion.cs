@@ -1,0 +1,182 @@
+using System.Collections.Immutable;
+using System.Numerics.Tensors;
+using System.Runtime.InteropServices;
+using PanelChoice.Likelihood;
+using PanelChoice.Numerics;
+
+namespace PanelChoice.Estimation;
+
+/// <summary>
+/// The log-likelihood of each cluster to second order around the full estimate, and that of the sample to third order. One pass makes it; after that any
+/// replicate has its score, its exact Hessian and nearly its third derivatives at the full estimate without reading the data.
+/// </summary>
+internal sealed class ClusterExpansion
+{
+    /// <summary>Doubles that may be held: half a gigabyte. Where Hessians would not fit, that of the whole sample stands for each replicate's: with so many clusters they differ little.</summary>
+    public const long MostEntries = 1L << 26;
+
+    /// <summary>Persons that third derivatives are taken from at least (about). They only correct the change of the Hessian on the way to a replicate, itself a few percent.</summary>
+    private const int ThinnedPersons = 600;
+
+    /// <summary>Replicates summed by one thread at a time.</summary>
+    private const int SummedTogether = 8;
+
+    private readonly FittedModel model;
+    private readonly bool holdsHessians;
+    private readonly int stride;
+    private readonly double[] rows;
+    private readonly double[] situations;
+    private readonly double allSituations;
+
+    private ClusterExpansion(FittedModel model, double[] scale, ImmutableArray<int> active, bool holdsHessians)
+    {
+        this.model = model;
+        this.holdsHessians = holdsHessians;
+        Scale = scale;
+        Active = active;
+        var n = active.Length;
+        stride = n + (holdsHessians ? n * (n + 1) / 2 : 0);
+        rows = new double[(long)model.Design.Clusters.Length * stride];
+        situations = new double[model.Design.Clusters.Length];
+        var design = model.Design;
+        for (var p = 0; p < design.Persons; p++)
+            situations[design.ClusterOf[p]] += design.PersonWeight[p] * (design.PersonStart[p + 1] - design.PersonStart[p]);
+        foreach (var s in situations) allSituations += s;
+    }
+
+    /// <summary>Scale of each column.</summary>
+    public double[] Scale { get; }
+
+    /// <summary>The n parameters that were estimated.</summary>
+    public ImmutableArray<int> Active { get; }
+
+    /// <summary>
+    /// n x n x n third derivatives of minus the log-likelihood by the coordinates of <see cref="MinusLogLikelihood"/>, for each situation with its weight
+    /// scaled to mean 1.
+    /// </summary>
+    public double[] Third { get; private set; } = [];
+
+    /// <summary>Expands a fitted model.</summary>
+    /// <param name="model">The model, at a maximum.</param>
+    /// <param name="likelihood">Its likelihood.</param>
+    /// <param name="scale">Scale of each column.</param>
+    /// <param name="mostEntries">Doubles that may be held.</param>
+    /// <param name="cancellation">Stops between stretches of persons.</param>
+    /// <returns>The expansion; null where not even the clusters' scores may be held.</returns>
+    public static ClusterExpansion? Of(
+        FittedModel model, IChoiceLikelihood likelihood, double[] scale, long mostEntries, CancellationToken cancellation)
+    {
+        ImmutableArray<int> active = [.. model.Layout.Free.Except(model.Held)];
+        long n = active.Length;
+        long clusters = model.Design.Clusters.Length;
+        if (n == 0 || clusters * n > mostEntries) return null;
+        var expansion = new ClusterExpansion(model, scale, active, clusters * (n + (n * (n + 1) / 2)) <= mostEntries);
+        expansion.AddPersons(likelihood, cancellation);
+        expansion.Third = expansion.ThirdDerivatives(likelihood);
+        return expansion;
+    }
+
+    /// <summary>
+    /// The log-likelihood (without its value) of some replicates at the full estimate, with its derivatives. What a replicate gets depends on its own
+    /// weights alone.
+    /// </summary>
+    /// <param name="clusterWeights">Weight of each cluster, replicate by replicate.</param>
+    /// <param name="threads">Threads, 1 or more.</param>
+    public LikelihoodEvaluation[] At(IReadOnlyList<ImmutableArray<double>> clusterWeights, int threads)
+    {
+        var evaluations = new LikelihoodEvaluation[clusterWeights.Count];
+        var groups = (evaluations.Length + SummedTogether - 1) / SummedTogether;
+        FixedChunks.Run(groups, threads, (_, first, end) =>
+        {
+            for (var group = first; group < end; group++)
+            {
+                var from = group * SummedTogether;
+                Sum(clusterWeights, from, evaluations.AsSpan(from, Math.Min(SummedTogether, evaluations.Length - from)));
+            }
+        });
+        return evaluations;
+    }
+
+    private void Sum(IReadOnlyList<ImmutableArray<double>> clusterWeights, int from, Span<LikelihoodEvaluation> evaluations)
+    {
+        var sums = new double[evaluations.Length * stride];
+        var counts = new double[evaluations.Length];
+        for (var g = 0; g < situations.Length; g++)
+        {
+            var row = rows.AsSpan(g * stride, stride);
+            for (var r = 0; r < counts.Length; r++)
+            {
+                var weight = clusterWeights[from + r][g];
+                if (weight == 0) continue;
+                counts[r] += weight * situations[g];
+                var sum = sums.AsSpan(r * stride, stride);
+                TensorPrimitives.MultiplyAdd(row, weight, sum, sum);
+            }
+        }
+
+        for (var r = 0; r < counts.Length; r++) evaluations[r] = Expand(sums.AsSpan(r * stride, stride), counts[r] / allSituations);
+    }
+
+    /// <summary>K first and K x K second derivatives from a row of sums.</summary>
+    /// <param name="sums">The sums.</param>
+    /// <param name="share">Weight of the replicate as a share of the sample's.</param>
+    private LikelihoodEvaluation Expand(ReadOnlySpan<double> sums, double share)
+    {
+        var K = model.Layout.Count;
+        var gradient = new double[K];
+        var hessian = new double[K * K];
+        var place = Active.Length;
+        for (var i = 0; i < Active.Length; i++)
+        {
+            gradient[Active[i]] = sums[i];
+            for (var j = 0; j <= i; j++)
+            {
+                var (r, c) = (Active[i], Active[j]);
+                hessian[(r * K) + c] = hessian[(c * K) + r] = holdsHessians ? sums[place++] : share * model.Hessian[(r * K) + c];
+            }
+        }
+
+        return new LikelihoodEvaluation(0, ImmutableCollectionsMarshal.AsImmutableArray(gradient), ImmutableCollectionsMarshal.AsImmutableArray(hessian));
+    }
+
+    private void AddPersons(IChoiceLikelihood likelihood, CancellationToken cancellation)
+    {
+        var design = model.Design;
+        var K = model.Layout.Count;
+        SeparatePasses.Of(likelihood).ForEachPerson([.. model.Parameters], (person, score, hessian) =>
+        {
+            var weight = design.PersonWeight[person];
+            var row = rows.AsSpan(design.ClusterOf[person] * stride, stride);
+            for (var i = 0; i < Active.Length; i++) row[i] += weight * score[Active[i]];
+            if (!holdsHessians) return;
+            var place = Active.Length;
+            for (var i = 0; i < Active.Length; i++)
+                for (var j = 0; j <= i; j++) row[place++] += weight * hessian[(Active[i] * K) + Active[j]];
+        }, cancellation);
+    }
+
+    /// <summary>Differences of exact Hessians on every so many blocks of the sample.</summary>
+    private double[] ThirdDerivatives(IChoiceLikelihood likelihood)
+    {
+        // Rounding is 1e-12 of the Hessian and the next term of the difference 1e-4 of it: both far below what the thinned sample leaves open.
+        const double Step = 1e-4;
+        var design = model.Design;
+        var n = Active.Length;
+        var every = Math.Clamp(design.Persons / ThinnedPersons, 1, 16);
+        double[] weight = [.. design.PersonWeight.Select((w, p) => design.BlockOf[design.PersonStart[p]] % every == 0 ? w : 0)];
+        var function = new MinusLogLikelihood(likelihood, weight, Scale, Active, model.Parameters.AsSpan());
+        var x = function.Coordinates(model.Parameters.AsSpan());
+        var here = function.Evaluate(x).Hessian;
+        var unit = Step * function.Situations;
+        var third = new double[n * n * n];
+        for (var k = 0; k < n; k++)
+        {
+            var beside = (double[])x.Clone();
+            beside[k] += Step;
+            var there = function.Evaluate(beside).Hessian;
+            for (var i = 0; i < n * n; i++) third[(k * n * n) + i] = (there[i] - here[i]) / unit;
+        }
+
+        return third;
+    }
+}
