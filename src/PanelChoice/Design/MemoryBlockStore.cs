@@ -9,6 +9,9 @@ public sealed class MemoryBlockStore(BlockFormat format) : BlockStore(format)
     /// <summary>Blocks share arrays; each is twice as long as the one before, up to this size: few arrays, and little waste in small panels.</summary>
     private const int LongestArray = 16 << 20;
 
+    /// <summary>Up to this size a store stays in a core's second-level cache from pass to pass.</summary>
+    private const int NearBytes = 2 << 20;
+
     private readonly List<(byte[] Bytes, int Start)> places = [];
     private int free;
     private long bytes;
@@ -45,6 +48,24 @@ public sealed class MemoryBlockStore(BlockFormat format) : BlockStore(format)
 
     private sealed class MemoryReader(MemoryBlockStore store) : BlockReader(store.Format)
     {
-        private protected override (byte[] Bytes, int Start) Fetch(DesignBlock block) => store.places[block.Index];
+        private byte seen;
+
+        private protected override (byte[] Bytes, int Start) Fetch(DesignBlock block)
+        {
+            var (bytes, start) = store.places[block.Index];
+            if (store.Bytes > NearBytes) seen ^= Touch(bytes.AsSpan(start, store.Format.Bytes(block.Lanes)));
+            return (bytes, start);
+        }
+
+        /// <summary>
+        /// Reads one byte of each cache line in one forward stream. A pass reads several columns side by side, and each is short: the machine's
+        /// prefetching, which follows streams, would start anew with every column. A gradient pass over 300,000 situations took a quarter longer so.
+        /// </summary>
+        private static byte Touch(ReadOnlySpan<byte> block)
+        {
+            byte all = 0;
+            for (var i = 0; i < block.Length; i += BlockFormat.Line) all ^= block[i];
+            return all;
+        }
     }
 }
