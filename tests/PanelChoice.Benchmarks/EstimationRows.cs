@@ -37,9 +37,9 @@ internal static class EstimationRows
             Repetitions,
             () => work.GradientPass(),
             () => result = StandardErrors.Compute(InferenceInput.From(work.Model, refitter), Analytic, WorkContext.Quiet),
-            () => InferenceInput.From(work.Model, refitter));
+            () => work.Likelihood.SumScores(work.Theta, work.PersonWeight));
         RatioTable.Row("5", "all analytic covariances after the fit / gradient pass", work.Label, times[1], times[0], Goal.AtMost(3));
-        RatioTable.Row("", "of which scores and what else a covariance needs to know", work.Label, times[2], times[0]);
+        RatioTable.Row("", "of which the pass that sums scores by person, and their products", work.Label, times[2], times[0]);
         CovarianceKind[] kinds = [CovarianceKind.Pooled, CovarianceKind.OuterProduct, CovarianceKind.Robust, CovarianceKind.Cluster, CovarianceKind.ClusterUncorrected];
         foreach (var kind in kinds)
             Agreement.Holds(result!.Covariances[kind].Matrix is not null, $"{work.Label}: {kind} was refused");

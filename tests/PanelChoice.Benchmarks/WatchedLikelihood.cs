@@ -32,6 +32,8 @@ internal sealed class WatchedLikelihood(IChoiceLikelihood watched) : IChoiceLike
         WriteDown("scores of a block", from);
     }
 
+    public SampleScores SumScores(ReadOnlySpan<double> parameters, ReadOnlySpan<double> personWeight) => throw new NotSupportedException();
+
     public double[] LogProbabilities(ReadOnlySpan<double> parameters) => throw new NotSupportedException();
 
     public double[] PersonInformation(ReadOnlySpan<double> parameters) => throw new NotSupportedException();

@@ -96,7 +96,7 @@ public sealed record InferenceInput(
             [.. free.Select(k => NullOf(k, model))],
             ContributionKind.Occasion,
             design.Situations,
-            threads => ScoreSums.Of(model, threads),
+            _ => ScoreSums.Of(model),
             [.. free.SelectMany(r => free.Select(c => -model.Hessian[(r * layout.Count) + c]))],
             (first, count) => ClusterParts(model, first, count),
             design.ClusterBy,

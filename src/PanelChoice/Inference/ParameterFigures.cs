@@ -15,6 +15,7 @@ internal sealed class ParameterFigures(
 {
     private const string WeightUnit = "It depends on the unit of the sampling weights, so no interval or p-value is made from it.";
 
+    private readonly Dictionary<CovarianceKind, double> critical = [];
     private readonly double[][] replicates = bootstrap is null ? [] : ByParameter(input, bootstrap);
 
     /// <summary>The figures of one free parameter.</summary>
@@ -59,7 +60,14 @@ internal sealed class ParameterFigures(
         if (covariance.Kind == CovarianceKind.Pooled && input.IsWeighted) return new KindFigures(se, null, null, WeightUnit);
         var reference = new ReferenceDistribution(covariance.DegreesOfFreedom);
         var (p, reason) = PValue(v, place, reference);
-        return new KindFigures(se, IntervalOf(place, se, reference.Critical(confidence)), p, reason);
+        return new KindFigures(se, IntervalOf(place, se, Critical(covariance.Kind, reference)), p, reason);
+    }
+
+    /// <summary>The half-width of an interval in standard errors, the same for all parameters of a kind.</summary>
+    private double Critical(CovarianceKind kind, ReferenceDistribution reference)
+    {
+        if (!critical.TryGetValue(kind, out var q)) critical[kind] = q = reference.Critical(confidence);
+        return q;
     }
 
     private Interval IntervalOf(int place, double se, double q)

@@ -13,23 +13,15 @@ internal static class Sandwich
         FixedChunks.Run(count, threads, (chunk, first, end) =>
         {
             var sum = new double[f * f];
-            for (var i = first; i < end; i++) AddOuter(rows.Span.Slice(i * f, f), sum);
+            for (var i = first; i < end; i++)
+            {
+                var row = rows.Span.Slice(i * f, f);
+                for (var r = 0; r < f; r++)
+                    for (var c = 0; c <= r; c++) sum[(r * f) + c] += row[r] * row[c];
+            }
+
             parts[chunk] = sum;
         });
-        return Total(parts, f);
-    }
-
-    /// <summary>Adds r r' to the lower triangle of a sum.</summary>
-    public static void AddOuter(ReadOnlySpan<double> row, double[] sum)
-    {
-        var f = row.Length;
-        for (var r = 0; r < f; r++)
-            for (var c = 0; c <= r; c++) sum[(r * f) + c] += row[r] * row[c];
-    }
-
-    /// <summary>The whole matrix of lower triangles that are added in their order.</summary>
-    public static double[] Total(double[][] parts, int f)
-    {
         var total = new double[f * f];
         foreach (var part in parts)
             for (var i = 0; i < total.Length; i++) total[i] += part[i];

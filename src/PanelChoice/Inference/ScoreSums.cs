@@ -1,7 +1,6 @@
 using System.Collections.Immutable;
 using System.Runtime.InteropServices;
 using PanelChoice.Estimation;
-using PanelChoice.Numerics;
 
 namespace PanelChoice.Inference;
 
@@ -26,64 +25,19 @@ public sealed record ScoreSums(ImmutableArray<double> OuterProduct, ImmutableArr
         return Of(Sandwich.OuterSum(scores, f, threads), byCluster);
     }
 
-    /// <summary>
-    /// The sums of a fitted model, block by block. Each of the fixed chunks of situations adds up its own outer products, and the scores of the persons
-    /// who begin in it, for whom it goes on beyond its end: where persons are the clusters, no sum has two parts. A cluster of several persons is
-    /// summed by one thread, in the order of situations.
-    /// </summary>
+    /// <summary>The sums of a fitted model, under its sampling weights. No bit depends on the threads of its likelihood.</summary>
     /// <param name="model">The model.</param>
-    /// <param name="threads">Threads, 1 or more; no bit depends on it.</param>
-    internal static ScoreSums Of(FittedModel model, int threads)
+    internal static ScoreSums Of(FittedModel model)
     {
         var design = model.Design;
-        var f = model.Layout.Free.Length;
-        var byCluster = new double[design.Clusters.Length * f];
-        var parts = new double[FixedChunks.Count(design.Situations)][];
-        var isPersonByPerson = design.Clusters.Length == design.Persons;
-        FixedChunks.Run(design.Situations, isPersonByPerson ? threads : 1, (chunk, first, end) =>
-        {
-            var outer = new double[f * f];
-            var row = new double[f];
-            Walk(model, first, end, (situation, person, score) =>
-            {
-                Weigh(score, design.PersonWeight[person], model.Layout.Free, row);
-                if (situation < end) Sandwich.AddOuter(row, outer);
-                var into = byCluster.AsSpan(design.ClusterOf[person] * f, f);
-                if (isPersonByPerson ? design.PersonStart[person] >= first : situation < end)
-                    for (var k = 0; k < f; k++) into[k] += row[k];
-            });
-            parts[chunk] = outer;
-        });
-        return Of(Sandwich.Total(parts, f), byCluster);
-    }
-
-    private delegate void ScoreVisitor(int situation, int person, ReadOnlySpan<double> score);
-
-    /// <summary>Visits the scores from a situation on to the end of the person who has the last one before <paramref name="end"/>.</summary>
-    private static void Walk(FittedModel model, int first, int end, ScoreVisitor visit)
-    {
-        var design = model.Design;
-        if (first == end) return;
+        var sums = model.Likelihood.SumScores(model.Parameters.AsSpan(), design.PersonWeight.AsSpan());
         var k = model.Layout.Count;
-        var person = design.PersonOf[first];
-        var last = design.PersonStart[design.PersonOf[end - 1] + 1];
-        var scores = Array.Empty<double>();
-        for (var b = design.BlockOf[first]; b < design.Blocks.Length && design.Blocks[b].FirstSituation < last; b++)
-        {
-            var block = design.Blocks[b];
-            if (scores.Length < block.Situations * k) scores = new double[block.Situations * k];
-            model.Likelihood.Scores(model.Parameters.AsSpan(), block, scores);
-            for (var s = Math.Max(first, block.FirstSituation); s < Math.Min(last, block.FirstSituation + block.Situations); s++)
-            {
-                if (s == design.PersonStart[person + 1]) person++;
-                visit(s, person, scores.AsSpan((s - block.FirstSituation) * k, k));
-            }
-        }
-    }
-
-    private static void Weigh(ReadOnlySpan<double> score, double weight, ImmutableArray<int> free, double[] row)
-    {
-        for (var i = 0; i < row.Length; i++) row[i] = weight * score[free[i]];
+        var free = model.Layout.Free;
+        var f = free.Length;
+        var byCluster = new double[design.Clusters.Length * f];
+        for (var p = 0; p < design.Persons; p++)
+            for (var i = 0; i < f; i++) byCluster[(design.ClusterOf[p] * f) + i] += sums.ByPerson[(p * k) + free[i]];
+        return Of([.. free.SelectMany(r => free.Select(c => sums.Products[(r * k) + c]))], byCluster);
     }
 
     private static ScoreSums Of(double[] outerProduct, double[] byCluster) =>

@@ -22,6 +22,11 @@ public enum Derivatives
 /// <param name="Hessian">K x K second derivatives, row by row, symmetric; empty when not asked for.</param>
 public sealed record LikelihoodEvaluation(double Value, ImmutableArray<double> Gradient, ImmutableArray<double> Hessian);
 
+/// <summary>Sums over the weighted scores w d log P of a sample's situations, by all K parameters, in the user's units.</summary>
+/// <param name="ByPerson">Persons x K: the sum over each person's situations, row by row.</param>
+/// <param name="Products">K x K: the sum over situations of a score times itself, row by row.</param>
+public sealed record SampleScores(double[] ByPerson, double[] Products);
+
 /// <summary>
 /// A log-likelihood that is a sum over the persons of a design. Parameters are the K of <see cref="ParameterLayout"/>, in the user's units.
 /// Every method is safe to call from several threads at once, and its result does not depend on the number of threads.
@@ -48,6 +53,11 @@ public interface IChoiceLikelihood
     /// <param name="block">One of the design's blocks.</param>
     /// <param name="scores">Receives the block's situations x K, row by row; may be longer.</param>
     void Scores(ReadOnlySpan<double> parameters, DesignBlock block, Span<double> scores);
+
+    /// <summary>Sums over weighted scores, without those of all situations ever standing side by side.</summary>
+    /// <param name="parameters">K parameters.</param>
+    /// <param name="personWeight">One weight for each of the design's persons, 0 or more.</param>
+    SampleScores SumScores(ReadOnlySpan<double> parameters, ReadOnlySpan<double> personWeight);
 
     /// <summary>Log P of each situation's choice, unweighted.</summary>
     double[] LogProbabilities(ReadOnlySpan<double> parameters);

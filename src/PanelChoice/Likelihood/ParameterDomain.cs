@@ -22,6 +22,10 @@ internal static class ParameterDomain
         derivatives >= Derivatives.Gradient ? [.. Nan(parameters)] : [],
         derivatives == Derivatives.Hessian ? [.. Nan(parameters * parameters)] : []);
 
+    /// <summary>The sums of scores outside it.</summary>
+    public static SampleScores NoScores(ChoiceDesign design) =>
+        new(Nan(design.Persons * design.Layout.Count), Nan(design.Layout.Count * design.Layout.Count));
+
     /// <summary>That many NaN.</summary>
     public static double[] Nan(int count)
     {

@@ -116,6 +116,32 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
         }
     }
 
+    public SampleScores SumScores(ReadOnlySpan<double> parameters, ReadOnlySpan<double> personWeight)
+    {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.NoScores(Design);
+        var work = new Situation(Design, form, parameters.ToArray());
+        var byPerson = new double[Design.Persons * K];
+        var products = new double[K * K];
+        var score = new double[K];
+        for (var person = 0; person < Design.Persons; person++)
+        {
+            if (personWeight[person] == 0) continue;
+            for (var s = Design.PersonStart[person]; s < Design.PersonStart[person + 1]; s++)
+            {
+                Array.Clear(score);
+                work.Load(s);
+                work.AddGradient(personWeight[person], score);
+                for (var k = 0; k < K; k++)
+                {
+                    byPerson[(person * K) + k] += score[k];
+                    for (var q = 0; q < K; q++) products[(k * K) + q] += score[k] * score[q];
+                }
+            }
+        }
+
+        return new SampleScores(byPerson, products);
+    }
+
     public double[] LogProbabilities(ReadOnlySpan<double> parameters)
     {
         if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(Design.Situations);

@@ -29,6 +29,7 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
     private readonly int threads;
     private readonly ConcurrentBag<StripWork> idle = [];
     private readonly ConcurrentBag<ReplicateWork> idleReplicates = [];
+    private readonly ConcurrentBag<ScoreWork> idleScores = [];
 
     /// <summary>The kernel on a design.</summary>
     /// <param name="design">The design.</param>
@@ -93,6 +94,27 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
         work.Begin(parameters);
         work.Scores(block, scores);
         idle.Add(work);
+    }
+
+    public SampleScores SumScores(ReadOnlySpan<double> parameters, ReadOnlySpan<double> personWeight)
+    {
+        if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.NoScores(Design);
+        var theta = parameters.ToArray();
+        var weight = personWeight.ToArray();
+        var byPerson = new double[Design.Persons * K];
+        var parts = new double[FixedChunks.Count(Design.Blocks.Length) * K * K];
+        FixedChunks.Run(Design.Blocks.Length, threads, (chunk, first, end) =>
+        {
+            if (!idleScores.TryTake(out var work)) work = new ScoreWork(plan);
+            work.Begin(theta);
+            for (var b = first; b < end; b++) work.AddBlock(Design.Blocks[b], weight, byPerson);
+            work.Flush(parts.AsSpan(chunk * K * K, K * K));
+            idleScores.Add(work);
+        });
+
+        var total = new double[K * K];
+        for (var i = 0; i < parts.Length; i++) total[i % total.Length] += parts[i];
+        return new SampleScores(byPerson, total);
     }
 
     public double[] LogProbabilities(ReadOnlySpan<double> parameters)

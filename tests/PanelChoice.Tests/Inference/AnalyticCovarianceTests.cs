@@ -71,14 +71,12 @@ public class AnalyticCovarianceTests
     }
 
     [Fact]
-    public void With_one_occasion_per_person_robust_equals_clustered_without_the_factor_to_the_bit()
+    public void With_one_occasion_per_person_robust_equals_clustered_without_the_factor()
     {
         var design = Small(5, 150, 1).Design();
         var (model, refitter) = NewtonRefitter.Fit(design, design.PlainStart());
         var result = StandardErrors.Compute(InferenceInput.From(model, refitter), Settings(), WorkContext.Quiet);
-        Assert.Equal(
-            result.Covariances[CovarianceKind.Robust].Matrix!.ToRowMajorArray(),
-            result.Covariances[CovarianceKind.ClusterUncorrected].Matrix!.ToRowMajorArray());
+        Same(result.Covariances[CovarianceKind.Robust].Matrix!, result.Covariances[CovarianceKind.ClusterUncorrected], 1e-12);
         Assert.Contains(result.Covariances[CovarianceKind.Cluster].Cautions, c => c.Contains("one occasion", StringComparison.Ordinal));
     }
 

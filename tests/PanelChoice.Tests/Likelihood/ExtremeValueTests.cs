@@ -65,7 +65,12 @@ public class ExtremeValueTests
             Assert.True(double.IsNaN(all.Value));
             Assert.Equal(point.Length, all.Gradient.Length);
             Assert.Equal(point.Length * point.Length, all.Hessian.Length);
-            Assert.All([.. all.Gradient, .. all.Hessian, .. likelihood.LogProbabilities(point), .. likelihood.Scores(point), .. likelihood.PersonInformation(point)],
+            var sums = likelihood.SumScores(point, made.Weight);
+            Assert.All(
+                [
+                    .. all.Gradient, .. all.Hessian, .. likelihood.LogProbabilities(point), .. likelihood.Scores(point), .. likelihood.PersonInformation(point),
+                    .. sums.ByPerson, .. sums.Products,
+                ],
                 x => Assert.True(double.IsNaN(x)));
         }
     }

@@ -61,6 +61,34 @@ public class KernelAgreementTests
 
     [Theory]
     [MemberData(nameof(Kernels.Table), MemberType = typeof(Kernels))]
+    public void Sums_of_scores_are_those_of_the_scores_one_by_one(string kernel, NestedLogitForm form)
+    {
+        foreach (var made in LargerCases())
+        {
+            var likelihood = Kernels.Create(kernel, made.Design(form), form);
+            var (point, K) = (made.Point, made.Point.Length);
+            double[] weight = [.. made.Weight.Select((w, p) => p % 3 == 1 ? 0 : w + (0.5 * p))];
+            var scores = likelihood.Scores(point);
+            var byPerson = new double[weight.Length * K];
+            var products = new double[K * K];
+            for (var s = 0; s < likelihood.Design.Situations; s++)
+            {
+                var person = likelihood.Design.PersonOf[s];
+                for (var k = 0; k < K; k++)
+                {
+                    byPerson[(person * K) + k] += weight[person] * scores[(s * K) + k];
+                    for (var q = 0; q < K; q++) products[(k * K) + q] += weight[person] * scores[(s * K) + k] * weight[person] * scores[(s * K) + q];
+                }
+            }
+
+            var found = likelihood.SumScores(point, weight);
+            Assert.InRange(Kernels.Distance(byPerson, found.ByPerson), 0, 1e-12);
+            Assert.InRange(Kernels.Distance(products, found.Products), 0, 1e-12);
+        }
+    }
+
+    [Theory]
+    [MemberData(nameof(Kernels.Table), MemberType = typeof(Kernels))]
     public void Less_asked_for_gives_the_same_bits(string kernel, NestedLogitForm form)
     {
         var made = RandomTreeCase.Make(3, 30, 20);

@@ -41,10 +41,11 @@ public class SameBitsTests
     private static double[] Figures(IChoiceLikelihood likelihood, RandomTreeCase made)
     {
         var all = likelihood.Evaluate(made.Point, made.Weight, Derivatives.Hessian);
+        var sums = likelihood.SumScores(made.Point, made.Weight);
         return
         [
             all.Value, .. all.Gradient, .. all.Hessian, .. likelihood.Scores(made.Point), .. likelihood.LogProbabilities(made.Point),
-            .. likelihood.PersonInformation(made.Point),
+            .. likelihood.PersonInformation(made.Point), .. sums.ByPerson, .. sums.Products,
         ];
     }
 }
