@@ -20,6 +20,7 @@ internal sealed class BlockSurvey
     private readonly (int Parameter, int[] Alternatives, int[] Columns)[] coefficients;
     private readonly byte[] isOffered;
     private double[] values = [];
+    private double[] count = [];
     private byte[] varies = [];
     private byte[] more = [];
     private byte[] less = [];
@@ -48,7 +49,8 @@ internal sealed class BlockSurvey
         reader.Open(block);
         for (var i = 0; i < reader.ChosenMasks.Length; i++) if (reader.ChosenMasks[i] != 0) isEverChosen[i % design.Alternatives] = true;
         var tiles = block.Lanes / Tile;
-        if (varies.Length < tiles) (varies, more, less) = (new byte[tiles], new byte[tiles], new byte[tiles]);
+        if (varies.Length < tiles) (varies, more, less, count) = (new byte[tiles], new byte[tiles], new byte[tiles], new double[block.Lanes]);
+        CountOffered(tiles);
         foreach (var (k, alternatives, columns) in coefficients)
         {
             if (values.Length < block.Lanes * columns.Length) values = new double[block.Lanes * columns.Length];
@@ -61,12 +63,21 @@ internal sealed class BlockSurvey
 
             var units = columns[0] < 0 ? 1 : design.Store.Format.Columns[columns[0]].Units;
             squares[k] += SurveyColumn(block, alternatives) / (units * units);
-            Hand(block, k, Evidence.Varies, varies, byPerson);
-            Hand(block, k, Evidence.ChosenHasMore, more, byPerson);
-            Hand(block, k, Evidence.ChosenHasLess, less, byPerson);
+            Hand(block, k, byPerson);
         }
 
         return SurveyNests(block, byPerson);
+    }
+
+    private void CountOffered(int tiles)
+    {
+        var J = design.Alternatives;
+        for (var tile = 0; tile < tiles; tile++)
+        {
+            var sum = Vector512<double>.Zero;
+            foreach (var mask in reader.OfferedMasks.Slice(tile * J, J)) sum += Select(mask, Vector512<double>.One);
+            sum.StoreUnsafe(ref count[tile * Tile]);
+        }
     }
 
     private double SurveyColumn(DesignBlock block, int[] alternatives)
@@ -80,9 +91,7 @@ internal sealed class BlockSurvey
             var lane = (nuint)(tile * Tile);
             var offered = reader.OfferedMasks.Slice(tile * J, J);
             var chosen = reader.ChosenMasks.Slice(tile * J, J);
-            var count = Vector512<double>.Zero;
-            foreach (var mask in offered) count += Select(mask, Vector512<double>.One);
-
+            var size = Vector512.LoadUnsafe(ref count[0], lane);
             var own = Vector512<double>.Zero;
             var sum = Vector512<double>.Zero;
             var ofChosen = Vector512<double>.Zero;
@@ -95,18 +104,18 @@ internal sealed class BlockSurvey
                 own += lanes & Vector512<double>.One;
                 sum += lanes & x;
                 ofChosen += Select(chosen[alternatives[i]], x);
-                min = Vector512.ConditionalSelect(lanes, Vector512.Min(min, x), min);
-                max = Vector512.ConditionalSelect(lanes, Vector512.Max(max, x), max);
+                min = Vector512.ConditionalSelect(lanes, Vector512.MinNative(min, x), min);
+                max = Vector512.ConditionalSelect(lanes, Vector512.MaxNative(max, x), max);
             }
 
-            var others = count - own;
+            var others = size - own;
             var hasOthers = Vector512.GreaterThan(others, Vector512<double>.Zero);
-            min = Vector512.ConditionalSelect(hasOthers, Vector512.Min(min, Vector512<double>.Zero), min);
-            max = Vector512.ConditionalSelect(hasOthers, Vector512.Max(max, Vector512<double>.Zero), max);
-            var rounding = Vector512.Create(Rounding) * Vector512.Max(Vector512.Abs(min), Vector512.Abs(max));
+            min = Vector512.ConditionalSelect(hasOthers, Vector512.MinNative(min, Vector512<double>.Zero), min);
+            max = Vector512.ConditionalSelect(hasOthers, Vector512.MaxNative(max, Vector512<double>.Zero), max);
+            var rounding = Vector512.Create(Rounding) * Vector512.MaxNative(Vector512.Abs(min), Vector512.Abs(max));
             // In a lane where nothing is offered the difference is minus infinity and the comparison false.
             var spread = Vector512.GreaterThan(max - min, rounding);
-            var mean = sum / Vector512.Max(count, Vector512<double>.One);
+            var mean = sum / Vector512.MaxNative(size, Vector512<double>.One);
             var deviations = others * mean * mean;
             for (var i = 0; i < alternatives.Length; i++)
             {
@@ -124,29 +133,26 @@ internal sealed class BlockSurvey
     }
 
     /// <summary>Gives each person of the block the evidence that one of the person's lanes has.</summary>
-    private void Hand(DesignBlock block, int k, Evidence evidence, byte[] found, Evidence[] byPerson)
+    private void Hand(DesignBlock block, int k, Evidence[] byPerson)
     {
         var K = design.Layout.Count;
         var end = block.FirstSituation + block.Situations;
-        for (int situation = block.FirstSituation, person = design.PersonOf[situation]; situation < end; person++)
+        var lane = 0;
+        for (var person = design.PersonOf[block.FirstSituation]; lane < block.Situations; person++)
         {
-            var next = design.PersonStart[person + 1];
-            if (HasAny(found, situation - block.FirstSituation, next - block.FirstSituation)) byPerson[(person * K) + k] |= evidence;
-            situation = next;
-        }
-    }
+            var next = Math.Min(design.PersonStart[person + 1], end) - block.FirstSituation;
+            int anyVaries = 0, anyMore = 0, anyLess = 0;
+            for (var tile = lane / Tile; tile <= (next - 1) / Tile; tile++)
+            {
+                var own = (tile == lane / Tile ? 0xFF << (lane % Tile) : 0xFF) & (tile == (next - 1) / Tile ? 0xFF >> (Tile - 1 - ((next - 1) % Tile)) : 0xFF);
+                anyVaries |= varies[tile] & own;
+                anyMore |= more[tile] & own;
+                anyLess |= less[tile] & own;
+            }
 
-    private static bool HasAny(byte[] found, int from, int to)
-    {
-        for (var tile = from / Tile; tile <= (to - 1) / Tile; tile++)
-        {
-            var bits = (int)found[tile];
-            if (tile == from / Tile) bits &= 0xFF << (from % Tile);
-            if (tile == (to - 1) / Tile) bits &= 0xFF >> (Tile - 1 - ((to - 1) % Tile));
-            if (bits != 0) return true;
+            byPerson[(person * K) + k] |= (anyVaries != 0 ? Evidence.Varies : 0) | (anyMore != 0 ? Evidence.ChosenHasMore : 0) | (anyLess != 0 ? Evidence.ChosenHasLess : 0);
+            lane = next;
         }
-
-        return false;
     }
 
     /// <summary>Marks the nests that are two or more wide and counts the offered alternatives.</summary>
@@ -159,8 +165,13 @@ internal sealed class BlockSurvey
         for (var n = 0; n < nodes.Length; n++)
         {
             if (design.Layout.NodeParameter[n] is not (>= 0 and var k)) continue;
-            for (var tile = 0; tile < block.Lanes / Tile; tile++) varies[tile] = WideAt(reader.OfferedMasks.Slice(tile * J, J), n);
-            Hand(block, k, Evidence.Varies, varies, byPerson);
+            for (var tile = 0; tile < block.Lanes / Tile; tile++)
+            {
+                varies[tile] = WideAt(reader.OfferedMasks.Slice(tile * J, J), n);
+                more[tile] = less[tile] = 0;
+            }
+
+            Hand(block, k, byPerson);
         }
 
         return cells;

@@ -22,6 +22,9 @@ internal static class Identification
     /// <summary>Share of a column's variance left unexplained by the earlier columns below which it is a suspect.</summary>
     private const double Suspect = 1e-9;
 
+    /// <summary>Share of a column's variance left unexplained on a part of the sample above which the whole needs no look.</summary>
+    private const double Clear = 1e-6;
+
     /// <summary>
     /// Share of a column's standard deviation left unexplained below which it is redundant: what rounding a column to single precision can
     /// leave (6e-8), with a margin of ten.
@@ -48,8 +51,10 @@ internal static class Identification
             else redundant.Add(new Redundancy(k, []));
         }
 
-        var cross = CrossProducts(likelihood, form, varying, scale);
         var n = varying.Count;
+        // More persons can only tell more columns apart: what a part of them tells needs no second look.
+        if (ThinnedSample.Weights(design) is { } part && TellsAll(CrossProducts(likelihood, form, varying, scale, part), n)) return redundant.DrainToImmutable();
+        var cross = CrossProducts(likelihood, form, varying, scale, Ones(design.Persons));
         var kept = new List<int>();
         // Rows of the Cholesky factor, one for each kept column, over all columns.
         var factor = new List<double[]>();
@@ -83,6 +88,24 @@ internal static class Identification
         return [.. redundant.OrderBy(r => r.Parameter)];
     }
 
+    /// <summary>Whether a Cholesky factorisation leaves every column a clear part of its variance.</summary>
+    private static bool TellsAll(double[] cross, int n)
+    {
+        var factor = (double[])cross.Clone();
+        for (var i = 0; i < n; i++)
+        {
+            var left = factor[(i * n) + i];
+            if (!(left > Clear * cross[(i * n) + i])) return false;
+            for (var j = i + 1; j < n; j++)
+            {
+                var share = factor[(i * n) + j] / left;
+                for (var q = j; q < n; q++) factor[(j * n) + q] -= share * factor[(i * n) + q];
+            }
+        }
+
+        return true;
+    }
+
     /// <summary>Coefficients of column i on the kept columns, by back substitution.</summary>
     private static double[] Combination(List<double[]> factor, List<int> kept, int i)
     {
@@ -113,7 +136,7 @@ internal static class Identification
     private static bool IsPlain(ParameterLayout layout) => layout.Nests.IsEmpty;
 
     /// <summary>The cross-product matrix of the scaled columns.</summary>
-    private static double[] CrossProducts(IChoiceLikelihood likelihood, NestedLogitForm form, List<int> varying, double[] scale)
+    private static double[] CrossProducts(IChoiceLikelihood likelihood, NestedLogitForm form, List<int> varying, double[] scale, double[] weight)
     {
         var layout = likelihood.Design.Layout;
         var K = layout.Count;
@@ -124,7 +147,7 @@ internal static class Identification
             at[k] = form == NestedLogitForm.UtilityScaled ? 1 : layout.Parameters[k].Fixed ?? 0.4 + (0.4 * (k - layout.Coefficients + 1) / (K - layout.Coefficients + 1));
         }
 
-        var hessian = likelihood.Evaluate(at, Ones(likelihood.Design.Persons), Derivatives.Hessian).Hessian;
+        var hessian = likelihood.Evaluate(at, weight, Derivatives.Hessian).Hessian;
         var n = varying.Count;
         var cross = new double[n * n];
         for (var i = 0; i < n; i++)

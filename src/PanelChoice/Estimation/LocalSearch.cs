@@ -35,7 +35,11 @@ internal enum SearchEndKind
 /// <param name="Last">The optimiser's own account.</param>
 internal sealed record SearchEnd(
     SearchEndKind Kind, double[] Parameters, double LogLikelihood, int Iterations, ImmutableArray<int> About, double[] Direction, int Known,
-    Minimum Last);
+    Minimum Last)
+{
+    /// <summary>The log-likelihood with all its derivatives at the point, where the optimiser's last evaluations include it; null otherwise.</summary>
+    public LikelihoodEvaluation? Evaluation { get; init; }
+}
 
 /// <summary>A maximum found before, with what is needed to see that another search runs into it.</summary>
 /// <param name="Parameters">All K parameters.</param>
@@ -141,7 +145,10 @@ internal sealed class LocalSearch(
         }
 
         return new SearchEnd(
-            kind, function.Parameters(minimum.Point), function.LogLikelihood(minimum.Value), minimum.Iterations, about, direction, joined, minimum);
+            kind, function.Parameters(minimum.Point), function.LogLikelihood(minimum.Value), minimum.Iterations, about, direction, joined, minimum)
+        {
+            Evaluation = settings.UncheckedLastStep > 0 ? null : function.Behind(minimum.At),
+        };
     }
 
     /// <summary>Whether the likelihood is no lower with a dissimilarity another factor 2 further out and everything else following it.</summary>

@@ -54,7 +54,7 @@ public static class MaximumLikelihood
             found.Add(findings.Boundary(best, result.Maxima.IsEmpty ? null : result.Maxima[0].LogLikelihood));
 
         var function = new MinusLogLikelihood(likelihood, weight, survey.Scale, active, best.Parameters);
-        var final = likelihood.Evaluate(best.Parameters, weight, Derivatives.Hessian);
+        var final = best.Evaluation ?? likelihood.Evaluate(best.Parameters, weight, Derivatives.Hessian);
         var curvature = Curvature.Of(likelihood, function, function.InCoordinates(best.Parameters, final), best.Parameters, weight);
         // On a flat ridge the optimiser may stop for want of a better point: then the ridge is the finding, not the stop.
         var isSettled = kind == SearchEndKind.Maximum || (kind == SearchEndKind.Stopped && curvature.GradientNorm < SettledGradient);

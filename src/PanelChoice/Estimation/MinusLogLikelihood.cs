@@ -17,6 +17,8 @@ internal sealed class MinusLogLikelihood
     private readonly double[] personWeight;
     private readonly double[] scale;
     private readonly double[] all;
+    private (SmoothValue? Value, LikelihoodEvaluation? At) last;
+    private (SmoothValue? Value, LikelihoodEvaluation? At) beforeLast;
 
     /// <summary>The function over some of the parameters; the others are held.</summary>
     /// <param name="likelihood">The likelihood.</param>
@@ -112,8 +114,15 @@ internal sealed class MinusLogLikelihood
     public SmoothValue Evaluate(ReadOnlySpan<double> x)
     {
         var parameters = Parameters(x);
-        return InCoordinates(parameters, likelihood.Evaluate(parameters, personWeight, Derivatives.Hessian));
+        var at = likelihood.Evaluate(parameters, personWeight, Derivatives.Hessian);
+        var value = InCoordinates(parameters, at);
+        (beforeLast, last) = (last, (value, at));
+        return value;
     }
+
+    /// <summary>The log-likelihood behind one of the last two values this function gave; null for any other.</summary>
+    public LikelihoodEvaluation? Behind(SmoothValue value) =>
+        ReferenceEquals(last.Value, value) ? last.At : ReferenceEquals(beforeLast.Value, value) ? beforeLast.At : null;
 
     /// <summary>What the likelihood is at a point, with its derivatives by the coordinates.</summary>
     /// <param name="parameters">All K parameters.</param>

@@ -25,6 +25,7 @@ internal sealed class ReferenceFits
         var counts = new Dictionary<string, (int[] Offered, double[] Chosen)>(StringComparer.Ordinal);
         var bySpan = counts.GetAlternateLookup<ReadOnlySpan<char>>();
         var key = new char[J];
+        double[]? chosen = null;
         var reader = design.Store.Reader();
         foreach (var block in design.Blocks)
         {
@@ -32,14 +33,37 @@ internal sealed class ReferenceFits
             for (int lane = 0, person = design.PersonOf[block.FirstSituation]; lane < block.Situations; lane++)
             {
                 if (block.FirstSituation + lane == design.PersonStart[person + 1]) person++;
-                for (var j = 0; j < J; j++) key[j] = reader.IsOffered(lane, j) ? '1' : '0';
+                // What is on offer seldom changes from one occasion to the next.
+                if (IsAsBefore(reader, lane, key) && chosen is not null)
+                {
+                    chosen[reader.ChosenAt(lane)] += personWeight[person];
+                    continue;
+                }
+
                 if (!bySpan.TryGetValue(key, out var set))
                     counts[new string(key)] = set = ([.. Enumerable.Range(0, J).Where(j => key[j] == '1')], new double[J]);
-                set.Chosen[reader.ChosenAt(lane)] += personWeight[person];
+                chosen = set.Chosen;
+                chosen[reader.ChosenAt(lane)] += personWeight[person];
             }
         }
 
         return new ReferenceFits(J, [.. counts.OrderBy(c => c.Key, StringComparer.Ordinal).Select(c => c.Value)]);
+    }
+
+    /// <summary>Whether a lane offers what the key says; if not, the key is changed.</summary>
+    private static bool IsAsBefore(BlockReader reader, int lane, char[] key)
+    {
+        var bit = lane % ChoiceDesign.TileLanes;
+        var masks = reader.OfferedMasks.Slice(lane / ChoiceDesign.TileLanes * key.Length, key.Length);
+        var same = true;
+        for (var j = 0; j < masks.Length; j++)
+        {
+            var now = (char)('0' + (masks[j] >> bit & 1));
+            same &= now == key[j];
+            key[j] = now;
+        }
+
+        return same;
     }
 
     /// <summary>The log-likelihood with every offered alternative equally likely.</summary>
