@@ -15,7 +15,7 @@ internal static class BootstrapCommand
     /// <param name="options">What every command takes.</param>
     public static int Run(string study, RefitShare share, string folder, RunOptions options)
     {
-        if (!KernelChoice.IsKnown(options)) return ExitCode.Usage;
+        if (!KernelChoice.IsToBeHad(options)) return ExitCode.Usage;
         try
         {
             return StudyRun.With(

@@ -14,7 +14,7 @@ internal static class EstimateCommand
     /// <param name="options">What every command takes.</param>
     public static int Run(string study, string? folder, bool strict, RunOptions options)
     {
-        if (!KernelChoice.IsKnown(options)) return ExitCode.Usage;
+        if (!KernelChoice.IsToBeHad(options)) return ExitCode.Usage;
         return StudyRun.With(
             study, options,
             specification =>

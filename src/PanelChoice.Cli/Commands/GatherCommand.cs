@@ -14,7 +14,7 @@ internal static class GatherCommand
     /// <param name="options">What every command takes.</param>
     public static int Run(string folder, string? study, string? output, bool strict, RunOptions options)
     {
-        if (!KernelChoice.IsKnown(options)) return ExitCode.Usage;
+        if (!KernelChoice.IsToBeHad(options)) return ExitCode.Usage;
         var read = GatheredParts.Read(folder);
         if (read.Value is not { } parts) return StudyRun.Reject(options, read.Problems);
         if (study is null && !File.Exists(parts.StudyFile))

@@ -44,8 +44,11 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
 
     public ChoiceDesign Design { get; }
 
-    public string Kernel { get; } =
+    /// <summary>The kernel's name in this process: it says how wide the machine's vectors are.</summary>
+    public static string Name { get; } =
         Vector512.IsHardwareAccelerated ? "vector512" : Vector256.IsHardwareAccelerated ? "vector256" : "vector128";
+
+    public string Kernel => Name;
 
     private int K => plan.K;
 

@@ -24,8 +24,23 @@ public class LikelihoodKernelTests
         var design = RandomTreeCase.Make(1).Design(NestedLogitForm.UtilityScaled);
         var refusal = Assert.Throws<ArgumentException>(() => LikelihoodKernel.Create(design, NestedLogitForm.UtilityScaled, 1, "quick"));
         Assert.Contains("PANELCHOICE_KERNEL", refusal.Message, StringComparison.Ordinal);
-        Assert.Contains("\"quick\"", refusal.Message, StringComparison.Ordinal);
-        Assert.Contains("\"scalar\" or \"vector\"", refusal.Message, StringComparison.Ordinal);
+        Assert.Contains("'quick'", refusal.Message, StringComparison.Ordinal);
+        Assert.Contains("scalar, vector, vector512 or vector256", refusal.Message, StringComparison.Ordinal);
+    }
+
+    [Theory]
+    [InlineData("vector256", "vector512", "DOTNET_EnableAVX512=0")]
+    [InlineData("vector512", "vector256", "this process has vector256")]
+    [InlineData("vector512", "vector512", null)]
+    [InlineData("vector256", "vector256", null)]
+    [InlineData("vector", "vector256", null)]
+    [InlineData("scalar", "vector512", null)]
+    [InlineData("vector256", "vector128", "this process has vector128")]
+    public void A_width_is_given_where_the_process_has_it_and_otherwise_refused_with_the_remedy(string asked, string here, string? says)
+    {
+        var refusal = LikelihoodKernel.Refusal(asked, here);
+        if (says is null) Assert.Null(refusal);
+        else Assert.Contains(says, refusal, StringComparison.Ordinal);
     }
 
     [Theory]
