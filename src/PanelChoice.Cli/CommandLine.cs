@@ -128,8 +128,26 @@ internal static class CommandLine
         var study = Study();
         var output = Path("--out", "Write result.json, coefficients.csv and replicates.parquet to this folder.", "DIR");
         var strict = Strict();
-        var command = new Command("estimate", "The main job: fit, standard errors side by side, diagnostics, verdict.") { study, output, strict };
-        command.SetAction(r => EstimateCommand.Run(r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict), options(r)));
+        var store = Path("--store", "Keep the built design in this file, or take it from there, and read it as it is needed: for panels larger than memory.", "FILE");
+        var memory = new Option<int?>("--memory")
+        {
+            Description = $"With --store: megabytes that the panel may take in memory (default {KeptDesign.UsualMegabytes}).", HelpName = "MB",
+            CustomParser = result =>
+            {
+                var text = result.Tokens[0].Value;
+                if (int.TryParse(text, System.Globalization.NumberStyles.None, System.Globalization.CultureInfo.InvariantCulture, out var n) && n >= 1) return n;
+                result.AddError($"--memory needs a whole number of megabytes, not '{text}'.");
+                return null;
+            },
+        };
+        var command = new Command("estimate", "The main job: fit, standard errors side by side, diagnostics, verdict.") { study, output, strict, store, memory };
+        command.Validators.Add(result =>
+        {
+            if (result.GetResult(memory) is not null && result.GetResult(store) is null) result.AddError("--memory says how much of a store is held in memory, so it needs --store.");
+        });
+        command.SetAction(r => EstimateCommand.Run(
+            r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict),
+            r.GetValue(store) is { } file ? new KeptDesign(file, r.GetValue(memory) ?? KeptDesign.UsualMegabytes) : null, options(r)));
         return command;
     }
 

@@ -1,6 +1,5 @@
 using PanelChoice.Covariates;
 using PanelChoice.Data;
-using PanelChoice.Design;
 using PanelChoice.Diagnostics;
 using PanelChoice.Estimation;
 using PanelChoice.Findings;
@@ -22,12 +21,27 @@ public static class PanelAnalysis
     /// <returns>The result, or every problem found with the data.</returns>
     /// <exception cref="OperationCanceledException">Cancelled.</exception>
     public static Checked<AnalysisResult> Run(StudySpecification study, WorkContext work) =>
-        Prepare(study, work).Then(input => Checked<AnalysisResult>.Good(Analyse(study, input, work)));
+        Run(study, PanelAnalysisSample.Read(study, work), work);
 
-    /// <summary>The first half: reads and checks the data and builds the covariates.</summary>
+    /// <summary>The main job on a sample that was read already; it is let go of at the end.</summary>
+    /// <param name="study">The study.</param>
+    /// <param name="read">The sample, or the problems that kept it from being made.</param>
+    /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
+    /// <returns>The result, or the problems.</returns>
+    /// <exception cref="OperationCanceledException">Cancelled.</exception>
+    public static Checked<AnalysisResult> Run(StudySpecification study, Checked<PanelAnalysisSample> read, WorkContext work)
+    {
+        ArgumentNullException.ThrowIfNull(read);
+        return read.Then(sample =>
+        {
+            using (sample) return Checked<AnalysisResult>.Good(Conclude(Fit(study, sample, work), work));
+        });
+    }
+
+    /// <summary>Reads and checks the data and builds the covariates, all in memory, for who wants to see them.</summary>
     /// <param name="study">The study.</param>
     /// <param name="work">Progress and cancellation.</param>
-    /// <returns>What an analysis starts from, or every problem found.</returns>
+    /// <returns>The panel and its covariates, or every problem found.</returns>
     /// <exception cref="OperationCanceledException">Cancelled.</exception>
     public static Checked<PanelAnalysisInput> Prepare(StudySpecification study, WorkContext work)
     {
@@ -47,31 +61,22 @@ public static class PanelAnalysis
         }
     }
 
-    /// <summary>The second half: everything after the covariates.</summary>
-    /// <param name="study">The study.</param>
-    /// <param name="input">What <see cref="Prepare"/> made.</param>
-    /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
-    /// <exception cref="OperationCanceledException">Cancelled.</exception>
-    public static AnalysisResult Analyse(StudySpecification study, PanelAnalysisInput input, WorkContext work) =>
-        Conclude(Fit(study, input, work), work);
-
     /// <summary>The fit, and what standard errors are made from.</summary>
     /// <param name="study">The study.</param>
-    /// <param name="input">What <see cref="Prepare"/> made.</param>
+    /// <param name="sample">The sample and its design.</param>
     /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
     /// <exception cref="OperationCanceledException">Cancelled.</exception>
-    public static PanelAnalysisFit Fit(StudySpecification study, PanelAnalysisInput input, WorkContext work)
+    public static PanelAnalysisFit Fit(StudySpecification study, PanelAnalysisSample sample, WorkContext work)
     {
         ArgumentNullException.ThrowIfNull(study);
-        ArgumentNullException.ThrowIfNull(input);
+        ArgumentNullException.ThrowIfNull(sample);
         ArgumentNullException.ThrowIfNull(work);
         var form = study.Estimate.Form;
-        var design = ChoiceDesignBuilder.Build(input.Covariates, input.Tree, study.Nests, form);
-        var likelihood = LikelihoodKernel.Create(design, form, work.Threads);
+        var likelihood = LikelihoodKernel.Create(sample.Design, form, work.Threads);
         var model = MaximumLikelihood.Fit(likelihood, form, study.Estimate, work);
         // Sentences of later stages name clusters; from here on they know them by pseudonyms alone.
-        var pseudonyms = Pseudonyms.Of(input.Panel.Table.Sha256, design.Clusters);
-        return new PanelAnalysisFit(study, input, model, InferenceInput.From(model, new ClusterRefitter(model, work.Threads), pseudonyms));
+        var pseudonyms = Pseudonyms.Of(sample.Sample.Sha256, sample.Design.Clusters);
+        return new PanelAnalysisFit(study, sample, model, InferenceInput.From(model, new ClusterRefitter(model, work.Threads), pseudonyms));
     }
 
     /// <summary>Everything after the fit: standard errors, the test of independence, what was found.</summary>
@@ -82,15 +87,15 @@ public static class PanelAnalysis
     {
         ArgumentNullException.ThrowIfNull(fit);
         ArgumentNullException.ThrowIfNull(work);
-        var (study, input, model, evidence) = fit;
+        var (study, sample, model, evidence) = fit;
         var inference = StandardErrors.Compute(evidence, study.Inference, work);
-        var diagnostics = IndependenceBattery.Run(study, input.Covariates, model, work);
-        var stages = new FindingsInput(study, input.Covariates, model, inference, diagnostics);
+        var diagnostics = IndependenceBattery.Run(study, sample.Sample, model, sample.Static, work);
+        var stages = new FindingsInput(study, sample.Sample, model, inference, diagnostics);
         return ResultBuilder.Build(stages, FindingList.Of(stages));
     }
 }
 
-/// <summary>What an analysis starts from.</summary>
+/// <summary>A panel and its covariates in memory.</summary>
 /// <param name="Panel">The recorded panel.</param>
 /// <param name="Tree">The nest tree over its alternatives.</param>
 /// <param name="Covariates">The covariates on the estimation sample.</param>
@@ -98,7 +103,7 @@ public sealed record PanelAnalysisInput(ChoicePanel Panel, NestTree Tree, Covari
 
 /// <summary>A fitted model on its way to standard errors.</summary>
 /// <param name="Study">The study.</param>
-/// <param name="Input">The panel and its covariates.</param>
+/// <param name="Sample">The sample and its design.</param>
 /// <param name="Model">The fitted model.</param>
 /// <param name="Evidence">What standard errors are made from.</param>
-public sealed record PanelAnalysisFit(StudySpecification Study, PanelAnalysisInput Input, FittedModel Model, InferenceInput Evidence);
+public sealed record PanelAnalysisFit(StudySpecification Study, PanelAnalysisSample Sample, FittedModel Model, InferenceInput Evidence);

@@ -25,9 +25,9 @@ public static class PanelAnalysisParts
         ArgumentNullException.ThrowIfNull(share);
         ArgumentException.ThrowIfNullOrWhiteSpace(folder);
         ArgumentNullException.ThrowIfNull(work);
-        return PanelAnalysis.Prepare(study, work).Then(input =>
+        return PanelAnalysisSample.Read(study, work).Then(sample =>
         {
-            var fit = PanelAnalysis.Fit(study, input, work);
+            var fit = PanelAnalysis.Fit(study, sample, work);
             var plan = RefitPlan.Of(fit.Evidence, study.Inference);
             Directory.CreateDirectory(folder);
             var header = new PartHeader(share, SeenFrom(folder, study.File), OriginOf(fit, plan));
@@ -56,17 +56,17 @@ public static class PanelAnalysisParts
         ArgumentNullException.ThrowIfNull(parts);
         ArgumentNullException.ThrowIfNull(work);
         if (parts.Against(study) is { } otherStudy) return Checked<AnalysisResult>.Bad([otherStudy]);
-        return PanelAnalysis.Prepare(study, work).Then(input =>
+        return PanelAnalysisSample.Read(study, work).Then(sample =>
         {
-            if (parts.Against(study, input.Panel.Table.Sha256) is { } otherData) return Checked<AnalysisResult>.Bad([otherData]);
-            var fit = PanelAnalysis.Fit(study, input, work);
+            if (parts.Against(study, sample.Sample.Sha256) is { } otherData) return Checked<AnalysisResult>.Bad([otherData]);
+            var fit = PanelAnalysis.Fit(study, sample, work);
             return parts.Against(study, OriginOf(fit, RefitPlan.Of(fit.Evidence, study.Inference))) is { } other
                 ? Checked<AnalysisResult>.Bad([other])
                 : Checked<AnalysisResult>.Good(PanelAnalysis.Conclude(fit with { Evidence = fit.Evidence with { Journal = parts } }, work));
         });
     }
 
-    private static RefitOrigin OriginOf(PanelAnalysisFit fit, RefitPlan plan) => RefitOrigin.Of(fit.Study, fit.Input.Panel.Table.Sha256, fit.Model, plan);
+    private static RefitOrigin OriginOf(PanelAnalysisFit fit, RefitPlan plan) => RefitOrigin.Of(fit.Study, fit.Sample.Sample.Sha256, fit.Model, plan);
 
     /// <summary>Where the study lies as seen from the folder, so that both may be moved together or mounted elsewhere.</summary>
     private static string SeenFrom(string folder, string study) =>

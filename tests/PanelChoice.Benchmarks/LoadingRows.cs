@@ -1,5 +1,4 @@
 using System.Globalization;
-using PanelChoice.Design;
 using PanelChoice.Numerics;
 using PanelChoice.Study;
 
@@ -43,8 +42,7 @@ internal static class LoadingRows
     {
         var from = ThreadClock.Seconds();
         var study = StudyFileReader.Read(path).Value!;
-        var input = PanelAnalysis.Prepare(study, WorkContext.Quiet).Value!;
-        var design = ChoiceDesignBuilder.Build(input.Covariates, input.Tree, study.Nests, study.Estimate.Form);
-        Console.WriteLine($"{ThreadClock.Seconds() - from:R} {design.Store.Bytes}");
+        using var sample = PanelAnalysisSample.Read(study, WorkContext.Quiet).Value!;
+        Console.WriteLine($"{ThreadClock.Seconds() - from:R} {sample.Design.Store.Bytes}");
     }
 }

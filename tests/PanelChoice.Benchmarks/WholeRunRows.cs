@@ -1,4 +1,3 @@
-using PanelChoice.Design;
 using PanelChoice.Diagnostics;
 using PanelChoice.Estimation;
 using PanelChoice.Inference;
@@ -52,11 +51,10 @@ internal static class WholeRunRows
 
         void Round(int repetition)
         {
-            var (input, likelihood) = Time("load", () =>
+            var (sample, likelihood) = Time("load", () =>
             {
-                var prepared = PanelAnalysis.Prepare(study, WorkContext.Quiet).Value!;
-                var design = ChoiceDesignBuilder.Build(prepared.Covariates, prepared.Tree, study.Nests, study.Estimate.Form);
-                return (prepared, LikelihoodKernel.Create(design, study.Estimate.Form, 1));
+                var read = PanelAnalysisSample.Read(study, WorkContext.Quiet).Value!;
+                return (read, LikelihoodKernel.Create(read.Design, study.Estimate.Form, 1));
             });
             var model = Time("fit", () => MaximumLikelihood.Fit(likelihood, study.Estimate.Form, study.Estimate, WorkContext.Quiet));
             var refitter = new ClusterRefitter(model, 1);
@@ -66,7 +64,7 @@ internal static class WholeRunRows
             var sums = evidence.Scores(1);
             Time("jackknife", () => ClusterJackknife.Estimate(evidence, sums, study.Inference.Jackknife, WorkContext.Quiet));
             Time("replicates", () => ClusterBootstrap.Estimate(evidence, study.Inference, WorkContext.Quiet));
-            Time("diagnostics", () => IndependenceBattery.Run(study, input.Covariates, model, WorkContext.Quiet));
+            Time("diagnostics", () => IndependenceBattery.Run(study, sample.Sample, model, sample.Static, WorkContext.Quiet));
 
             T Time<T>(string name, Func<T> part)
             {

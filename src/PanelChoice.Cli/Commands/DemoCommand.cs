@@ -21,7 +21,7 @@ internal static class DemoCommand
         foreach (var study in studies)
         {
             options.Print($"\n{new string('-', Letter.Width)}\n\n");
-            codes.Add(EstimateCommand.Run(study, Path.ChangeExtension(study, null), strict, options));
+            codes.Add(EstimateCommand.Run(study, Path.ChangeExtension(study, null), strict, null, options));
         }
 
         // Both panels are told in any case. Trouble goes before an estimate not to be trusted, and that before a flag.

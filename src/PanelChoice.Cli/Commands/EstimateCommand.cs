@@ -11,8 +11,9 @@ internal static class EstimateCommand
     /// <param name="study">The study file.</param>
     /// <param name="folder">Folder for the result's files; null for none.</param>
     /// <param name="strict">Whether a flagged dependence ends with its own code.</param>
+    /// <param name="kept">The store that the design is kept in; null for memory.</param>
     /// <param name="options">What every command takes.</param>
-    public static int Run(string study, string? folder, bool strict, RunOptions options)
+    public static int Run(string study, string? folder, bool strict, KeptDesign? kept, RunOptions options)
     {
         if (!KernelChoice.IsToBeHad(options)) return ExitCode.Usage;
         return StudyRun.With(
@@ -20,7 +21,10 @@ internal static class EstimateCommand
             specification =>
             {
                 if (folder is not null) Probe(folder, specification);
-                return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, work));
+                if (kept is null) return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, work));
+                OutputException.RefuseInput(kept.File, specification);
+                return ProgressDisplay.Run(options, work => PanelAnalysis.Run(
+                    specification, OutputException.Guard(kept.File, () => PanelAnalysisSample.Keep(specification, kept.File, kept.BytesHeld, work)), work));
             },
             (_, result) => Tell(result, folder, strict, options));
     }

@@ -17,7 +17,7 @@ internal static class CovariateReport
             .Title(study.Title.Length > 0 ? study.Title : Path.GetFileName(study.File))
             .Subtitle($"study {Path.GetFileName(study.File)}, data {study.Panel.File}");
         letter.Heading("Who is in it");
-        SampleSection.AddTo(letter, SampleSummary.Of(covariates));
+        SampleSection.AddTo(letter, SampleSummary.Of(EstimationSample.Of(covariates)));
         foreach (var caution in covariates.Cautions) letter.Gap().Paragraph(caution.Sentence);
         letter.Heading("The covariates, where their alternative is offered");
         letter.Table(

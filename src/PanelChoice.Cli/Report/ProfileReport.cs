@@ -1,3 +1,4 @@
+using PanelChoice.Covariates;
 using PanelChoice.Findings;
 using PanelChoice.Panels;
 using PanelChoice.Results;
@@ -35,7 +36,7 @@ internal static class ProfileReport
         Alternatives(letter, profile);
         if (profile.LastChoice is { } last) LastChoice(letter, profile, last, input.Panel);
         letter.Heading("What an estimation would use");
-        SampleSection.AddTo(letter, SampleSummary.Of(input.Covariates));
+        SampleSection.AddTo(letter, SampleSummary.Of(EstimationSample.Of(input.Covariates)));
         var cautions = profile.Cautions.Concat(input.Covariates.Cautions).DistinctBy(c => c.Sentence).ToList();
         if (cautions.Count == 0) return letter;
         letter.Heading("To look at before going on");

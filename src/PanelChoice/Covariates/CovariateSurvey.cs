@@ -20,6 +20,9 @@ internal sealed class CovariateSurvey(StudySpecification study, ImmutableArray<T
     private ImmutableArray<Covariate> heads = [];
     private int alternatives;
 
+    /// <summary>All planned covariates, without values, once a part was filled.</summary>
+    public ImmutableArray<Covariate> Planned => heads;
+
     /// <summary>What is wrong so far.</summary>
     public ImmutableArray<Problem> Problems => [.. problems, .. logarithms.Problems];
 

@@ -14,9 +14,10 @@ internal sealed class RecordedGaps
 {
     private readonly ImmutableArray<int> steps;
     private readonly UsualStep usual;
-    private readonly SortedDictionary<long, int> distances = [];
     private OccasionAxis? axis;
     private int across;
+    private int distances;
+    private int neighbours;
     private int occasions;
 
     /// <summary>Nothing observed yet.</summary>
@@ -47,8 +48,8 @@ internal sealed class RecordedGaps
         {
             if (part.History.JustBefore(o) is var before && before >= 0)
             {
-                var distance = (position[o] - position[before]) / unit;
-                distances[distance] = distances.GetValueOrDefault(distance) + 1;
+                distances++;
+                if ((position[o] - position[before]) / unit <= 1) neighbours++;
             }
 
             if (back.Exists(b => b.Occasions[o] is var then && then >= 0 && position[o] - position[then] > b.Steps * unit)) across++;
@@ -61,24 +62,12 @@ internal sealed class RecordedGaps
     public Caution? Caution()
     {
         if (across == 0) return null;
-        var remedy = Middle() > 1 || axis!.Rule is not { } rule
+        // The lower of the two distances in the middle is above one step.
+        var remedy = neighbours <= (distances - 1) / 2 || axis!.Rule is not { } rule
             ? "no calendar rule fits distances as uneven as these: longest_gap leaves out what lies too far back"
             : $"previous = \"{rule.ToString().ToLowerInvariant()}\" looks at exactly that distance and leaves out what has no record there";
         return new Caution("history.gaps", string.Create(
             CultureInfo.InvariantCulture,
             $"{across} of {occasions} used occasions look back across a gap, because previous = \"recorded\" takes the last record before an absence for the previous occasion; this fakes dependence over time and shrinks the habit term: {remedy}."));
-    }
-
-    /// <summary>The lower middle one of the distances.</summary>
-    private long Middle()
-    {
-        var place = (distances.Values.Sum() - 1) / 2;
-        foreach (var (distance, count) in distances)
-        {
-            if (place < count) return distance;
-            place -= count;
-        }
-
-        throw new InvalidOperationException("An occasion looks back across a gap, and none has a record before it.");
     }
 }

@@ -7,6 +7,9 @@ namespace PanelChoice.Data;
 /// <typeparam name="T">What an entry is.</typeparam>
 internal sealed class ColumnBuffer<T>
 {
+    /// <summary>An empty buffer keeps an array up to this length; a longer one is memory that others may need.</summary>
+    private const int LongestIdle = 1 << 14;
+
     private T[] items = [];
     private int start;
 
@@ -69,6 +72,7 @@ internal sealed class ColumnBuffer<T>
     {
         Count -= count;
         start = Count == 0 ? 0 : start + count;
+        if (Count == 0 && items.Length > LongestIdle) items = [];
     }
 
     private void Grow(int length)

@@ -11,8 +11,11 @@ namespace PanelChoice.Data;
 /// </summary>
 internal sealed class TableScan
 {
-    /// <summary>Bytes of rows up to which a table is kept: less than reading the file again would save.</summary>
-    public const long BytesKept = 32 << 20;
+    /// <summary>
+    /// Bytes of rows up to which a table is kept. Covariates can be many times larger than the rows they are made from (ten lags of a column), so that
+    /// only what is small in any case is worth more in memory than read again.
+    /// </summary>
+    public const long BytesKept = 4 << 20;
 
     /// <summary>Rows of a part, unless a person has more: few enough that what is made of them stays far below the memory of the design.</summary>
     public const int RowsOfPart = 16_384;
@@ -42,7 +45,7 @@ internal sealed class TableScan
     /// <summary>Reads a study's file.</summary>
     /// <param name="study">The study.</param>
     /// <param name="bytesKept">Bytes of rows up to which the table is kept.</param>
-    /// <param name="mustBeOrdered">Whether a file that is not in order of persons is refused; otherwise its table is held as a whole.</param>
+    /// <param name="mustBeOrdered">Whether a file whose table is not kept is refused where it is not in order of persons; otherwise its table is held as a whole.</param>
     public static Checked<TableScan> Of(StudySpecification study, long bytesKept, bool mustBeOrdered)
     {
         var scanned = ChoiceTableReader.Open<TableScan>(study, (file, read) =>
@@ -57,7 +60,7 @@ internal sealed class TableScan
             if (!wrong.IsEmpty) return Checked<TableScan>.Bad(wrong);
             var outline = columns.Outline(sha256, rows.Count);
             var disorder = rows.Disorder(study, columns.PersonsAsTheyCame(), outline.Persons);
-            if (disorder is not null && mustBeOrdered) return Checked<TableScan>.Bad([disorder]);
+            if (disorder is not null && mustBeOrdered && !rows.AreKept) return Checked<TableScan>.Bad([disorder]);
             return Checked<TableScan>.Good(new TableScan(study, outline, stamp, disorder, rows.AreKept ? columns.Finish(sha256).Value : null));
         });
         return scanned.Value is { Disorder: not null, kept: null } scan

@@ -91,5 +91,8 @@ public abstract class BlockReader
     /// <summary>The array and the place in it where a block's bytes begin, a multiple of <see cref="BlockFormat.Line"/> in memory.</summary>
     private protected abstract (byte[] Bytes, int Start) Fetch(DesignBlock block);
 
+    /// <summary>Where another reader's store keeps a block.</summary>
+    private protected static (byte[] Bytes, int Start) FetchFrom(BlockReader other, DesignBlock block) => other.Fetch(block);
+
     private ReadOnlySpan<byte> Masks(int offset) => bytes.AsSpan(start + offset, Block!.Lanes / ChoiceDesign.TileLanes * format.Alternatives);
 }

@@ -4,7 +4,7 @@ namespace PanelChoice.Design;
 
 /// <summary>Blocks in memory. They are appended in order while a design is built and never written to afterwards.</summary>
 /// <param name="format">How each is laid out.</param>
-public sealed class MemoryBlockStore(BlockFormat format) : BlockStore(format)
+public sealed class MemoryBlockStore(BlockFormat format) : BlockStore(format), IBlockTarget
 {
     /// <summary>Blocks share arrays; each is twice as long as the one before, up to this size: few arrays, and little waste in small panels.</summary>
     private const int LongestArray = 16 << 20;
@@ -24,6 +24,12 @@ public sealed class MemoryBlockStore(BlockFormat format) : BlockStore(format)
 
     /// <inheritdoc/>
     public override BlockReader Reader() => new MemoryReader(this);
+
+    /// <inheritdoc/>
+    Span<byte> IBlockSink.Append(int lanes) => Append(lanes);
+
+    /// <inheritdoc/>
+    BlockStore IBlockTarget.Complete() => this;
 
     /// <summary>Makes room for the next block.</summary>
     /// <param name="lanes">Its lanes.</param>

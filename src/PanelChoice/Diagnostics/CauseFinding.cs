@@ -1,6 +1,5 @@
 using System.Collections.Immutable;
 using PanelChoice.Covariates;
-using PanelChoice.Estimation;
 using PanelChoice.Numerics;
 using PanelChoice.Study;
 
@@ -14,15 +13,16 @@ internal sealed record CauseFinding(DependenceCause Cause, double? LastPredictio
 {
     /// <summary>Fits the static model, scores it and applies the rule.</summary>
     /// <param name="study">The study.</param>
-    /// <param name="covariates">Panel and sample of the user's model.</param>
-    /// <param name="model">The user's model.</param>
+    /// <param name="sample">Sample of the user's model.</param>
+    /// <param name="design">Makes the design of the static model.</param>
+    /// <param name="form">Form of the user's model.</param>
     /// <param name="positions">Where the situations stand in time.</param>
     /// <param name="dates">Dates, when the calendar is shared.</param>
     /// <param name="commonDays">Whether common days were found: then residuals are taken as deviations from their date's mean first,
     /// because lasting shocks to everybody look like dependence of each person on the own past.</param>
     /// <param name="work">Threads, progress, cancellation.</param>
     public static CauseFinding Of(
-        StudySpecification study, CovariateSet covariates, FittedModel model, OccasionPositions positions, ImmutableArray<long>? dates,
+        StudySpecification study, EstimationSample sample, Func<StaticDesign?> design, NestedLogitForm form, OccasionPositions positions, CompactNumbers? dates,
         bool commonDays, WorkContext work)
     {
         var notes = new List<string>();
@@ -32,7 +32,7 @@ internal sealed record CauseFinding(DependenceCause Cause, double? LastPredictio
             return new CauseFinding(DependenceCause.Unclear, null, [.. notes]);
         }
 
-        var fit = StaticFit.Of(study, covariates, model, work);
+        var fit = StaticFit.Of(study, sample, design(), form, work);
         if (fit.Model is not { } still) return Unclear(fit.Reason!);
         var battery = ScoreBattery.Compute(
             still.Design, still.Form, still.Parameters, positions, CauseEvidence.LargestLag, commonDays ? dates : null, commonDays, work.Threads);

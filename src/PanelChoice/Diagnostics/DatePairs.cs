@@ -17,7 +17,6 @@ internal sealed class DatePairs
     private readonly double[] q;
     private readonly double[] m;
     private readonly double[] withScores;
-    private readonly OneDate date;
     private double moment;
     private double squares;
     private double cubes;
@@ -30,29 +29,16 @@ internal sealed class DatePairs
         q = new double[K * K];
         m = new double[K * K];
         withScores = new double[K];
-        date = new OneDate(J, K);
     }
 
     /// <summary>Number of dates with two or more persons.</summary>
     public int Dates { get; private set; }
 
-    /// <summary>Sum of g over the persons of the date at hand (J).</summary>
-    public ReadOnlySpan<double> Residual => date.G;
+    /// <summary>Numbers that the sums of one date take.</summary>
+    public static int DoublesOfDate(int J, int K) => (2 * J) + (4 * J * J) + (4 * J * K) + (2 * K * K) + K;
 
-    /// <summary>Sum of E over the persons of the date at hand (J x K).</summary>
-    public ReadOnlySpan<double> Cross => date.B;
-
-    /// <summary>Sum of P over the persons of the date at hand (J).</summary>
-    public ReadOnlySpan<double> Probability => date.P;
-
-    /// <summary>Starts a date.</summary>
-    public void Begin() => date.Clear();
-
-    /// <summary>Adds the loaded situation to the date at hand.</summary>
-    public void Add(SituationScores scores) => date.Add(scores);
-
-    /// <summary>Closes the date at hand: its pairs join the sums.</summary>
-    public void End()
+    /// <summary>Adds a date that is complete: its pairs join the sums.</summary>
+    public void Add(OneDate date)
     {
         if (date.Persons < 2) return;
         Dates++;
@@ -111,7 +97,7 @@ internal sealed class DatePairs
     }
 
     /// <summary>Sums over the persons of one date.</summary>
-    private sealed class OneDate(int J, int K)
+    internal sealed class OneDate(int J, int K)
     {
         private readonly double[] o = new double[J * J];
         private readonly double[] oSquared = new double[J * J];
@@ -146,13 +132,6 @@ internal sealed class DatePairs
         public double OmegaCubes { get; private set; }
 
         public double OmegaESquares { get; private set; }
-
-        public void Clear()
-        {
-            Persons = 0;
-            ResidualSquares = OmegaSquares = OmegaCubes = OmegaESquares = 0;
-            foreach (var sum in new[] { G, P, B, S, U, EE, EOE, OwnScores, OmegaSquared, OmegaSquaredE }) Array.Clear(sum);
-        }
 
         public void Add(SituationScores scores)
         {

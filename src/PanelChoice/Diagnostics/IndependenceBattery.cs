@@ -35,7 +35,26 @@ public static class IndependenceBattery
         ArgumentNullException.ThrowIfNull(covariates);
         ArgumentNullException.ThrowIfNull(model);
         ArgumentNullException.ThrowIfNull(work);
-        var positions = OccasionPositions.Of(study.History, covariates.Panel, covariates.Used);
+        var sample = EstimationSample.Of(covariates);
+        var tree = model.Design.Tree;
+        return Run(study, sample, model, () => StaticDesign.Of(study, sample, model.Design, Build), work);
+
+        ChoiceDesign? Build(ImmutableArray<TermSpecification> terms) =>
+            CovariateBuilder.BuildOn(study, covariates.Panel, tree, terms, covariates.Used).Value is { } set
+                ? ChoiceDesignBuilder.Build(set, tree, study.Nests, model.Form)
+                : null;
+    }
+
+    /// <summary>Runs the battery on a sample whose panel and covariates need not be in memory.</summary>
+    /// <param name="study">The study.</param>
+    /// <param name="sample">The sample of the fitted model.</param>
+    /// <param name="model">The fitted model.</param>
+    /// <param name="staticDesign">Makes the design on which the cause is judged; called only where dependence is found.</param>
+    /// <param name="work">Threads (no figure depends on them), progress, cancellation.</param>
+    internal static DiagnosticsResult Run(
+        StudySpecification study, EstimationSample sample, FittedModel model, Func<StaticDesign?> staticDesign, WorkContext work)
+    {
+        var positions = OccasionPositions.Of(study.History, sample);
         var notes = new List<string>();
         DiagnosticsResult NotApplicable(string reason) => new(
             Verdict.NotApplicable, reason, null, null, study.Diagnostics.Level, null, null, [], [], [], null, null, null, positions.Unit, [.. notes]);
@@ -55,7 +74,7 @@ public static class IndependenceBattery
             notes.Add("The study is weighted; the independence tests run on an unweighted fit of the same model.");
         }
 
-        var dates = SharedCalendar(study, covariates) ? covariates.Used.Select(o => covariates.Panel.Occasion[o]).ToImmutableArray() : (ImmutableArray<long>?)null;
+        var dates = SharedCalendar(study, sample) ? sample.Times.Occasion : null;
         work.Report(Step, 1, 3);
         var lags = Math.Max(study.Diagnostics.Lags, CauseEvidence.LargestLag);
         if (ScoreBattery.Compute(design, model.Form, model.Parameters, positions, lags, dates, false, work.Threads) is not { } battery)
@@ -68,15 +87,14 @@ public static class IndependenceBattery
         AddNotes(notes, study, design, positions, detector, verdict, dates is not null && date is null);
 
         var cause = verdict.Serial
-            ? CauseFinding.Of(study, covariates, model, positions, dates, verdict.CommonDays == true, work)
+            ? CauseFinding.Of(study, sample, staticDesign, model.Form, positions, dates, verdict.CommonDays == true, work)
             : null;
         if (cause is not null) notes.AddRange(cause.Notes);
         work.Report(Step, 3, 3);
-        var alternatives = covariates.Panel.Alternatives;
         return new DiagnosticsResult(
             verdict.Verdict, null, cause?.Cause, verdict.CommonDays, study.Diagnostics.Level, detector, date,
             [.. battery.Lags.Take(study.Diagnostics.Lags).Select((s, h) => new LagDependence(h + 1, s.Effect, s.EffectError, s.Pairs))],
-            [.. battery.Alternatives.Select((s, j) => new PartScore(alternatives[j], s.Z))],
+            [.. battery.Alternatives.Select((s, j) => new PartScore(design.Tree.Alternatives[j], s.Z))],
             [.. battery.Nests.Select((s, m) => new PartScore(design.Layout.Nests[m].Name, s.Z))],
             battery.InformationTrace.IsDefined ? battery.VarianceInflation : null,
             MeasuredRates.HitRateOf(cause?.Cause, design.Persons, MeanOccasions(design)),
@@ -84,14 +102,14 @@ public static class IndependenceBattery
     }
 
     /// <summary>Whether an occasion is the same day for everybody: as stated, by default for dates only.</summary>
-    internal static bool SharedCalendar(StudySpecification study, CovariateSet covariates) =>
-        study.Panel.SharedCalendar ?? covariates.Panel.Table.OccasionKind == OccasionKind.Date;
+    internal static bool SharedCalendar(StudySpecification study, EstimationSample sample) =>
+        study.Panel.SharedCalendar ?? sample.OccasionKind == OccasionKind.Date;
 
     private static void AddNotes(
         List<string> notes, StudySpecification study, ChoiceDesign design, OccasionPositions positions, Detector detector, JointVerdict verdict,
         bool dateUntestable)
     {
-        var pastChoice = study.Terms.Any(StaticFit.IsPastChoice);
+        var pastChoice = study.Terms.Any(StaticDesign.IsPastChoice);
         if (verdict.Verdict == Verdict.NoneFound) notes.Add(MeasuredRates.Power(design.Persons, MeanOccasions(design), pastChoice));
         if (pastChoice && design.Persons < FewPersons)
             notes.Add("The detector's p-value is analytic; with a past choice in the model and fewer than 100 persons its true size at nominal 5 percent was 5-8 percent in simulated panels, about 10 with 75 occasions.");
@@ -108,7 +126,7 @@ public static class IndependenceBattery
     }
 
     private static FittedModel Refit(StudySpecification study, FittedModel model, WorkContext work) => MaximumLikelihood.Fit(
-        LikelihoodKernel.Create(StaticFit.Unweighted(model.Design), model.Form, work.Threads), model.Form, study.Estimate, work);
+        LikelihoodKernel.Create(model.Design.Unweighted(), model.Form, work.Threads), model.Form, study.Estimate, work);
 
     private static int Longest(ChoiceDesign design) =>
         design.Persons == 0 ? 0 : Enumerable.Range(0, design.Persons).Max(p => design.PersonStart[p + 1] - design.PersonStart[p]);

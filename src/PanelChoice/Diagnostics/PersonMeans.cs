@@ -1,5 +1,5 @@
 using System.Collections.Immutable;
-using PanelChoice.Covariates;
+using PanelChoice.Design;
 using PanelChoice.Study;
 
 namespace PanelChoice.Diagnostics;
@@ -15,17 +15,16 @@ internal static class PersonMeans
 
     /// <summary>One mean term for each column that varies within persons.</summary>
     /// <param name="terms">Terms of the static fit.</param>
-    /// <param name="set">Their covariates.</param>
-    public static ImmutableArray<TermSpecification> TermsFor(ImmutableArray<TermSpecification> terms, CovariateSet set)
+    /// <param name="varies">Whether a covariate of the term varies within persons.</param>
+    public static ImmutableArray<TermSpecification> TermsFor(ImmutableArray<TermSpecification> terms, Func<TermSpecification, bool> varies)
     {
         var means = new List<TermSpecification>();
-        for (var i = 0; i < terms.Length; i++)
+        foreach (var term in terms)
         {
-            if (terms[i].Source is not ColumnSource { Moment: Now or Lag or Lead or Change } source) continue;
-            if (!set.Covariates.Any(c => c.TermIndex == i && VariesWithinPersons(c, set))) continue;
-            var mean = terms[i] with
+            if (term.Source is not ColumnSource { Moment: Now or Lag or Lead or Change } source || !varies(term)) continue;
+            var mean = term with
             {
-                Name = $"person mean of {terms[i].Name}", Source = source with { Moment = new PersonMean() }, Fixed = null, Start = null,
+                Name = $"person mean of {term.Name}", Source = source with { Moment = new PersonMean() }, Fixed = null, Start = null,
             };
             // A column that enters both now and lagged has one mean, and the study may have it already.
             if (!terms.Concat(means).Any(m => SameColumn(m, mean))) means.Add(mean);
@@ -35,16 +34,15 @@ internal static class PersonMeans
     }
 
     /// <summary>
-    /// Takes out the means that are linear combinations of what stands before them, judged by the information that equal
+    /// The means that are linear combinations of what stands before them, judged by the information that equal
     /// probabilities would give: a direction without variance there has none in any logit.
     /// </summary>
-    /// <param name="set">Covariates of the static fit, the means last.</param>
-    /// <param name="firstMean">Index of the first mean's covariate.</param>
-    /// <returns>The set without them, and their names.</returns>
-    public static (CovariateSet Set, ImmutableArray<string> LeftOut) WithoutCollinear(CovariateSet set, int firstMean)
+    /// <param name="design">Design of the static fit, the means last among its coefficients.</param>
+    /// <param name="firstMean">The first mean's coefficient.</param>
+    public static ImmutableSortedSet<int> Collinear(ChoiceDesign design, int firstMean)
     {
-        var size = set.Covariates.Length;
-        var information = EqualProbabilityInformation(set);
+        var size = design.Layout.Coefficients;
+        var information = EqualProbabilityInformation(design);
         var keep = new bool[size];
         var factor = new double[size][];
         for (var k = 0; k < size; k++)
@@ -65,61 +63,64 @@ internal static class PersonMeans
             if (keep[k]) factor[k][k] = Math.Sqrt(left);
         }
 
-        var stays = Enumerable.Range(0, size).Where(k => k < firstMean || keep[k]).ToList();
-        return (
-            set with { Covariates = [.. stays.Select(k => set.Covariates[k])] },
-            [.. Enumerable.Range(firstMean, size - firstMean).Where(k => !keep[k]).Select(k => set.Covariates[k].Label)]);
+        return [.. Enumerable.Range(firstMean, size - firstMean).Where(k => !keep[k])];
     }
 
-    internal static bool VariesWithinPersons(Covariate covariate, CovariateSet set)
+    /// <summary>Whether each coefficient's covariate varies within some person, over the situations in which an alternative that it enters is offered.</summary>
+    internal static bool[] VaryWithinPersons(ChoiceDesign design)
     {
-        if (covariate.IsConstant) return false;
-        var alternatives = set.Panel.Alternatives.Length;
-        var width = covariate.Enters.Length;
-        for (var e = 0; e < width; e++)
+        var columns = design.Columns.Where(c => c.Storage >= 0).ToArray();
+        var varies = new bool[design.Layout.Coefficients];
+        var value = new double[columns.Length];
+        var lastPerson = new int[columns.Length];
+        Array.Fill(lastPerson, -1);
+        var reader = design.Store.Reader();
+        foreach (var block in design.Blocks)
         {
-            var person = -1;
-            var first = double.NaN;
-            for (var t = 0; t < set.Used.Length; t++)
+            reader.Open(block);
+            for (int lane = 0, person = design.PersonOf[block.FirstSituation]; lane < block.Situations; lane++)
             {
-                var occasion = set.Used[t];
-                if (!set.Panel.Offered[(occasion * alternatives) + covariate.Enters[e]]) continue;
-                var value = covariate.Values[(t * width) + e];
-                if (set.Panel.PersonOf[occasion] == person && value != first) return true;
-                (person, first) = (set.Panel.PersonOf[occasion], value);
+                if (block.FirstSituation + lane == design.PersonStart[person + 1]) person++;
+                for (var c = 0; c < columns.Length; c++)
+                {
+                    if (varies[columns[c].Parameter] || !reader.IsOffered(lane, columns[c].Alternative)) continue;
+                    var here = reader.Value(columns[c].Storage, lane);
+                    if (lastPerson[c] == person && here != value[c]) varies[columns[c].Parameter] = true;
+                    (lastPerson[c], value[c]) = (person, here);
+                }
             }
         }
 
-        return false;
+        return varies;
     }
 
     private static bool SameColumn(TermSpecification left, TermSpecification right) =>
         left.Source == right.Source && left.Log == right.Log && left.Times == right.Times && left.Each == right.Each && left.Base == right.Base
         && left.Alternatives.SequenceEqual(right.Alternatives);
 
-    private static double[,] EqualProbabilityInformation(CovariateSet set)
+    private static double[,] EqualProbabilityInformation(ChoiceDesign design)
     {
-        var size = set.Covariates.Length;
-        var alternatives = set.Panel.Alternatives.Length;
+        var size = design.Layout.Coefficients;
+        var alternatives = design.Alternatives;
         var information = new double[size, size];
         var x = new double[alternatives, size];
         var mean = new double[size];
-        for (var t = 0; t < set.Used.Length; t++)
+        var reader = design.Store.Reader();
+        foreach (var block in design.Blocks)
         {
-            Array.Clear(x);
-            Array.Clear(mean);
-            var offered = Enumerable.Range(0, alternatives).Where(j => set.Panel.Offered[(set.Used[t] * alternatives) + j]).ToArray();
-            for (var k = 0; k < size; k++)
+            reader.Open(block);
+            for (var lane = 0; lane < block.Situations; lane++)
             {
-                var covariate = set.Covariates[k];
-                for (var e = 0; e < covariate.Enters.Length; e++)
-                    x[covariate.Enters[e], k] = covariate.IsConstant ? 1 : covariate.Values[(t * covariate.Enters.Length) + e];
-                foreach (var j in offered) mean[k] += x[j, k] / offered.Length;
-            }
-
-            foreach (var j in offered)
+                Array.Clear(x);
+                Array.Clear(mean);
+                var offered = Enumerable.Range(0, alternatives).Where(j => reader.IsOffered(lane, j)).ToArray();
+                foreach (var column in design.Columns) x[column.Alternative, column.Parameter] = reader.Value(column.Storage, lane);
                 for (var k = 0; k < size; k++)
-                    for (var q = 0; q <= k; q++) information[k, q] += (x[j, k] - mean[k]) * (x[j, q] - mean[q]) / offered.Length;
+                    foreach (var j in offered) mean[k] += x[j, k] / offered.Length;
+                foreach (var j in offered)
+                    for (var k = 0; k < size; k++)
+                        for (var q = 0; q <= k; q++) information[k, q] += (x[j, k] - mean[k]) * (x[j, q] - mean[q]) / offered.Length;
+            }
         }
 
         return information;

@@ -1,6 +1,7 @@
 using System.Collections.Immutable;
 using MathNet.Numerics.LinearAlgebra;
 using PanelChoice.Design;
+using PanelChoice.Numerics;
 using PanelChoice.Study;
 
 namespace PanelChoice.Diagnostics;
@@ -39,7 +40,7 @@ internal sealed record ScoreBattery(
     /// <param name="threads">Threads; no figure depends on it.</param>
     public static ScoreBattery? Compute(
         ChoiceDesign design, NestedLogitForm form, ImmutableArray<double> parameters, OccasionPositions positions, int lags,
-        ImmutableArray<long>? dates, bool demeanByDate, int threads)
+        CompactNumbers? dates, bool demeanByDate, int threads)
     {
         if (Whitening.Of(design, form, parameters.AsSpan(), threads) is not { } white) return null;
         var byDate = dates is { } d ? DateSums.Sum(design, form, parameters, white.Basis, d, threads) : null;

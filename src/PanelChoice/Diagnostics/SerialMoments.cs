@@ -70,10 +70,11 @@ internal sealed class SerialMoments
             for (var person = first; person < end; person++)
             {
                 pass.history.Clear();
-                for (var t = design.PersonStart[person]; t < design.PersonStart[person + 1]; t++)
+                var begin = design.PersonStart[person];
+                for (var t = begin; t < design.PersonStart[person + 1]; t++)
                 {
                     scores.Load(t);
-                    pass.Visit(t, positions.Position[t], positions.Stream[t]);
+                    pass.Visit(t, positions.Position(t, begin), positions.Stream(t));
                 }
             }
 

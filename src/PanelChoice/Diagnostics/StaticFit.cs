@@ -21,52 +21,38 @@ internal sealed record StaticFit(FittedModel? Model, string? Reason, ImmutableAr
     /// <summary>More starts than this add nothing to a fit that is only looked at for residuals.</summary>
     private const int MostStarts = 3;
 
-    /// <summary>Whether a term tells of past choices.</summary>
-    public static bool IsPastChoice(TermSpecification term) =>
-        term.Source is LastChoiceSource or LastNestSource or StockSource or PastShareSource or FirstChoiceSource
-            or ColumnSource { Moment: ChosenThen };
-
     /// <summary>Fits it.</summary>
     /// <param name="study">The study.</param>
-    /// <param name="covariates">The covariates of the user's model: panel and sample.</param>
-    /// <param name="model">The user's model: tree and form.</param>
+    /// <param name="sample">The sample of the user's model.</param>
+    /// <param name="design">The design of the static fit; null where there is none.</param>
+    /// <param name="form">The form of the user's model.</param>
     /// <param name="work">Threads, progress, cancellation.</param>
-    public static StaticFit Of(StudySpecification study, CovariateSet covariates, FittedModel model, WorkContext work)
+    public static StaticFit Of(StudySpecification study, EstimationSample sample, StaticDesign? design, NestedLogitForm form, WorkContext work)
     {
-        var tree = model.Design.Tree;
-        ImmutableArray<TermSpecification> terms = [.. study.Terms.Where(t => !IsPastChoice(t))];
-        if (terms.IsEmpty) return None("the model has no term besides past choices");
-        if (CovariateBuilder.BuildOn(study, covariates.Panel, tree, terms, covariates.Used).Value is not { } plain)
-            return None("the covariates could not be built without past choices");
-
-        var means = PersonMeans.TermsFor(terms, plain);
-        if (With(means) is null) means = [.. means.Where(m => With([m]) is not null)];
-        if (!means.IsEmpty && With(means) is { } all)
+        if (StaticDesign.TermsOf(study).IsEmpty) return None("the model has no term besides past choices");
+        if (design is null) return None("the covariates could not be built without past choices");
+        var all = design.Design;
+        var plain = StaticDesign.Plain(study, sample);
+        if (plain < all.Layout.Coefficients)
         {
-            var (set, leftOut) = PersonMeans.WithoutCollinear(all, plain.Covariates.Length);
-            var withMeans = Fit(study, set, model, work);
+            var collinear = PersonMeans.Collinear(all, plain);
+            var withMeans = Fit(study, all.Without(collinear), form, work);
             if (withMeans.Status == FitStatus.Converged)
-                return new StaticFit(withMeans, null, [.. set.Covariates.Skip(plain.Covariates.Length).Select(c => c.Label)], leftOut);
+                return new StaticFit(
+                    withMeans, null, [.. withMeans.Layout.Parameters[plain..withMeans.Layout.Coefficients].Select(p => p.Label)],
+                    [.. collinear.Select(k => all.Layout.Parameters[k].Label)]);
         }
 
-        var without = Fit(study, plain, model, work);
+        var without = Fit(study, all.Without(Enumerable.Range(plain, all.Layout.Coefficients - plain).ToHashSet()), form, work);
         return without.Status == FitStatus.Converged
-            ? new StaticFit(without, null, [], [.. means.Select(m => m.Name)])
+            ? new StaticFit(without, null, [], design.Means)
             : None("the model without past choices did not converge");
-
-        CovariateSet? With(ImmutableArray<TermSpecification> added) =>
-            CovariateBuilder.BuildOn(study, covariates.Panel, tree, [.. terms, .. added], covariates.Used).Value;
     }
 
-    /// <summary>A design with every person counted once.</summary>
-    public static ChoiceDesign Unweighted(ChoiceDesign design) =>
-        design with { PersonWeight = [.. Enumerable.Repeat(1.0, design.Persons)] };
-
-    private static FittedModel Fit(StudySpecification study, CovariateSet set, FittedModel model, WorkContext work)
+    private static FittedModel Fit(StudySpecification study, ChoiceDesign design, NestedLogitForm form, WorkContext work)
     {
-        var design = Unweighted(ChoiceDesignBuilder.Build(set, model.Design.Tree, study.Nests, model.Form));
-        var settings = study.Estimate with { Form = model.Form, Starts = Math.Min(MostStarts, study.Estimate.Starts) };
-        return MaximumLikelihood.Fit(LikelihoodKernel.Create(design, model.Form, work.Threads), model.Form, settings, work);
+        var settings = study.Estimate with { Form = form, Starts = Math.Min(MostStarts, study.Estimate.Starts) };
+        return MaximumLikelihood.Fit(LikelihoodKernel.Create(design.Unweighted(), form, work.Threads), form, settings, work);
     }
 
     private static StaticFit None(string reason) => new(null, reason, [], []);

@@ -5,7 +5,7 @@ internal static class CautionFindings
 {
     public static IEnumerable<Finding> Of(FindingsInput input)
     {
-        if (input.Covariates.Panel.IsWeighted)
+        if (input.Sample.IsWeighted)
             yield return new Finding(
                 "caution.weights", FindingTopic.Caution, FindingSeverity.Notice,
                 "Sampling weights enter as given; ratios of standard errors use weights scaled to mean 1.", []);

@@ -10,12 +10,12 @@ namespace PanelChoice.Findings;
 
 /// <summary>What the findings are drawn from.</summary>
 /// <param name="Study">The study.</param>
-/// <param name="Covariates">Covariates and the book-keeping of the sample.</param>
+/// <param name="Sample">The sample and its book-keeping, and the covariates' names.</param>
 /// <param name="Model">The fitted model.</param>
 /// <param name="Inference">Standard errors of all kinds, or the reasons why there are none.</param>
 /// <param name="Diagnostics">The independence battery.</param>
 public sealed record FindingsInput(
-    StudySpecification Study, CovariateSet Covariates, FittedModel Model, InferenceResult Inference, DiagnosticsResult Diagnostics)
+    StudySpecification Study, EstimationSample Sample, FittedModel Model, InferenceResult Inference, DiagnosticsResult Diagnostics)
 {
     /// <summary>
     /// Below this many clusters the clustered standard error with t(G - 1) rejects too often (8 percent at 40, 12 at 20, 19 at 10 against

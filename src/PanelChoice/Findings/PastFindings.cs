@@ -21,7 +21,7 @@ internal static class PastFindings
         if (!input.HasErrors) yield break;
         foreach (var term in Enumerable.Range(0, input.Layout.Coefficients)
             .Where(k => input.Layout.Parameters[k].Role != CovariateRole.Present)
-            .GroupBy(k => input.Covariates.Covariates[k].TermIndex))
+            .GroupBy(k => input.Sample.Covariates[k].TermIndex))
             yield return TermFinding(input, [.. term]);
 
         if (Jointly(input) is { } joint) yield return joint;
@@ -37,7 +37,7 @@ internal static class PastFindings
     private static Finding TermFinding(FindingsInput input, ImmutableArray<int> parameters)
     {
         var first = input.Layout.Parameters[parameters[0]];
-        var source = input.Study.Terms[input.Covariates.Covariates[parameters[0]].TermIndex].Source;
+        var source = input.Study.Terms[input.Sample.Covariates[parameters[0]].TermIndex].Source;
         var free = parameters.Where(k => input.Layout.Parameters[k].IsFree).ToImmutableArray();
         var figures = parameters.SelectMany(k => input.FiguresOf(k)).ToImmutableArray();
         var id = first.Role switch

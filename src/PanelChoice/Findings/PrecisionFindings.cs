@@ -62,7 +62,7 @@ internal static class PrecisionFindings
 
     private static IEnumerable<Finding> Influence(FindingsInput input, InferenceResult inference)
     {
-        var codes = Pseudonyms.Of(input.Covariates.Panel.Table.Sha256, input.Model.Design.Clusters);
+        var codes = Pseudonyms.Of(input.Sample.Sha256, input.Model.Design.Clusters);
         var strongest = (from i in inference.Clusters.MostInfluential
                          let se = input.Figures(i.Parameter, CovarianceKind.Cluster)?.StandardError
                          where se > 0

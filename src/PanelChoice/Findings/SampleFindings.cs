@@ -5,9 +5,9 @@ internal static class SampleFindings
 {
     public static IEnumerable<Finding> Of(FindingsInput input)
     {
-        foreach (var caution in input.Covariates.Cautions)
+        foreach (var caution in input.Sample.Cautions)
             yield return new Finding(caution.Id, FindingTopic.Sample, FindingSeverity.Notice, caution.Sentence, []);
-        foreach (var stock in input.Covariates.StockStarts)
+        foreach (var stock in input.Sample.StockStarts)
             yield return new Finding(
                 "history.stock_start", FindingTopic.Sample, FindingSeverity.Information,
                 $"The habit stock '{stock.Term}' starts at one over the number of alternatives; that start still has a weight of "

@@ -66,7 +66,7 @@ internal sealed class ScoreWork
             var leaf = plan.Leaves[j];
             ref var slope = ref strip.Slope(j);
             for (var i = 0; i < leaf.Stored.Length; i++)
-                AddProduct(ref scores.Row(leaf.Stored[i]), ref slope, ref strip.Columns.Column(leaf.FirstStored + i), 1);
+                AddProduct(ref scores.Row(leaf.Stored[i]), ref slope, ref strip.Columns.Column(leaf.Places[i]), 1);
             foreach (var k in leaf.Constants) Add(ref scores.Row(k), ref slope);
         }
 

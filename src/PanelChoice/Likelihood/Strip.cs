@@ -132,10 +132,10 @@ internal sealed class Strip
         var i = 0;
         for (; i + 4 <= leaf.Stored.Length; i += 4)
         {
-            ref var x0 = ref Columns.Column(leaf.FirstStored + i);
-            ref var x1 = ref Columns.Column(leaf.FirstStored + i + 1);
-            ref var x2 = ref Columns.Column(leaf.FirstStored + i + 2);
-            ref var x3 = ref Columns.Column(leaf.FirstStored + i + 3);
+            ref var x0 = ref Columns.Column(leaf.Places[i]);
+            ref var x1 = ref Columns.Column(leaf.Places[i + 1]);
+            ref var x2 = ref Columns.Column(leaf.Places[i + 2]);
+            ref var x3 = ref Columns.Column(leaf.Places[i + 3]);
             var b0 = Vector512.Create(Theta[leaf.Stored[i]]);
             var b1 = Vector512.Create(Theta[leaf.Stored[i + 1]]);
             var b2 = Vector512.Create(Theta[leaf.Stored[i + 2]]);
@@ -152,7 +152,7 @@ internal sealed class Strip
 
         for (; i < leaf.Stored.Length; i++)
         {
-            ref var x = ref Columns.Column(leaf.FirstStored + i);
+            ref var x = ref Columns.Column(leaf.Places[i]);
             var b = Vector512.Create(Theta[leaf.Stored[i]]);
             for (nuint lane = 0; lane < (nuint)Lanes; lane += Tile)
                 Vector512.FusedMultiplyAdd(b, Vector512.LoadUnsafe(ref x, lane), Vector512.LoadUnsafe(ref value, lane)).StoreUnsafe(ref value, lane);

@@ -45,7 +45,7 @@ internal sealed class StripColumns
     public void Prepare(LeafColumns leaf)
     {
         var columns = plan.Design.Store.Format.Columns;
-        for (var column = leaf.FirstStored; column < leaf.FirstStored + leaf.Stored.Length; column++)
+        foreach (var column in leaf.Places)
             if (rowOf[column] >= 0) ColumnUnfolding.Unfold(reader, column, columns[column], firstLane, unfolded.Lanes(rowOf[column], lanes));
     }
 

@@ -55,7 +55,7 @@ internal sealed class StripGradient
             ref var slope = ref strip.Slope(j);
             var leaf = plan.Leaves[j];
             for (var i = 0; i < leaf.Stored.Length; i++)
-                AddLanes(ref slope, ref strip.Columns.Column(leaf.FirstStored + i), 1 / plan.Units[leaf.Stored[i]], scores, leaf.Stored[i], count);
+                AddLanes(ref slope, ref strip.Columns.Column(leaf.Places[i]), 1 / plan.Units[leaf.Stored[i]], scores, leaf.Stored[i], count);
             foreach (var k in leaf.Constants)
                 for (var lane = 0; lane < count; lane++) scores[(lane * plan.K) + k] += Unsafe.Add(ref slope, lane);
         }
@@ -86,10 +86,10 @@ internal sealed class StripGradient
         var i = 0;
         for (; i + 4 <= leaf.Stored.Length; i += 4)
         {
-            ref var x0 = ref strip.Columns.Column(leaf.FirstStored + i);
-            ref var x1 = ref strip.Columns.Column(leaf.FirstStored + i + 1);
-            ref var x2 = ref strip.Columns.Column(leaf.FirstStored + i + 2);
-            ref var x3 = ref strip.Columns.Column(leaf.FirstStored + i + 3);
+            ref var x0 = ref strip.Columns.Column(leaf.Places[i]);
+            ref var x1 = ref strip.Columns.Column(leaf.Places[i + 1]);
+            ref var x2 = ref strip.Columns.Column(leaf.Places[i + 2]);
+            ref var x3 = ref strip.Columns.Column(leaf.Places[i + 3]);
             var s0 = Vector512<double>.Zero;
             var s1 = Vector512<double>.Zero;
             var s2 = Vector512<double>.Zero;
@@ -109,7 +109,7 @@ internal sealed class StripGradient
             sums[leaf.Stored[i + 3]] += s3;
         }
 
-        for (; i < leaf.Stored.Length; i++) sums[leaf.Stored[i]] += Dot(ref slope, ref strip.Columns.Column(leaf.FirstStored + i));
+        for (; i < leaf.Stored.Length; i++) sums[leaf.Stored[i]] += Dot(ref slope, ref strip.Columns.Column(leaf.Places[i]));
         if (leaf.Constants.Length == 0) return;
         var sum = Vector512<double>.Zero;
         foreach (var a in MemoryMarshal.Cast<double, Vector512<double>>(MemoryMarshal.CreateReadOnlySpan(ref slope, strip.Lanes))) sum += a;

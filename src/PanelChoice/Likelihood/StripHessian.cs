@@ -174,7 +174,7 @@ internal sealed class StripHessian
         ref var p = ref strip.Conditional(j);
         for (var i = 0; i < leaf.Stored.Length; i++)
         {
-            ref var x = ref strip.Columns.Column(leaf.FirstStored + i);
+            ref var x = ref strip.Columns.Column(leaf.Places[i]);
             ref var weighted = ref left.Row(i);
             ref var z = ref inner.Row(firstInner[n] + rowInParent[j][i]);
             for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
@@ -209,9 +209,9 @@ internal sealed class StripHessian
         }
 
         if (leaf.Stored.Length == 0) return;
-        ref var first = ref strip.Columns.Column(leaf.FirstStored);
+        ref var first = ref strip.Columns.Column(leaf.Places[0]);
         for (var i = 0; i < leaf.Stored.Length; i++)
-            places[i] = (nuint)(Unsafe.ByteOffset(ref first, ref strip.Columns.Column(leaf.FirstStored + i)) / sizeof(double));
+            places[i] = (nuint)(Unsafe.ByteOffset(ref first, ref strip.Columns.Column(leaf.Places[i])) / sizeof(double));
         sums.AddProducts(panel, ref left.Row(0), left.Stride, ref first, places, strip.Lanes);
     }
 

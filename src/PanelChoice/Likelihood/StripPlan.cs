@@ -3,11 +3,11 @@ using PanelChoice.Study;
 
 namespace PanelChoice.Likelihood;
 
-/// <summary>The columns of one alternative. Its stored columns follow each other in a block.</summary>
-/// <param name="FirstStored">First stored column.</param>
+/// <summary>The columns of one alternative. Its stored columns follow each other in a block, but for those that the design passes over.</summary>
+/// <param name="Places">The stored columns, ascending.</param>
 /// <param name="Stored">Parameter of each stored column.</param>
 /// <param name="Constants">Parameters whose covariate is the constant 1.</param>
-internal sealed record LeafColumns(int FirstStored, int[] Stored, int[] Constants);
+internal sealed record LeafColumns(int[] Places, int[] Stored, int[] Constants);
 
 /// <summary>
 /// What the vector kernel works out once for a design: the tree and the columns as plain arrays, and how many situations make a strip.
@@ -96,12 +96,11 @@ internal sealed class StripPlan
     {
         var columns = design.Columns.Where(c => c.Alternative == alternative).ToList();
         var stored = columns.Where(c => c.Storage >= 0).ToList();
-        var first = stored.Count == 0 ? 0 : stored[0].Storage;
-        for (var i = 0; i < stored.Count; i++)
-            if (stored[i].Storage != first + i)
+        for (var i = 1; i < stored.Count; i++)
+            if (stored[i].Storage <= stored[i - 1].Storage)
                 throw new ArgumentException("The stored columns of an alternative do not follow each other.", nameof(design));
         return new LeafColumns(
-            first, [.. stored.Select(c => c.Parameter)], [.. columns.Where(c => c.Storage < 0).Select(c => c.Parameter)]);
+            [.. stored.Select(c => c.Storage)], [.. stored.Select(c => c.Parameter)], [.. columns.Where(c => c.Storage < 0).Select(c => c.Parameter)]);
     }
 
     private int[] SupportOf(int node)

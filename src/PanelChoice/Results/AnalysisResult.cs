@@ -98,26 +98,14 @@ public sealed record SampleSummary(
     long RowsRead, int PersonsRead, int OccasionsRead, ImmutableArray<LeftOutCount> LeftOut, int Persons, int Occasions,
     ImmutableArray<AlternativeCount> Alternatives)
 {
-    /// <summary>The book-keeping of a covariate set's sample.</summary>
-    /// <param name="covariates">The covariates.</param>
-    public static SampleSummary Of(CovariateSet covariates)
+    /// <summary>The book-keeping of an estimation sample.</summary>
+    /// <param name="sample">The sample.</param>
+    public static SampleSummary Of(EstimationSample sample)
     {
-        ArgumentNullException.ThrowIfNull(covariates);
-        var panel = covariates.Panel;
-        var alternatives = panel.Alternatives.Length;
-        var offered = new int[alternatives];
-        var chosen = new int[alternatives];
-        foreach (var occasion in covariates.Used)
-        {
-            chosen[panel.Chosen[occasion]]++;
-            for (var j = 0; j < alternatives; j++) if (panel.Offered[(occasion * alternatives) + j]) offered[j]++;
-        }
-
+        ArgumentNullException.ThrowIfNull(sample);
         return new SampleSummary(
-            panel.Table.Rows, panel.Persons.Length, panel.Occasions,
-            [.. covariates.LeftOut.Select(l => new LeftOutCount(l.Reason, l.Occasions))],
-            covariates.Used.Select(o => panel.PersonOf[o]).Distinct().Count(), covariates.Used.Length,
-            [.. Enumerable.Range(0, alternatives).Select(j => new AlternativeCount(panel.Alternatives[j], offered[j], chosen[j]))]);
+            sample.Rows, sample.RecordedPersons, sample.RecordedOccasions, [.. sample.LeftOut.Select(l => new LeftOutCount(l.Reason, l.Occasions))],
+            sample.Persons, sample.Occasions, [.. sample.Alternatives.Select(a => new AlternativeCount(a.Name, a.Offered, a.Chosen))]);
     }
 }
 

@@ -44,7 +44,7 @@ public static class ProfileJson
         ResultJson.WriteInputs(json, ResultBuilder.Inputs(study, profile.File, covariates.Panel.Table.Sha256));
         ResultJson.WriteWarnings(json, profile.Cautions.Concat(covariates.Cautions).Select(c => new ResultWarning(c.Id, c.Sentence)).Distinct());
         json.WriteObject("panel", () => WritePanel(json, profile, covariates.Panel));
-        ResultJson.WriteSample(json, SampleSummary.Of(covariates));
+        ResultJson.WriteSample(json, SampleSummary.Of(EstimationSample.Of(covariates)));
     }
 
     private static void WritePanel(Utf8JsonWriter json, PanelProfile profile, ChoicePanel panel)

@@ -16,7 +16,7 @@ internal static class ResultBuilder
 {
     public static AnalysisResult Build(FindingsInput stages, ImmutableArray<Finding> findings)
     {
-        var (study, covariates, model, inference, diagnostics) = stages;
+        var (study, sample, model, inference, diagnostics) = stages;
         var book = new ReasonBook();
         var entries = ParameterEntries.Of(model);
         var fit = Fit(model, book);
@@ -28,11 +28,11 @@ internal static class ResultBuilder
         return new AnalysisResult(
             study.Title,
             new ToolStamp(Version, RuntimeInformation.FrameworkDescription, model.Likelihood.Kernel),
-            Inputs(study, covariates.Panel.Table.File, covariates.Panel.Table.Sha256),
+            Inputs(study, sample.File, sample.Sha256),
             new RunSettings(study.Inference.Confidence, study.Estimate.Seed, study.Inference.BootstrapSeed, study.Diagnostics.Seed),
             book.Reasons,
-            Warnings(covariates, inference, findings),
-            Sample(covariates, model.Design),
+            Warnings(sample, inference, findings),
+            Sample(sample, model.Design),
             fit,
             parameters,
             inference.Bootstrap is { } b
@@ -54,13 +54,10 @@ internal static class ResultBuilder
     public static InputStamps Inputs(StudySpecification study, string dataFile, string dataSha256) =>
         new(new FileStamp(Path.GetFileName(study.File), study.Sha256), new FileStamp(dataFile, dataSha256));
 
-    private static SampleSummary Sample(CovariateSet covariates, ChoiceDesign design)
-    {
-        var sample = SampleSummary.Of(covariates);
-        return sample.Persons == design.Persons && sample.Occasions == design.Situations
-            ? sample
+    private static SampleSummary Sample(EstimationSample sample, ChoiceDesign design) =>
+        sample.Persons == design.Persons && sample.Occasions == design.Situations
+            ? SampleSummary.Of(sample)
             : throw new InvalidOperationException("The design and the covariates hold different samples.");
-    }
 
     private static FitSummary Fit(FittedModel model, ReasonBook book) => new(
         ParameterEntries.StatusWord(model.Status),
@@ -95,7 +92,7 @@ internal static class ResultBuilder
     {
         var clusters = stages.Inference.Clusters;
         var design = stages.Model.Design;
-        var codes = Pseudonyms.Of(stages.Covariates.Panel.Table.Sha256, design.Clusters);
+        var codes = Pseudonyms.Of(stages.Sample.Sha256, design.Clusters);
         return new ClusterResult(
             clusters.By, clusters.Count, book.Number("clusters.effective", clusters.Effective, clusters.EffectiveReason ?? "It is not computed."),
             clusters.Smallest, clusters.Median, clusters.Largest, clusters.DegreesOfFreedom,
@@ -103,9 +100,9 @@ internal static class ResultBuilder
                 i => new InfluenceResult($"{clusters.By} {codes[i.Cluster]}", design.Layout.Parameters[i.Parameter].Label, i.Change))]);
     }
 
-    private static ImmutableArray<ResultWarning> Warnings(CovariateSet covariates, InferenceResult inference, ImmutableArray<Finding> findings) =>
+    private static ImmutableArray<ResultWarning> Warnings(EstimationSample sample, InferenceResult inference, ImmutableArray<Finding> findings) =>
     [
-        .. covariates.Cautions.Select(c => new ResultWarning(c.Id, c.Sentence))
+        .. sample.Cautions.Select(c => new ResultWarning(c.Id, c.Sentence))
             .Concat(Enum.GetValues<CovarianceKind>().Where(inference.Covariances.ContainsKey).SelectMany(
                 k => inference.Covariances[k].Cautions.Select(c => new ResultWarning("inference." + JsonWords.Of(k), c))))
             .Concat(findings.Where(f => f.Severity == FindingSeverity.Warning).Select(f => new ResultWarning(f.Id, f.Sentence)))

@@ -216,12 +216,32 @@ public class IndependenceBatteryTests
         var made = Commutes(new CommuteProcess(), false, 1);
         var set = made.Covariates;
         var pass = set.Covariates.Single(c => c.Term == "pass");
-        var (kept, leftOut) = PersonMeans.WithoutCollinear(
-            set with { Covariates = [.. set.Covariates, pass with { Term = "person mean of pass" }] }, set.Covariates.Length);
-        Assert.Equal(["person mean of pass"], leftOut.ToArray());
-        Assert.Equal(set.Covariates.Length, kept.Covariates.Length);
-        Assert.False(PersonMeans.VariesWithinPersons(pass, set));
-        Assert.True(PersonMeans.VariesWithinPersons(set.Covariates.Single(c => c.Term == "cost"), set));
+        var design = ChoiceDesignBuilder.Build(
+            set with { Covariates = [.. set.Covariates, pass with { Term = "person mean of pass" }] }, made.Tree, made.Study.Nests, NestedLogitForm.UtilityScaled);
+        Assert.Equal([set.Covariates.Length], PersonMeans.Collinear(design, set.Covariates.Length));
+        var varies = PersonMeans.VaryWithinPersons(design);
+        Assert.False(varies[set.Covariates.IndexOf(pass)]);
+        Assert.True(varies[set.Covariates.IndexOf(set.Covariates.Single(c => c.Term == "cost"))]);
+    }
+
+    [Fact]
+    public void A_design_without_some_coefficients_is_the_one_that_never_had_them()
+    {
+        // The columns stay in the blocks; what is left out may stand before, between and behind what stays.
+        var made = Commutes(new CommuteProcess(), false, 1);
+        var all = made.Design;
+        foreach (var leftOut in new int[][] { [0], [1, 3], [all.Layout.Coefficients - 1] })
+        {
+            var set = made.Covariates with { Covariates = [.. made.Covariates.Covariates.Where((_, k) => !leftOut.Contains(k))] };
+            var without = ChoiceDesignBuilder.Build(set, made.Tree, made.Study.Nests, NestedLogitForm.UtilityScaled);
+            var seen = all.Without(leftOut.ToHashSet());
+            double[] at = [.. made.Truth.Where((_, k) => !leftOut.Contains(k))];
+            double[] weight = [.. all.PersonWeight];
+            var expected = LikelihoodKernel.Create(without, NestedLogitForm.UtilityScaled, 1).Evaluate(at, weight, Derivatives.Hessian);
+            var actual = LikelihoodKernel.Create(seen, NestedLogitForm.UtilityScaled, 1).Evaluate(at, weight, Derivatives.Hessian);
+            Assert.Equal(expected.Value, actual.Value);
+            Assert.Equal(expected.Hessian.AsEnumerable(), actual.Hessian.AsEnumerable());
+        }
     }
 
     [Fact]

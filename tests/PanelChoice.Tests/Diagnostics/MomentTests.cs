@@ -22,6 +22,7 @@ public class MomentTests
     private readonly ChoiceDesign design;
     private readonly ImmutableArray<double> theta;
     private readonly OccasionPositions positions;
+    private readonly ImmutableArray<long> at;
     private readonly ImmutableArray<long> dates;
     private readonly BruteForce brute;
     private readonly ScoreBattery battery;
@@ -34,12 +35,13 @@ public class MomentTests
         // Off the truth and off the maximum on purpose: the total score must be projected out.
         theta = [.. made.Truth.Select((x, k) => x + (0.05 * Math.Cos(k)))];
         var random = new CounterRandom(3, "gaps", 0);
-        var at = new long[design.Situations];
-        for (var t = 0; t < at.Length; t++) at[t] = t % Occasions == 0 ? random.Next(3) : at[t - 1] + 1 + (random.Next(3) == 0 ? random.Next(4) : 0);
-        positions = new OccasionPositions([.. at], [.. new int[at.Length]], 1, "step");
-        dates = [.. at];
+        var days = new long[design.Situations];
+        for (var t = 0; t < days.Length; t++) days[t] = t % Occasions == 0 ? random.Next(3) : days[t - 1] + 1 + (random.Next(3) == 0 ? random.Next(4) : 0);
+        at = [.. days];
+        positions = new OccasionPositions(at, [.. new int[at.Length]], 1, "step");
+        dates = at;
         brute = Brute(theta);
-        battery = ScoreBattery.Compute(design, NestedLogitForm.UtilityScaled, theta, positions, Lags, dates, false, 1)!;
+        battery = ScoreBattery.Compute(design, NestedLogitForm.UtilityScaled, theta, positions, Lags, CompactNumbers.Of(dates), false, 1)!;
     }
 
     [Fact]
@@ -148,7 +150,7 @@ public class MomentTests
     [Fact]
     public void Date_demeaned_scores_equal_double_loops()
     {
-        var demeaned = ScoreBattery.Compute(design, NestedLogitForm.UtilityScaled, theta, positions, Lags, dates, true, 1)!;
+        var demeaned = ScoreBattery.Compute(design, NestedLogitForm.UtilityScaled, theta, positions, Lags, CompactNumbers.Of(dates), true, 1)!;
         int Same(int date) => dates.Count(d => d == date);
         double Weight(int t, int s, double decay)
         {
@@ -185,7 +187,7 @@ public class MomentTests
         };
         var other = ChoiceDesignBuilder.Build(set, made.Tree, made.Nests, NestedLogitForm.UtilityScaled);
         var reversed = ScoreBattery.Compute(
-            other, NestedLogitForm.UtilityScaled, theta, positions with { Position = Rows(positions.Position, 1) }, Lags, Rows(dates, 1), false, 1)!;
+            other, NestedLogitForm.UtilityScaled, theta, new OccasionPositions(Rows(at, 1), [.. new int[at.Length]], 1, "step"), Lags, CompactNumbers.Of(Rows(dates, 1)), false, 1)!;
         var (one, turnedAround) = (battery.Date!, reversed.Date!);
         Close(one.Score.Value, turnedAround.Score.Value, Math.Sqrt(one.Score.Variance));
         Close(one.Score.Variance, turnedAround.Score.Variance, one.Score.Variance);
@@ -208,7 +210,7 @@ public class MomentTests
     [Fact]
     public void No_figure_depends_on_the_number_of_threads()
     {
-        var two = ScoreBattery.Compute(design, NestedLogitForm.UtilityScaled, theta, positions, Lags, dates, false, 2)!;
+        var two = ScoreBattery.Compute(design, NestedLogitForm.UtilityScaled, theta, positions, Lags, CompactNumbers.Of(dates), false, 2)!;
         Assert.Equal(battery.Decays.AsEnumerable(), two.Decays);
         Assert.Equal(battery.DecayCovariance.AsEnumerable(), two.DecayCovariance);
         Assert.Equal(battery.Lags.AsEnumerable(), two.Lags);
@@ -240,7 +242,7 @@ public class MomentTests
                 for (var e = 0; e < covariates[k].Enters.Length; e++)
                     x[covariates[k].Enters[e], k] = covariates[k].IsConstant ? 1 : covariates[k].Values[(t * covariates[k].Enters.Length) + e];
             rows.Add(new BruteForce.Row(
-                t / Occasions, positions.Position[t], dates[t], [.. made.Panel.Offered.Skip(t * 5).Take(5)], made.Panel.Chosen[t], x));
+                t / Occasions, this.at[t], dates[t], [.. made.Panel.Offered.Skip(t * 5).Take(5)], made.Panel.Chosen[t], x));
         }
 
         return new BruteForce(rows, NestOf, [.. at]);
@@ -248,7 +250,7 @@ public class MomentTests
 
     private static bool Earlier(int t, int s) => s < t && t / Occasions == s / Occasions;
 
-    private long Gap(int t, int s) => positions.Position[t] - positions.Position[s];
+    private long Gap(int t, int s) => at[t] - at[s];
 
     private int Pairs(Func<int, int, bool> counts)
     {

@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using PanelChoice.Covariates;
 using PanelChoice.Data;
 using PanelChoice.Diagnostics;
 using PanelChoice.Panels;
@@ -84,19 +85,24 @@ public class OccasionPositionsTests
     public void Positions_start_anew_with_each_person()
     {
         var panel = Panel(OccasionKind.WholeNumber, [4, 5, 6, 1, 2], [0, 3, 5]);
-        var p = OccasionPositions.Of(new HistorySpecification(PreviousRule.Step, [], null, MissingHistory.Drop), panel, [1, 2, 3, 4]);
-        Assert.Equal([0, 1, 0, 1], p.Position.ToArray());
+        var p = Of(new HistorySpecification(PreviousRule.Step, [], null, MissingHistory.Drop), panel, [1, 2, 3, 4]);
+        Assert.Equal([0L, 1, 0, 1], [p.Position(0, 0), p.Position(1, 0), p.Position(2, 2), p.Position(3, 2)]);
     }
 
     private static long[] Days(params int[] after) => [.. after.Select(d => (long)Monday.AddDays(d).DayNumber)];
 
-    private static OccasionPositions Of(
+    private static Line Of(
         PreviousRule? rule, OccasionKind kind, long[] occasions, ImmutableArray<DateOnly>? holidays = null, int[]? used = null)
     {
         var panel = Panel(kind, occasions, [0, occasions.Length]);
-        return OccasionPositions.Of(
-            new HistorySpecification(rule, holidays ?? [], null, MissingHistory.Drop), panel, [.. used ?? [.. Enumerable.Range(0, occasions.Length)]]);
+        ImmutableArray<int> sample = [.. used ?? [.. Enumerable.Range(0, occasions.Length)]];
+        var p = Of(new HistorySpecification(rule, holidays ?? [], null, MissingHistory.Drop), panel, sample);
+        var situations = Enumerable.Range(0, sample.Length);
+        return new Line(p.Unit, p.Streams, [.. situations.Select(t => p.Position(t, 0))], [.. situations.Select(p.Stream)]);
     }
+
+    private static OccasionPositions Of(HistorySpecification history, ChoicePanel panel, ImmutableArray<int> used) => OccasionPositions.Of(
+        history, new EstimationSample("made", "", 0, 0, 0, panel.Table.OccasionKind, false, 0, 0, [], [], [], [], []) { Times = SituationTimes.Of(panel, used) });
 
     private static ChoicePanel Panel(OccasionKind kind, long[] occasions, int[] personStart)
     {
@@ -111,4 +117,6 @@ public class OccasionPositionsTests
             [.. Enumerable.Range(0, occasions.Length).Select(o => Array.FindLastIndex(personStart, s => s <= o))],
             [.. occasions], [], [], [], [.. Enumerable.Repeat(1.0, persons)], "person", ids, [.. Enumerable.Range(0, persons)]);
     }
+
+    private sealed record Line(string Unit, int Streams, ImmutableArray<long> Position, ImmutableArray<int> Stream);
 }

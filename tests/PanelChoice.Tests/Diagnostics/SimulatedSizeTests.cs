@@ -1,3 +1,4 @@
+using PanelChoice.Covariates;
 using PanelChoice.Diagnostics;
 using PanelChoice.Estimation;
 using PanelChoice.Study;
@@ -46,7 +47,7 @@ public class SimulatedSizeTests(ITestOutputHelper output)
             var design = made.Design;
             var fit = NewtonFit.From(design, NestedLogitForm.UtilityScaled, made.Truth);
             if (fit.Status != FitStatus.Converged) return;
-            var positions = OccasionPositions.Of(made.Study.History, made.Covariates.Panel, made.Covariates.Used);
+            var positions = OccasionPositions.Of(made.Study.History, EstimationSample.Of(made.Covariates));
             var battery = ScoreBattery.Compute(design, fit.Form, fit.Parameters, positions, 1, null, false, 1)!;
             var detector = DecayGridDetector.Of(battery, Draws, 7)!;
             outcomes[i] = (true, detector.PValue <= Level, WithoutEstimationEffect(battery) <= Level);

@@ -162,7 +162,7 @@ public class FindingTests
         static string NotRepaired(FindingsInput stages) => FindingList.Of(stages).Single(f => f.Id == "advice.not_repaired").Sentence;
 
         Assert.Contains("upper bound", NotRepaired(Fifty), StringComparison.Ordinal);
-        var jumping = Fifty with { Covariates = Fifty.Covariates with { Cautions = [new Caution("history.gaps", "Lags jump gaps.")] } };
+        var jumping = Fifty with { Sample = Fifty.Sample with { Cautions = [new Caution("history.gaps", "Lags jump gaps.")] } };
         Assert.DoesNotContain("upper bound", NotRepaired(jumping), StringComparison.Ordinal);
         Assert.Contains("settled", NotRepaired(jumping), StringComparison.Ordinal);
     }

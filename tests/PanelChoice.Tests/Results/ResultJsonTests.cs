@@ -1,5 +1,6 @@
 using System.Text;
 using System.Text.Json;
+using PanelChoice.Covariates;
 using PanelChoice.Diagnostics;
 using PanelChoice.Estimation;
 using PanelChoice.Findings;
@@ -124,7 +125,7 @@ public class ResultJsonTests
         var inference = StandardErrors.Compute(InferenceInput.From(model, refitter), settings, WorkContext.Quiet);
         var result = HandMadeStages.Result(HandMadeStages.Fifty with
         {
-            Study = HandMadeStages.Fifty.Study with { Nests = made.Nests, Terms = HandMadeStages.Fifty.Study.Terms[..3], Inference = settings }, Covariates = made.Covariates, Model = model, Inference = inference,
+            Study = HandMadeStages.Fifty.Study with { Nests = made.Nests, Terms = HandMadeStages.Fifty.Study.Terms[..3], Inference = settings }, Sample = EstimationSample.Of(made.Covariates), Model = model, Inference = inference,
         });
         var (outer, inner) = (result.Parameters[^2], result.Parameters[^1]);
         Assert.Equal(("outer", "free"), (outer.Name, outer.Status));

@@ -57,8 +57,8 @@ internal static class HandMadeStages
             Title = "Hand-made panel", Nests = made.Nests,
             Inference = new InferenceSettings("person", 0.95, JackknifeKind.Refit, 19, 7),
         };
-        var covariates = made.Covariates with { LeftOut = [new LeftOut("first recorded occasion", 3), new LeftOut("never happened", 0)] };
-        var evidence = InferenceInput.From(model, refitter) with { Clusters = Pseudonyms.Of(covariates.Panel.Table.Sha256, model.Design.Clusters) };
-        return new FindingsInput(study, covariates, model, StandardErrors.Compute(evidence, study.Inference, WorkContext.Quiet), Taste);
+        var sample = EstimationSample.Of(made.Covariates) with { LeftOut = [new LeftOut("first recorded occasion", 3), new LeftOut("never happened", 0)] };
+        var evidence = InferenceInput.From(model, refitter) with { Clusters = Pseudonyms.Of(sample.Sha256, model.Design.Clusters) };
+        return new FindingsInput(study, sample, model, StandardErrors.Compute(evidence, study.Inference, WorkContext.Quiet), Taste);
     }
 }

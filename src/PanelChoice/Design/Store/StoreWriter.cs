@@ -1,0 +1,126 @@
+using System.Collections.Immutable;
+using PanelChoice.Numerics;
+
+namespace PanelChoice.Design.Store;
+
+/// <summary>
+/// Writes a store under a temporary name beside its own and gives it its name once it is complete and on the disk. Blocks are written as they come; the
+/// header, which is known last, stands at the end, and the first bytes of the file say where.
+/// </summary>
+internal sealed class StoreWriter : IDisposable
+{
+    private readonly string path;
+    private readonly string temporary;
+    private readonly FileStream file;
+
+    /// <summary>Begins a store.</summary>
+    /// <param name="path">The file to make or replace.</param>
+    /// <exception cref="IOException">The file cannot be written.</exception>
+    /// <exception cref="UnauthorizedAccessException">The file may not be written.</exception>
+    public StoreWriter(string path)
+    {
+        this.path = Path.GetFullPath(path);
+        var folder = Path.GetDirectoryName(this.path) ?? throw new IOException($"'{path}' is not a file name.");
+        temporary = Path.Combine(folder, $".{Path.GetFileName(this.path)}.{Guid.NewGuid():N}.part");
+        file = new FileStream(temporary, FileMode.CreateNew, FileAccess.ReadWrite, FileShare.Read, 1 << 16);
+        file.Write(new byte[StorePreamble.Bytes]);
+    }
+
+    /// <summary>Begins the blocks of a design.</summary>
+    /// <param name="format">How each is laid out.</param>
+    public Section Begin(BlockFormat format) => new(file, format);
+
+    /// <summary>Writes the header, and gives the file its name.</summary>
+    public void Complete(StoreHeader header)
+    {
+        var begin = file.Position;
+        using (var content = new BinaryWriter(file, System.Text.Encoding.UTF8, leaveOpen: true)) header.Write(content);
+        var length = file.Position - begin;
+        // The checksum is taken from what was written, piece by piece: a header grows with the number of persons.
+        file.Position = begin;
+        var preamble = new byte[StorePreamble.Bytes];
+        new StorePreamble(begin, length, StorePreamble.ChecksumOf(file, length)).Write(preamble);
+        file.Position = 0;
+        file.Write(preamble);
+        file.Flush(flushToDisk: true);
+        file.Dispose();
+        File.Move(temporary, path, overwrite: true);
+    }
+
+    /// <summary>Lets go of the file; without <see cref="Complete"/> nothing is left of it.</summary>
+    public void Dispose()
+    {
+        file.Dispose();
+        File.Delete(temporary);
+    }
+
+    /// <summary>The blocks of one design on their way into the file.</summary>
+    internal sealed class Section : IBlockTarget
+    {
+        private readonly FileStream file;
+        private readonly BlockFormat format;
+        private readonly List<DesignBlock> blocks = [];
+        private readonly ImmutableArray<uint>.Builder checksums = ImmutableArray.CreateBuilder<uint>();
+        private byte[] open = [];
+        private int length;
+
+        public Section(FileStream file, BlockFormat format)
+        {
+            this.file = file;
+            this.format = format;
+            FirstByte = file.Position;
+        }
+
+        /// <summary>Where the first block begins.</summary>
+        public long FirstByte { get; }
+
+        /// <summary>How each block is laid out.</summary>
+        public BlockFormat Format => format;
+
+        /// <summary>The blocks as a store, once all are there.</summary>
+        public BlockStore? Store { get; private set; }
+
+        /// <summary>A design of these blocks as the header tells it.</summary>
+        public StoredDesign Of(ChoiceDesign design) => new(design.Layout, design.Columns, format, FirstByte, checksums.ToImmutable());
+
+        /// <inheritdoc/>
+        public Span<byte> Append(int lanes)
+        {
+            Put();
+            length = format.Bytes(lanes);
+            if (open.Length < length) open = new byte[length];
+            blocks.Add(new DesignBlock(blocks.Count, 0, 0, lanes));
+            return open.AsSpan(0, length);
+        }
+
+        /// <inheritdoc/>
+        public BlockStore Complete()
+        {
+            Put();
+            file.Flush();
+            Store = new FileBlockStore(format, file.SafeFileHandle, FirstByte, blocks, new MemoryBlockStore(format));
+            return Store;
+        }
+
+        private void Put()
+        {
+            if (length == 0) return;
+            var block = open.AsSpan(0, length);
+            checksums.Add(Checksum.Of(block));
+            try
+            {
+                file.Write(block);
+            }
+            catch (IOException e)
+            {
+                throw new StoreWriteException(e);
+            }
+
+            block.Clear();
+            length = 0;
+        }
+    }
+}
+
+/// <summary>A block could not be written; told apart from what goes wrong with the data file, which is being read at the same time.</summary>
+internal sealed class StoreWriteException(IOException cause) : Exception(cause.Message, cause);

@@ -1,0 +1,133 @@
+using PanelChoice.Covariates;
+using PanelChoice.Data;
+using PanelChoice.Design;
+using PanelChoice.Design.Store;
+using PanelChoice.Diagnostics;
+using PanelChoice.Numerics;
+using PanelChoice.Panels;
+using PanelChoice.Study;
+
+namespace PanelChoice;
+
+/// <summary>What an estimation starts from: the sample and its design. The table and the panel that it was made from need not be in memory.</summary>
+public sealed class PanelAnalysisSample : IDisposable
+{
+    private readonly Lazy<StaticDesign?> staticDesign;
+
+    private readonly DesignStore? store;
+
+    private PanelAnalysisSample(EstimationSample sample, ChoiceDesign design, Func<StaticDesign?> staticDesign, DesignStore? store)
+    {
+        this.store = store;
+        Sample = sample;
+        Design = design;
+        this.staticDesign = new Lazy<StaticDesign?>(staticDesign);
+    }
+
+    /// <summary>Counts and words about the recorded panel and the sample.</summary>
+    public EstimationSample Sample { get; }
+
+    /// <summary>The design.</summary>
+    public ChoiceDesign Design { get; }
+
+    /// <summary>The design on which the cause of dependence is judged; made when it is first asked for.</summary>
+    internal StaticDesign? Static() => staticDesign.Value;
+
+    /// <summary>Reads and checks the data and builds the design in memory, part by part where the file is in order of persons.</summary>
+    /// <param name="study">The study.</param>
+    /// <param name="work">Progress and cancellation.</param>
+    /// <returns>The sample, or every problem found.</returns>
+    /// <exception cref="OperationCanceledException">Cancelled.</exception>
+    public static Checked<PanelAnalysisSample> Read(StudySpecification study, WorkContext work) =>
+        Read(study, TableScan.BytesKept, TableScan.RowsOfPart, work);
+
+    /// <summary>The same with the sizes of what is kept and of a part given.</summary>
+    internal static Checked<PanelAnalysisSample> Read(StudySpecification study, long bytesKept, int rowsOfPart, WorkContext work)
+    {
+        ArgumentNullException.ThrowIfNull(study);
+        ArgumentNullException.ThrowIfNull(work);
+        return Parts(study, bytesKept, rowsOfPart, mustBeOrdered: false, work, (_, designs) =>
+            designs.Main(format => new MemoryBlockStore(format)).Then(made => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
+                made.Sample, made.Design,
+                () => StaticDesign.Of(study, made.Sample, made.Design, terms => designs.Other(terms, f => new MemoryBlockStore(f)).Value), null))));
+    }
+
+    /// <summary>
+    /// Takes the built sample from a store, or makes the store first where there is none. The data are read only to make it, and nothing of the design is
+    /// held in memory but what is asked for: the rest is read from the store whenever it is needed.
+    /// </summary>
+    /// <param name="study">The study.</param>
+    /// <param name="store">The store's file.</param>
+    /// <param name="bytesHeld">Bytes of the design that may be held in memory.</param>
+    /// <param name="work">Progress and cancellation.</param>
+    /// <returns>The sample, every problem found with the data, or why the store is not to be used.</returns>
+    /// <exception cref="IOException">The store cannot be written.</exception>
+    /// <exception cref="UnauthorizedAccessException">The store may not be written.</exception>
+    /// <exception cref="OperationCanceledException">Cancelled.</exception>
+    public static Checked<PanelAnalysisSample> Keep(StudySpecification study, string store, long bytesHeld, WorkContext work) =>
+        Keep(study, store, bytesHeld, TableScan.BytesKept, TableScan.RowsOfPart, work);
+
+    /// <summary>The same with the sizes of what is kept and of a part given.</summary>
+    internal static Checked<PanelAnalysisSample> Keep(
+        StudySpecification study, string store, long bytesHeld, long bytesKept, int rowsOfPart, WorkContext work)
+    {
+        ArgumentNullException.ThrowIfNull(study);
+        ArgumentException.ThrowIfNullOrEmpty(store);
+        ArgumentNullException.ThrowIfNull(work);
+        if (!File.Exists(store))
+        {
+            var made = Parts(study, bytesKept, rowsOfPart, mustBeOrdered: true, work, (parts, designs) => Make(study, store, parts, designs));
+            if (made.Value is null) return Checked<PanelAnalysisSample>.Bad(made.Problems);
+        }
+
+        return DesignStore.Open(store, study, bytesHeld).Then(kept => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
+            kept.Sample, kept.Main, () => kept.Second is null ? null : new StaticDesign(kept.Second, kept.SecondNames), kept)));
+    }
+
+    /// <summary>Lets go of the store's file, where there is one.</summary>
+    public void Dispose() => store?.Dispose();
+
+    private static Checked<T> Parts<T>(
+        StudySpecification study, long bytesKept, int rowsOfPart, bool mustBeOrdered, WorkContext work, Func<PanelParts, PartedDesigns, Checked<T>> use)
+        where T : class
+    {
+        work.Report("reading the data", 0, 1);
+        var made = TableScan.Of(study, bytesKept, mustBeOrdered)
+            .Then(scan => PanelParts.Of(study, scan, rowsOfPart))
+            .Then(parts => NestTreeBuilder.Build(study, parts.Outline.Alternatives).Then(tree => use(parts, new PartedDesigns(study, parts, tree, work))));
+        work.Report("reading the data", 1, 1);
+        return made;
+    }
+
+    /// <summary>Makes a store: the design of the study's terms and that on which the cause of dependence is judged, so that the data are not needed again.</summary>
+    private static Checked<DesignedSample> Make(StudySpecification study, string store, PanelParts parts, PartedDesigns designs)
+    {
+        using var writer = new StoreWriter(store);
+        var sections = new List<StoreWriter.Section>();
+        try
+        {
+            return designs.Main(Begin).Then(made =>
+            {
+                var still = StaticDesign.Of(study, made.Sample, made.Design, terms => designs.Other(terms, Begin).Value);
+                var (sample, design) = (made.Sample, made.Design);
+                writer.Complete(new StoreHeader(
+                    new StoreOrigin(DesignFingerprint.Of(study), parts.Outline.File, parts.Outline.Sha256, parts.Stamp), sample, design.PersonStart,
+                    design.PersonWeight, design.ClusterBy, design.ClusterOf, design.Clusters, [.. design.Blocks.Select(b => b.Situations)],
+                    Stored(design), still is null ? null : Stored(still.Design), still?.Means ?? []));
+                return Checked<DesignedSample>.Good(made);
+            });
+        }
+        catch (StoreWriteException e)
+        {
+            throw new IOException(e.Message, e);
+        }
+
+        StoreWriter.Section Begin(BlockFormat format)
+        {
+            sections.Add(writer.Begin(format));
+            return sections[^1];
+        }
+
+        StoredDesign Stored(ChoiceDesign design) => sections.Single(s => s.Store == design.Store).Of(design);
+    }
+}

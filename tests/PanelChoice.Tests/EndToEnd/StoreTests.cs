@@ -1,0 +1,145 @@
+using System.Globalization;
+using System.Text;
+using PanelChoice.Numerics;
+using Xunit;
+
+namespace PanelChoice.Tests.EndToEnd;
+
+/// <summary>The store from the command line.</summary>
+public class StoreTests
+{
+    [Fact]
+    public void A_store_changes_no_byte_of_the_result_at_the_first_run_and_at_the_second()
+    {
+        using var study = new SmallStudy();
+        string[] common = ["estimate", study.StudyFile, "--out"];
+        Assert.Equal(0, CommandLineProcess.InProcess([.. common, study.PathOf("memory")]).Code);
+        foreach (var run in new[] { "first", "second" })
+            Assert.Equal(0, CommandLineProcess.InProcess([.. common, study.PathOf(run), "--store", study.PathOf("kept.store"), "--memory", "1"]).Code);
+        foreach (var name in new[] { "result.json", "coefficients.csv", "replicates.parquet" })
+            foreach (var run in new[] { "first", "second" })
+                Assert.Equal(File.ReadAllBytes(Path.Combine(study.PathOf("memory"), name)), File.ReadAllBytes(Path.Combine(study.PathOf(run), name)));
+    }
+
+    [Fact]
+    public void A_store_that_cannot_be_used_ends_with_65_and_one_sentence()
+    {
+        using var study = new SmallStudy();
+        var store = study.PathOf("kept.store");
+        string[] run = ["estimate", study.StudyFile, "--store", store];
+        Assert.Equal(0, CommandLineProcess.InProcess(run).Code);
+
+        File.AppendAllText(study.DataFile, "\n");
+        Refused("is not what it was when the store was made");
+        File.WriteAllText(store, "something else");
+        Refused("is no store of a design");
+        Assert.Equal("something else", File.ReadAllText(store));
+
+        void Refused(string words)
+        {
+            var outcome = CommandLineProcess.InProcess(run);
+            Assert.Equal((65, ""), (outcome.Code, outcome.Out));
+            Assert.Contains(words, Assert.Single(outcome.Error.Trim().Split('\n')), StringComparison.Ordinal);
+        }
+    }
+
+    [Fact]
+    public void What_cannot_be_meant_is_told_before_anything_is_read()
+    {
+        using var study = new SmallStudy();
+        Assert.Equal(64, CommandLineProcess.InProcess("estimate", study.StudyFile, "--memory", "100").Code);
+        Assert.Equal(64, CommandLineProcess.InProcess("estimate", study.StudyFile, "--store", "x", "--memory", "none").Code);
+        Assert.Equal(64, CommandLineProcess.InProcess("estimate", study.StudyFile, "--store", "").Code);
+        Assert.Equal(73, CommandLineProcess.InProcess("estimate", study.StudyFile, "--store", study.DataFile).Code);
+        Assert.Equal(73, CommandLineProcess.InProcess("estimate", study.StudyFile, "--store", study.PathOf("no/such/folder/kept.store")).Code);
+    }
+
+    [Fact]
+    public void A_design_of_four_times_the_budget_stays_below_the_budget_and_two_hundred_megabytes_and_far_below_memory()
+    {
+        // Peak resident memory is the system's own record of a process, which only Linux shows in a file.
+        if (!OperatingSystem.IsLinux()) return;
+        const int Budget = 12;
+        using var study = new SmallStudy(_ => Study(), _ => Data());
+        var memory = Peak("memory");
+        var kept = Peak("kept", "--store", "kept.store", "--memory", $"{Budget}");
+        Assert.Equal(File.ReadAllBytes(Path.Combine(study.PathOf("memory"), "result.json")), File.ReadAllBytes(Path.Combine(study.PathOf("kept"), "result.json")));
+        // 44 columns of doubles, and a second design as large: half of the file is what a run without a store holds.
+        var design = new FileInfo(study.PathOf("kept.store")).Length * 44 / 92;
+        Assert.InRange(design, 4 * Budget * 1_000_000L, long.MaxValue);
+        Assert.InRange(kept, 0, (Budget + 200) * 1_000_000L);
+        // A process that held the design would take all of it on top.
+        Assert.InRange(memory - kept, design / 2, long.MaxValue);
+
+        long Peak(string output, params string[] more)
+        {
+            using var process = CommandLineProcess.Start(study.Folder, new Dictionary<string, string>(), ["estimate", "study.toml", "--threads", "1", "--out", output, .. more]);
+            var error = process.StandardError.ReadToEndAsync();
+            var peak = 0L;
+            // The figure only rises, so that the last look before the end has all but what the end itself takes.
+            for (; !process.WaitForExit(20); peak = Math.Max(peak, HighWater(process.Id))) { }
+            Assert.Equal((0, ""), (process.ExitCode, error.Result));
+            return peak;
+        }
+    }
+
+    private static long HighWater(int process)
+    {
+        try
+        {
+            var line = File.ReadLines($"/proc/{process}/status").FirstOrDefault(l => l.StartsWith("VmHWM:", StringComparison.Ordinal));
+            return line is null ? 0 : long.Parse(line["VmHWM:".Length..].Replace("kB", "", StringComparison.Ordinal), CultureInfo.InvariantCulture) * 1024;
+        }
+        catch (IOException)
+        {
+            return 0; // It ended just now.
+        }
+    }
+
+    /// <summary>Two columns and ten lags of each: much design from little data.</summary>
+    private static string Study()
+    {
+        var study = new StringBuilder("""
+            [panel]
+            file = "panel.csv"
+            person = "who"
+            occasion = "day"
+            alternative = "mode"
+            chosen = "taken"
+            [history]
+            previous = "step"
+            [estimate]
+            starts = 1
+            [inference]
+            jackknife = "off"
+            [inference.bootstrap]
+            replicates = 0
+            [diagnostics]
+            draws = 99
+
+            """);
+        foreach (var column in "ab")
+        {
+            study.Append(CultureInfo.InvariantCulture, $"[[term]]\nname = \"{column}\"\ncolumn = \"{column}\"\n");
+            for (var lag = 1; lag <= 10; lag++) study.Append(CultureInfo.InvariantCulture, $"[[term]]\nname = \"{column}{lag}\"\ncolumn = \"{column}\"\nlag = {lag}\n");
+        }
+
+        return study.ToString();
+    }
+
+    /// <summary>Columns with all digits of a double, which no whole number can stand for.</summary>
+    private static string Data()
+    {
+        var random = new CounterRandom(3, "many occasions", 0);
+        var text = new StringBuilder("who,day,mode,taken,a,b\n");
+        for (var person = 1; person <= 750; person++)
+            for (var day = 0; day < 200; day++)
+            {
+                var chosen = random.Next(2);
+                for (var j = 0; j < 2; j++)
+                    text.Append(CultureInfo.InvariantCulture, $"{person},{day},{"xy"[j]},{(j == chosen ? 1 : 0)},{random.NextDouble()},{random.NextDouble()}\n");
+            }
+
+        return text.ToString();
+    }
+}
