@@ -12,10 +12,13 @@ namespace PanelChoice.Estimation;
 /// </summary>
 internal sealed class ClusterExpansion
 {
-    /// <summary>Doubles that may be held: half a gigabyte. Where Hessians would not fit, that of the whole sample stands for each replicate's: with so many clusters they differ little.</summary>
-    public const long MostEntries = 1L << 26;
+    /// <summary>
+    /// Doubles that scores and Hessians may take: 64 megabytes. With more clusters the Hessian of the whole sample stands for each replicate's: they differ by a
+    /// share of about one over the root of the number of clusters. Scores alone may take four times as much.
+    /// </summary>
+    public const long MostEntries = 1L << 23;
 
-    /// <summary>Persons that third derivatives are taken from at least (about). They only correct the change of the Hessian on the way to a replicate, itself a few percent.</summary>
+    /// <summary>Persons that third derivatives are taken from at least (about). They only correct the Hessian for the way to a replicate, by a few percent.</summary>
     private const int ThinnedPersons = 600;
 
     /// <summary>Replicates summed by one thread at a time.</summary>
@@ -60,7 +63,7 @@ internal sealed class ClusterExpansion
     /// <param name="model">The model, at a maximum.</param>
     /// <param name="likelihood">Its likelihood.</param>
     /// <param name="scale">Scale of each column.</param>
-    /// <param name="mostEntries">Doubles that may be held.</param>
+    /// <param name="mostEntries">Doubles that scores and Hessians may take.</param>
     /// <param name="cancellation">Stops between stretches of persons.</param>
     /// <returns>The expansion; null where not even the clusters' scores may be held.</returns>
     public static ClusterExpansion? Of(
@@ -69,7 +72,7 @@ internal sealed class ClusterExpansion
         ImmutableArray<int> active = [.. model.Layout.Free.Except(model.Held)];
         long n = active.Length;
         long clusters = model.Design.Clusters.Length;
-        if (n == 0 || clusters * n > mostEntries) return null;
+        if (n == 0 || clusters * n > 4 * mostEntries) return null;
         var expansion = new ClusterExpansion(model, scale, active, clusters * (n + (n * (n + 1) / 2)) <= mostEntries);
         expansion.AddPersons(likelihood, cancellation);
         expansion.Third = expansion.ThirdDerivatives(likelihood);
