@@ -51,7 +51,7 @@ internal static class LikelihoodRows
             + $"(sum {sum & 0xff:x2})");
     }
 
-    /// <summary>Gradient and exact Hessian, scores and information by person, against the gradient pass.</summary>
+    /// <summary>Gradient and exact Hessian, the value alone and the information of each person, against the gradient pass.</summary>
     public static void Hessian(CaseAtWork work)
     {
         var times = Measurement.OfThread(
@@ -59,13 +59,11 @@ internal static class LikelihoodRows
             () => work.GradientPass(),
             () => work.Likelihood.Evaluate(work.Theta, work.PersonWeight, Derivatives.Hessian),
             () => work.Likelihood.Evaluate(work.Theta, work.PersonWeight, Derivatives.None),
-            () => work.Likelihood.Scores(work.Theta),
             () => work.Likelihood.PersonInformation(work.Theta));
         var goal = work.Made.Shape.Name == "S" ? null : Goal.AtMost(3.5);
         RatioTable.Row("3", "gradient and exact Hessian / gradient pass", work.Label, times[1], times[0], goal);
         RatioTable.Row("", "value alone / gradient pass", work.Label, times[2], times[0]);
-        RatioTable.Row("", "scores of all situations / gradient pass", work.Label, times[3], times[0]);
-        RatioTable.Row("", "information of all persons / gradient pass", work.Label, times[4], times[0]);
+        RatioTable.Row("", "information of all persons / gradient pass", work.Label, times[3], times[0]);
     }
 
     /// <summary>Two threads against one, by the wall clock; the same bits always.</summary>

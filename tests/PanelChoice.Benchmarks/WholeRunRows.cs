@@ -24,32 +24,39 @@ internal static class WholeRunRows
         files.WriteParquet(folder.File("trips.parquet"));
         files.WriteStudy(folder.File("study.toml"), "trips.parquet", Replicates);
 
-        var wholes = Enumerable.Range(0, Repetitions).Select(r => ChildProcess.CommandLine(
-            "estimate", folder.File("study.toml"), "--out", folder.File($"result-{r}"), "--threads", "1")).ToArray();
+        var stages = new Stages(StudyFileReader.Read(folder.File("study.toml")).Value!);
+        stages.Run();
+        stages.Forget();
+        var wholes = new List<ChildOutcome>();
+        for (var r = 0; r < Repetitions; r++)
+        {
+            wholes.Add(ChildProcess.CommandLine("estimate", folder.File("study.toml"), "--out", folder.File($"result-{r}"), "--threads", "1"));
+            stages.Run();
+        }
+
         Agreement.Holds(wholes.All(w => w.Code == 0), $"estimate ended with {string.Join(", ", wholes.Select(w => w.Code))}");
         var results = Enumerable.Range(0, Repetitions).Select(r => File.ReadAllBytes(Path.Combine(folder.File($"result-{r}"), "result.json"))).ToArray();
         Agreement.Holds(results.All(r => r.AsSpan().SequenceEqual(results[0])), "two runs of estimate gave different results");
 
-        var parts = Parts(folder.File("study.toml"));
-        double[] Sums(Func<Part, double[]> of) => [.. Enumerable.Range(0, Repetitions).Select(r => parts.Sum(p => of(p)[r]))];
+        double[] Sums(Func<(double Wall, double Processor), double> of) => [.. Enumerable.Range(0, Repetitions).Select(r => stages.Times.Values.Sum(t => of(t[r])))];
         RatioTable.Row(
-            "9", $"estimate, whole process, {Replicates} replicates, wall time / its parts alone", $"{shape.Name} coded", [.. wholes.Select(w => w.WallSeconds)], Sums(p => p.Wall), Goal.AtMost(1.3));
-        RatioTable.Row("", "the same, processor time of all the process's threads / its parts alone", $"{shape.Name} coded", [.. wholes.Select(w => w.ProcessorSeconds)], Sums(p => p.Processor));
-        RatioTable.Remark($"parts in processor time, best of {Repetitions}: {string.Join(", ", parts.Select(p => $"{p.Name} {p.Processor.Min():F2} s"))}");
+            "9", $"estimate, whole process, {Replicates} replicates, wall time / its parts alone", $"{shape.Name} coded", [.. wholes.Select(w => w.WallSeconds)], Sums(t => t.Wall), Goal.AtMost(1.3));
+        RatioTable.Row("", "the same, processor time of all the process's threads / its parts alone", $"{shape.Name} coded", [.. wholes.Select(w => w.ProcessorSeconds)], Sums(t => t.Processor));
+        RatioTable.Remark(
+            $"parts in processor time, best of {Repetitions}: {string.Join(", ", stages.Times.Select(t => $"{t.Key} {t.Value.Min(x => x.Processor):F2} s"))}");
         RatioTable.Remark(
             $"peak resident memory {wholes.Max(w => w.PeakBytes) / 1e6:#,0} MB; the table as Parquet {new FileInfo(folder.File("trips.parquet")).Length / 1e6:F1} MB");
     }
 
     /// <summary>The stages of the command one after the other, each timed by itself in a process that has run them before.</summary>
-    private static List<Part> Parts(string path)
+    private sealed class Stages(StudySpecification study)
     {
-        var study = StudyFileReader.Read(path).Value!;
-        var parts = new List<Part>();
-        Round(-1);
-        for (var r = 0; r < Repetitions; r++) Round(r);
-        return parts;
+        /// <summary>Seconds of each stage, run by run.</summary>
+        public OrderedDictionary<string, List<(double Wall, double Processor)>> Times { get; } = [];
 
-        void Round(int repetition)
+        public void Forget() => Times.Clear();
+
+        public void Run()
         {
             var (sample, likelihood) = Time("load", () =>
             {
@@ -57,33 +64,22 @@ internal static class WholeRunRows
                 return (read, LikelihoodKernel.Create(read.Design, study.Estimate.Form, 1));
             });
             var model = Time("fit", () => MaximumLikelihood.Fit(likelihood, study.Estimate.Form, study.Estimate, WorkContext.Quiet));
-            var refitter = new ClusterRefitter(model, 1);
-            Time("covariances", () => StandardErrors.Compute(
-                InferenceInput.From(model, refitter), study.Inference with { Replicates = 0, Jackknife = JackknifeKind.Off }, WorkContext.Quiet));
-            var evidence = InferenceInput.From(model, refitter);
+            var evidence = InferenceInput.From(model, new ClusterRefitter(model, 1));
+            Time("covariances", () => StandardErrors.Compute(evidence, study.Inference with { Replicates = 0, Jackknife = JackknifeKind.Off }, WorkContext.Quiet));
             var sums = evidence.Scores(1);
             Time("jackknife", () => ClusterJackknife.Estimate(evidence, sums, study.Inference.Jackknife, WorkContext.Quiet));
             Time("replicates", () => ClusterBootstrap.Estimate(evidence, study.Inference, WorkContext.Quiet));
             Time("diagnostics", () => IndependenceBattery.Run(study, sample.Sample, model, sample.Static, WorkContext.Quiet));
+            sample.Dispose();
+        }
 
-            T Time<T>(string name, Func<T> part)
-            {
-                var (wall, processor) = (Measurement.Wall(), ThreadClock.Seconds());
-                var result = part();
-                (wall, processor) = (Measurement.Wall() - wall, ThreadClock.Seconds() - processor);
-                if (repetition < 0)
-                {
-                    parts.Add(new Part(name, new double[Repetitions], new double[Repetitions]));
-                    return result;
-                }
-
-                var timed = parts.First(p => p.Name == name);
-                (timed.Wall[repetition], timed.Processor[repetition]) = (wall, processor);
-                return result;
-            }
+        private T Time<T>(string stage, Func<T> run)
+        {
+            var (wall, processor) = (Measurement.Wall(), ThreadClock.Seconds());
+            var result = run();
+            if (!Times.TryGetValue(stage, out var times)) Times[stage] = times = [];
+            times.Add((Measurement.Wall() - wall, ThreadClock.Seconds() - processor));
+            return result;
         }
     }
-
-    /// <summary>Seconds of a stage, repetition by repetition.</summary>
-    private sealed record Part(string Name, double[] Wall, double[] Processor);
 }
