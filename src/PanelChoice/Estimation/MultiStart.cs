@@ -22,12 +22,14 @@ internal sealed record MultiStartResult(
 /// <summary>
 /// Searches from plain logit, from the user's own values, from the local maxima of the profile over a grid of dissimilarities, and from seeded
 /// points. For given dissimilarities in order the likelihood is concave in the coefficients (Daganzo and Kusnic 1993), so that the profile
-/// cannot be trapped; jointly it is not. Each search is brought near its end on a thinned sample of persons when there are many, and stops
-/// as soon as it comes within a hundredth of a standard error of a maximum known before, so that many starts stay cheap.
+/// cannot be trapped; jointly it is not. When there are many persons each search is first run on a thinned sample of them; only what ends in
+/// a maximum of its own there goes on to the whole sample. A search stops as soon as it comes within a hundredth of a standard error of a
+/// maximum known before, so that many starts stay cheap.
 /// </summary>
 internal sealed class MultiStart
 {
     private static readonly MinimisationSettings Loose = new(Tolerance: 0.03, MaxIterations: 60);
+    private static readonly MinimisationSettings Near = new(Tolerance: 1e-4, MaxIterations: 60);
     private static readonly MinimisationSettings Tight = new();
 
     private readonly ChoiceDesign design;
@@ -42,6 +44,8 @@ internal sealed class MultiStart
     private readonly List<SearchEnd> ends = [];
     private readonly List<KnownMaximum> maxima = [];
     private readonly List<int> endsAt = [];
+    private readonly List<KnownMaximum> partMaxima = [];
+    private readonly List<int> maximumOf = [];
 
     /// <summary>Prepares the searches.</summary>
     /// <param name="likelihood">The likelihood.</param>
@@ -81,7 +85,8 @@ internal sealed class MultiStart
         if (plain is null || ends[^1].Kind == SearchEndKind.Separated)
         {
             ends.Clear();
-            plain = search.Run(Near(plainStart, coefficients), coefficients, points.Free.IsEmpty ? Tight : Loose with { Tolerance = 1e-3, MaxIterations = 200 }, []);
+            var near = thinned?.Run(plainStart, coefficients, Loose, []) is { Kind: SearchEndKind.Maximum } part ? part.Parameters : plainStart;
+            plain = search.Run(near, coefficients, points.Free.IsEmpty ? Tight : Loose with { Tolerance = 1e-3, MaxIterations = 200 }, []);
             if (plain.Kind == SearchEndKind.Separated)
             {
                 // What runs away is held where it is, so that the rest can still be estimated.
@@ -144,14 +149,21 @@ internal sealed class MultiStart
 
     private void Search(double[] from, ImmutableArray<int> moving)
     {
-        var end = search.Run(Near(from, moving), moving, Tight, maxima);
+        var near = thinned?.Run(from, moving, Near, partMaxima);
+        if (near is { Kind: SearchEndKind.Known } && maximumOf[near.Known] >= 0)
+        {
+            Keep(near with { Known = maximumOf[near.Known] });
+            return;
+        }
+
+        var start = near is { Kind: SearchEndKind.Maximum or SearchEndKind.Known } ? near.Parameters : from;
+        var end = search.Run(start, moving, Tight, maxima);
         if (end.Kind == SearchEndKind.Stopped) end = search.Run(end.Parameters, moving, Tight with { InitialRadius = 0.5 }, maxima);
         Keep(end);
+        if (near is not { Kind: SearchEndKind.Maximum }) return;
+        partMaxima.Add(new KnownMaximum(near.Parameters, near.LogLikelihood, near.Last.Point, near.Last.At.Hessian));
+        maximumOf.Add(end.Kind switch { SearchEndKind.Maximum => maxima.Count - 1, SearchEndKind.Known => end.Known, _ => -1 });
     }
-
-    /// <summary>Brings a point near its end on the thinned sample; leaves it where it is when there is none, or it leads nowhere.</summary>
-    private double[] Near(double[] from, ImmutableArray<int> moving) =>
-        thinned?.Run(from, moving, Loose, []) is { Kind: SearchEndKind.Maximum } near ? near.Parameters : from;
 
     private void Keep(SearchEnd end)
     {
