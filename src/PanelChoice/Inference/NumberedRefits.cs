@@ -8,8 +8,11 @@ namespace PanelChoice.Inference;
 /// <summary>Outcomes of numbered refits: those the journal has are taken from it, the others are made and kept there.</summary>
 internal static class NumberedRefits
 {
-    /// <summary>Refits handed to the refitter at a time, for each thread; what a run that is stopped loses at most.</summary>
-    public const int BatchPerThread = 16;
+    /// <summary>
+    /// Refits handed to the refitter at a time, for each thread: as many as can share a read of the data. Progress is told, and a run that is
+    /// stopped goes back, by no more.
+    /// </summary>
+    public const int BatchPerThread = 32;
 
     /// <summary>One outcome for each number, in the same order.</summary>
     /// <param name="input">The fit, the refitter and the journal.</param>

@@ -96,6 +96,7 @@ public class RefitPlanTests
     public void A_batch_that_is_done_is_kept_when_the_next_one_is_stopped()
     {
         var input = new LinearToy(54, 15, _ => 4).Input();
+        var settings = Settings with { Replicates = 2 * NumberedRefits.BatchPerThread };
         var journal = new MemoryJournal();
         using var stop = new CancellationTokenSource();
         var asked = 0;
@@ -105,8 +106,8 @@ public class RefitPlanTests
             stop.Token.ThrowIfCancellationRequested();
             return input.Refitter.Refit([r], CancellationToken.None)[0];
         });
-        Assert.Throws<OperationCanceledException>(() => RefitPlan.Of(input, Settings).Make(
-            input with { Journal = journal, Refitter = refitter }, Settings, new RefitShare(1, 1), new WorkContext(1, null, stop.Token)));
+        Assert.Throws<OperationCanceledException>(() => RefitPlan.Of(input, settings).Make(
+            input with { Journal = journal, Refitter = refitter }, settings, new RefitShare(1, 1), new WorkContext(1, null, stop.Token)));
         Assert.Equal(Enumerable.Range(0, NumberedRefits.BatchPerThread).Select(r => (RefitSeries.Bootstrap, r)), journal.Kept.Keys.Order());
     }
 
