@@ -14,7 +14,7 @@ internal sealed class ClusterExpansion
 {
     /// <summary>
     /// Doubles that scores and Hessians may take: 64 megabytes. With more clusters the Hessian of the whole sample stands for each replicate's: they differ by a
-    /// share of about one over the root of the number of clusters. Scores alone may take four times as much.
+    /// share of about one over the root of the number of clusters. Scores alone may take twice as much.
     /// </summary>
     public const long MostEntries = 1L << 23;
 
@@ -72,7 +72,7 @@ internal sealed class ClusterExpansion
         ImmutableArray<int> active = [.. model.Layout.Free.Except(model.Held)];
         long n = active.Length;
         long clusters = model.Design.Clusters.Length;
-        if (n == 0 || clusters * n > 4 * mostEntries) return null;
+        if (n == 0 || clusters * n > 2 * mostEntries) return null;
         var expansion = new ClusterExpansion(model, scale, active, clusters * (n + (n * (n + 1) / 2)) <= mostEntries);
         expansion.AddPersons(likelihood, cancellation);
         expansion.Third = expansion.ThirdDerivatives(likelihood);
