@@ -7,9 +7,6 @@ namespace PanelChoice.Data;
 /// <typeparam name="T">What an entry is.</typeparam>
 internal sealed class ColumnBuffer<T>
 {
-    /// <summary>An empty buffer keeps an array up to this length; a longer one is memory that others may need.</summary>
-    private const int LongestIdle = 1 << 14;
-
     private T[] items = [];
     private int start;
 
@@ -44,7 +41,9 @@ internal sealed class ColumnBuffer<T>
     public void Reserve(int more)
     {
         if (start + Count + more <= items.Length) return;
-        Grow(checked(Count + more));
+        // A little more than asked for: runs of rows that are taken one after the other leave rests of different lengths.
+        if (Count + more <= items.Length) Span.CopyTo(items);
+        else Grow(checked(Count + more + (more / 16)));
         start = 0;
     }
 
@@ -72,7 +71,6 @@ internal sealed class ColumnBuffer<T>
     {
         Count -= count;
         start = Count == 0 ? 0 : start + count;
-        if (Count == 0 && items.Length > LongestIdle) items = [];
     }
 
     private void Grow(int length)

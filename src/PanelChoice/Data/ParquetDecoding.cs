@@ -52,23 +52,43 @@ internal static class ParquetDecoding
     {
         if (!field.IsNullable)
         {
-            var all = new T[group.RowCount];
-            group.ReadAsync(field, all.AsMemory()).AsTask().GetAwaiter().GetResult();
+            var all = Scratch<T>.Of(checked((int)group.RowCount));
+            group.ReadAsync(field, all).AsTask().GetAwaiter().GetResult();
             return (into, places) =>
             {
-                for (var i = 0; i < all.Length; i++) put(into, places[i], all[i]);
+                var cells = all.Span;
+                for (var i = 0; i < cells.Length; i++) put(into, places[i], cells[i]);
             };
         }
 
-        var some = new T?[group.RowCount];
-        group.ReadAsync(field, some.AsMemory()).AsTask().GetAwaiter().GetResult();
+        var some = Scratch<T?>.Of(checked((int)group.RowCount));
+        group.ReadAsync(field, some).AsTask().GetAwaiter().GetResult();
         return (into, places) =>
         {
-            for (var i = 0; i < some.Length; i++)
-                if (some[i] is { } value) put(into, places[i], value);
+            var cells = some.Span;
+            for (var i = 0; i < cells.Length; i++)
+                if (cells[i] is { } value) put(into, places[i], value);
                 else into.Empty(places[i]);
         };
     };
+
+    /// <summary>
+    /// The array that the cells of one column of a row group are decoded into, good until the next column of the same kind is. Arrays of this size, made
+    /// anew for each column, would pile up faster than the runtime collects them.
+    /// </summary>
+    private static class Scratch<T>
+    {
+        [ThreadStatic]
+        private static T[]? cells;
+
+        public static Memory<T> Of(int rows)
+        {
+            if (cells is null || cells.Length < rows) cells = new T[rows];
+            // An empty cell is one that the library does not write.
+            Array.Clear(cells);
+            return cells.AsMemory(0, rows);
+        }
+    }
 
     /// <summary>Whole numbers keep all their digits, because ids of twenty digits must not run together.</summary>
     private static void PutDecimal(CellColumn into, CellPlace at, decimal value)
