@@ -3,7 +3,7 @@ using PanelChoice.Covariates;
 namespace PanelChoice.Benchmarks;
 
 /// <summary>
-/// The yardstick: nested logit log-likelihood and gradient (utility-scaled form, one level of nests under the root) in plain scalar code
+/// A second yardstick: nested logit log-likelihood and gradient (utility-scaled form, one level of nests under the root) in plain scalar code
 /// tuned for speed, sharing nothing with the library. Covariates are dense: situations x alternatives x coefficients with constants, padded with
 /// zeros. No allocation in the pass, fused multiply-adds, no exponential of a zero, one logarithm for each nest that is wide.
 /// </summary>
