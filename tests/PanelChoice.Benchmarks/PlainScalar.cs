@@ -24,6 +24,7 @@ internal sealed class PlainScalar
     private readonly double[] sum;
     private readonly double[] value;
     private readonly double[] entropy;
+    private readonly double[] share;
 
     public PlainScalar(CommuteCase made)
     {
@@ -47,6 +48,7 @@ internal sealed class PlainScalar
         sum = new double[nests];
         value = new double[nests];
         entropy = new double[nests];
+        share = new double[nests];
     }
 
     /// <summary>The log-likelihood and its gradient by coefficients and dissimilarities.</summary>
@@ -91,8 +93,14 @@ internal sealed class PlainScalar
         }
 
         var whole = 0.0;
-        for (var m = 0; m < nests; m++) whole += Math.Exp(value[m] - best);
+        for (var m = 0; m < nests; m++)
+        {
+            share[m] = Math.Exp(value[m] - best);
+            whole += share[m];
+        }
+
         var logWhole = best + Math.Log(whole);
+        for (var m = 0; m < nests; m++) share[m] /= whole;
         for (var j = 0; j < J; j++)
         {
             if (!offered[row + j]) continue;
@@ -108,7 +116,7 @@ internal sealed class PlainScalar
         for (var m = 0; m < nests; m++)
         {
             if (K + m >= theta.Length || sum[m] == 0) continue;
-            gradient[K + m] += ((m == own ? 1 - (1 / l) : 0) - Math.Exp(value[m] - logWhole)) * entropy[m];
+            gradient[K + m] += ((m == own ? 1 - (1 / l) : 0) - share[m]) * entropy[m];
             if (m == own) gradient[K + m] -= logInside / l;
         }
 
@@ -116,7 +124,7 @@ internal sealed class PlainScalar
         {
             if (!offered[row + j]) continue;
             var m = nestOf[j];
-            slope[j] = ((m == own ? 1 - (1 / l) : 0) - Math.Exp(value[m] - logWhole)) * inside[j];
+            slope[j] = ((m == own ? 1 - (1 / l) : 0) - share[m]) * inside[j];
             if (j == choice) slope[j] += 1 / l;
             for (var k = 0; k < K; k++) gradient[k] += slope[j] * x[((row + j) * K) + k];
         }

@@ -27,6 +27,9 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
 
     private readonly StripPlan plan;
     private readonly int threads;
+
+    /// <summary>Blocks that always share a chunk: where no second thread waits for one, a chunk for each block costs more in adding up than it brings.</summary>
+    private readonly int blocksInARun;
     private readonly ConcurrentBag<StripWork> idle = [];
     private readonly ConcurrentBag<ReplicateWork> idleReplicates = [];
     private readonly ConcurrentBag<ScoreWork> idleScores = [];
@@ -39,7 +42,9 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
     {
         Design = design;
         plan = new StripPlan(design, form);
-        this.threads = design.Situations < SituationsForThreads ? 1 : threads;
+        var isSmall = design.Situations < SituationsForThreads;
+        this.threads = isSmall ? 1 : threads;
+        blocksInARun = isSmall ? 8 : 1;
     }
 
     public ChoiceDesign Design { get; }
@@ -59,15 +64,18 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
         var gradient = derivatives >= Derivatives.Gradient ? K : 0;
         var hessian = derivatives == Derivatives.Hessian ? K * K : 0;
         var length = 1 + gradient + hessian;
-        var parts = new double[FixedChunks.Count(Design.Blocks.Length) * length];
-        Run(Design.Blocks.Length, parameters, (work, chunk, first, end) =>
+        var runs = (Design.Blocks.Length + blocksInARun - 1) / blocksInARun;
+        var parts = new double[FixedChunks.Count(runs) * length];
+        Run(runs, parameters, (work, chunk, first, end) =>
         {
-            for (var b = first; b < end; b++) work.AddBlock(Design.Blocks[b], LaneWeights.OfPersons(weight), derivatives);
+            var last = Math.Min(end * blocksInARun, Design.Blocks.Length);
+            for (var b = first * blocksInARun; b < last; b++) work.AddBlock(Design.Blocks[b], LaneWeights.OfPersons(weight), derivatives);
             work.Flush(parts.AsSpan(chunk * length, length), derivatives);
         });
 
         var total = new double[length];
-        for (var i = 0; i < parts.Length; i++) total[i % length] += parts[i];
+        for (var part = 0; part < parts.Length; part += length)
+            for (var i = 0; i < length; i++) total[i] += parts[part + i];
         return new LikelihoodEvaluation(
             total[0],
             ImmutableCollectionsMarshal.AsImmutableArray(total[1..(1 + gradient)]),
