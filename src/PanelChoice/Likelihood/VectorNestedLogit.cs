@@ -124,7 +124,8 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
         });
 
         var total = new double[K * K];
-        for (var i = 0; i < parts.Length; i++) total[i % total.Length] += parts[i];
+        for (var part = 0; part < parts.Length; part += total.Length)
+            for (var i = 0; i < total.Length; i++) total[i] += parts[part + i];
         return new SampleScores(byPerson, total);
     }
 
