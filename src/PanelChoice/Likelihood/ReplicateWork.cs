@@ -1,4 +1,3 @@
-using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using PanelChoice.Design;
 
@@ -95,7 +94,7 @@ internal sealed class ReplicateWork
         {
             if (!Load(block, lane, to * Tile, weights)) continue;
             probabilities.Up();
-            foreach (var tile in MemoryMarshal.Cast<double, Vector512<double>>(strip.LogProbabilities)) value += tile;
+            value += probabilities.LogLikelihood;
             probabilities.Down();
             gradient.Add();
         }

@@ -47,7 +47,7 @@ internal sealed class Strip
     private int Children => plan.J + plan.Nodes;
 
     /// <summary>Rows that a strip needs for J alternatives and the given number of inner nodes.</summary>
-    public static int RowCount(int alternatives, int nodes) => (5 * (alternatives + nodes)) + (2 * nodes) + 4;
+    public static int RowCount(int alternatives, int nodes) => (5 * (alternatives + nodes)) + (2 * nodes) + 3;
 
     /// <summary>W of a child; V for an alternative.</summary>
     public ref double Value(int child) => ref rows.Row(child);
@@ -70,20 +70,14 @@ internal sealed class Strip
     /// <summary>D = d W / d l of a node for given values of its children: entropy E (utility-scaled), log-sum L (unscaled).</summary>
     public ref double Tilt(int node) => ref rows.Row((5 * Children) + plan.Nodes + node);
 
-    /// <summary>Weight times log P of the choice.</summary>
-    public ref double LogProbability => ref rows.Row((5 * Children) + (2 * plan.Nodes));
-
-    /// <summary>Weight times log P of the choice, lane by lane.</summary>
-    public ReadOnlySpan<double> LogProbabilities => rows.Lanes((5 * Children) + (2 * plan.Nodes), Lanes);
-
     /// <summary>For the node at work: the largest value among its children.</summary>
-    public ref double Largest => ref rows.Row((5 * Children) + (2 * plan.Nodes) + 1);
+    public ref double Largest => ref rows.Row((5 * Children) + (2 * plan.Nodes));
 
     /// <summary>For the node at work: the sum of its children's exponentials.</summary>
-    public ref double Sum => ref rows.Row((5 * Children) + (2 * plan.Nodes) + 2);
+    public ref double Sum => ref rows.Row((5 * Children) + (2 * plan.Nodes) + 1);
 
     /// <summary>For the node at work: the logarithm of that sum.</summary>
-    public ref double LogOfSum => ref rows.Row((5 * Children) + (2 * plan.Nodes) + 3);
+    public ref double LogOfSum => ref rows.Row((5 * Children) + (2 * plan.Nodes) + 2);
 
     /// <summary>Its columns.</summary>
     public StripColumns Columns { get; }

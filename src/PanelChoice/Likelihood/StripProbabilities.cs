@@ -1,7 +1,7 @@
 using System.Runtime.CompilerServices;
-using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using PanelChoice.Design;
+using PanelChoice.Numerics;
 
 namespace PanelChoice.Likelihood;
 
@@ -36,15 +36,35 @@ internal sealed class StripProbabilities
     /// <summary>Sum of o_c t_c over the children of each node and over the strip's tiles.</summary>
     public Vector512<double>[] PathSum { get; }
 
-    /// <summary>Values, probabilities, tilts and log P.</summary>
+    /// <summary>Weight times log P of the choice, summed over the strip's tiles.</summary>
+    public Vector512<double> LogLikelihood
+    {
+        get
+        {
+            var sum = Vector512<double>.Zero;
+            foreach (var path in PathSum) sum += path;
+            return sum;
+        }
+    }
+
+    /// <summary>Values, probabilities and tilts. Of the root only what its children's slopes and log P need is kept.</summary>
     public void Up()
     {
-        MemoryMarshal.CreateSpan(ref strip.LogProbability, strip.Lanes).Clear();
         for (var n = 0; n < plan.Nodes; n++)
         {
             PathSum[n] = plan.Children[n].Length == 2 ? UpPair(n) : UpMany(n);
-            SetValue(n);
+            if (n != plan.Root) SetValue(n);
         }
+    }
+
+    /// <summary>Weight times log P of each lane, from the rows that <see cref="Up"/> left.</summary>
+    public void WriteLogProbabilities(Span<double> log)
+    {
+        log.Clear();
+        for (var n = 0; n < plan.Nodes; n++)
+            foreach (var c in plan.Children[n])
+                for (var lane = 0; lane < log.Length; lane++)
+                    log[lane] += Unsafe.Add(ref strip.OnPath(c), lane) * Unsafe.Add(ref strip.LogConditional(c), lane);
     }
 
     /// <summary>First derivatives by the values of all children, and the nodes' flows.</summary>
@@ -78,27 +98,35 @@ internal sealed class StripProbabilities
             var max = Vector512.LoadUnsafe(ref value, children[0] + lane);
             foreach (var c in children) max = Vector512.MaxNative(max, Vector512.LoadUnsafe(ref value, c + lane));
             max.StoreUnsafe(ref largest, lane);
-            foreach (var c in children) ((Vector512.LoadUnsafe(ref value, c + lane) - max) * scale).StoreUnsafe(ref t, c + lane);
-        }
-
-        foreach (var c in children) VectorFunctions.Exp(ref Unsafe.Add(ref t, c), ref Unsafe.Add(ref p, c), lanes);
-        for (nuint lane = 0; lane < lanes; lane += Tile)
-        {
             var total = Vector512<double>.Zero;
-            foreach (var c in children) total += Vector512.LoadUnsafe(ref p, c + lane);
+            foreach (var c in children)
+            {
+                var distance = (Vector512.LoadUnsafe(ref value, c + lane) - max) * scale;
+                distance.StoreUnsafe(ref t, c + lane);
+                var power = VectorElementary.Exp(distance);
+                power.StoreUnsafe(ref p, c + lane);
+                total += power;
+            }
+
             total.StoreUnsafe(ref sum, lane);
         }
 
-        ref var log = ref strip.LogOfSum;
-        VectorFunctions.Log(ref sum, ref log, lanes);
+        VectorFunctions.Log(ref sum, ref strip.LogOfSum, lanes);
+        return n == plan.Root ? NormaliseRoot(children) : Normalise(n, children);
+    }
 
-        var sumOfPath = Vector512<double>.Zero;
-        var isInner = n != plan.Root;
+    /// <summary>Divides by the sum; entropy, and whether the choice lies below the node.</summary>
+    private Vector512<double> Normalise(int n, ReadOnlySpan<nuint> children)
+    {
+        ref var sum = ref strip.Sum;
+        ref var log = ref strip.LogOfSum;
+        ref var t = ref strip.LogConditional(0);
+        ref var p = ref strip.Conditional(0);
         ref var o = ref strip.OnPath(0);
         ref var oOfNode = ref strip.OnPath(plan.J + n);
         ref var tilt = ref strip.Tilt(n);
-        ref var logProbability = ref strip.LogProbability;
-        for (nuint lane = 0; lane < lanes; lane += Tile)
+        var sumOfPath = Vector512<double>.Zero;
+        for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
         {
             var logHere = Vector512.LoadUnsafe(ref log, lane);
             var inverse = Vector512<double>.One / Vector512.LoadUnsafe(ref sum, lane);
@@ -118,8 +146,35 @@ internal sealed class StripProbabilities
             }
 
             entropy.StoreUnsafe(ref tilt, lane);
-            (Vector512.LoadUnsafe(ref logProbability, lane) + path).StoreUnsafe(ref logProbability, lane);
-            if (isInner) onPath.StoreUnsafe(ref oOfNode, lane);
+            onPath.StoreUnsafe(ref oOfNode, lane);
+            sumOfPath += path;
+        }
+
+        return sumOfPath;
+    }
+
+    /// <summary>Divides by the sum: the root has neither a dissimilarity nor a node above, so that nobody asks for its entropy.</summary>
+    private Vector512<double> NormaliseRoot(ReadOnlySpan<nuint> children)
+    {
+        ref var sum = ref strip.Sum;
+        ref var log = ref strip.LogOfSum;
+        ref var t = ref strip.LogConditional(0);
+        ref var p = ref strip.Conditional(0);
+        ref var o = ref strip.OnPath(0);
+        var sumOfPath = Vector512<double>.Zero;
+        for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
+        {
+            var logHere = Vector512.LoadUnsafe(ref log, lane);
+            var inverse = Vector512<double>.One / Vector512.LoadUnsafe(ref sum, lane);
+            var path = Vector512<double>.Zero;
+            foreach (var c in children)
+            {
+                var tHere = Vector512.LoadUnsafe(ref t, c + lane) - logHere;
+                tHere.StoreUnsafe(ref t, c + lane);
+                (Vector512.LoadUnsafe(ref p, c + lane) * inverse).StoreUnsafe(ref p, c + lane);
+                path = Vector512.FusedMultiplyAdd(Vector512.LoadUnsafe(ref o, c + lane), tHere, path);
+            }
+
             sumOfPath += path;
         }
 
@@ -144,12 +199,11 @@ internal sealed class StripProbabilities
             var distance = (w0 - w1) * scale;
             Vector512.MaxNative(w0, w1).StoreUnsafe(ref largest, lane);
             distance.StoreUnsafe(ref t, c0 + lane);
-            (-Vector512.Abs(distance)).StoreUnsafe(ref t, c1 + lane);
+            var power = VectorElementary.Exp(-Vector512.Abs(distance));
+            power.StoreUnsafe(ref p, c1 + lane);
+            (Vector512<double>.One + power).StoreUnsafe(ref sum, lane);
         }
 
-        VectorFunctions.Exp(ref Unsafe.Add(ref t, c1), ref Unsafe.Add(ref p, c1), lanes);
-        for (nuint lane = 0; lane < lanes; lane += Tile)
-            (Vector512<double>.One + Vector512.LoadUnsafe(ref p, c1 + lane)).StoreUnsafe(ref sum, lane);
         ref var log = ref strip.LogOfSum;
         VectorFunctions.Log(ref sum, ref log, lanes);
 
@@ -158,7 +212,6 @@ internal sealed class StripProbabilities
         ref var o = ref strip.OnPath(0);
         ref var oOfNode = ref strip.OnPath(plan.J + n);
         ref var tilt = ref strip.Tilt(n);
-        ref var logProbability = ref strip.LogProbability;
         for (nuint lane = 0; lane < lanes; lane += Tile)
         {
             var logHere = Vector512.LoadUnsafe(ref log, lane);
@@ -172,15 +225,13 @@ internal sealed class StripProbabilities
             var t1 = Vector512.MinNative(-distance, Vector512<double>.Zero) - logHere;
             var o0 = Vector512.LoadUnsafe(ref o, c0 + lane);
             var o1 = Vector512.LoadUnsafe(ref o, c1 + lane);
-            var path = Vector512.FusedMultiplyAdd(o0, t0, o1 * t1);
             t0.StoreUnsafe(ref t, c0 + lane);
             t1.StoreUnsafe(ref t, c1 + lane);
             p0.StoreUnsafe(ref p, c0 + lane);
             p1.StoreUnsafe(ref p, c1 + lane);
             (-Vector512.FusedMultiplyAdd(p0, t0, p1 * t1)).StoreUnsafe(ref tilt, lane);
-            (Vector512.LoadUnsafe(ref logProbability, lane) + path).StoreUnsafe(ref logProbability, lane);
             if (isInner) (o0 + o1).StoreUnsafe(ref oOfNode, lane);
-            sumOfPath += path;
+            sumOfPath += Vector512.FusedMultiplyAdd(o0, t0, o1 * t1);
         }
 
         return sumOfPath;

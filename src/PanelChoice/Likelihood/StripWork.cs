@@ -1,4 +1,3 @@
-using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using PanelChoice.Design;
 
@@ -39,7 +38,7 @@ internal sealed class StripWork
         {
             if (!Load(block, lane, block.Lanes, weights)) continue;
             probabilities.Up();
-            value += SumOf(strip.LogProbabilities);
+            value += probabilities.LogLikelihood;
             if (derivatives == Derivatives.None) continue;
             probabilities.Down();
             gradient.Add();
@@ -64,7 +63,7 @@ internal sealed class StripWork
             Load(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
             probabilities.Up();
             var count = Math.Min(strip.Lanes, block.Situations - lane);
-            strip.LogProbabilities[..count].CopyTo(log[(block.FirstSituation + lane)..]);
+            probabilities.WriteLogProbabilities(log.Slice(block.FirstSituation + lane, count));
         }
     }
 
@@ -94,14 +93,6 @@ internal sealed class StripWork
         }
 
         Hessian.Flush(-1, information);
-    }
-
-    /// <summary>One sum for each lane of a tile: a single chain of additions, each waiting for the last, took as long as the products with the columns.</summary>
-    private static Vector512<double> SumOf(ReadOnlySpan<double> lanes)
-    {
-        var sum = Vector512<double>.Zero;
-        foreach (var tile in MemoryMarshal.Cast<double, Vector512<double>>(lanes)) sum += tile;
-        return sum;
     }
 
     /// <summary>Loads the next strip of the lanes up to an end, cut so that the strips are of about equal length.</summary>
