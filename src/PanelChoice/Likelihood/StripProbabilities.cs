@@ -7,7 +7,8 @@ namespace PanelChoice.Likelihood;
 
 /// <summary>
 /// The tree recursion on a strip: values and probabilities from the alternatives up, first derivatives from the root down. Node outside,
-/// tile of lanes inside: short loops over rows that stay in the cache. Letters as in <see cref="TreeProbabilities"/> and
+/// tile of lanes inside: short loops over rows that stay in the cache. The exponential of 512-bit machines is small enough to stand where its
+/// argument is made; the portable one has loops of its own, without which its constants would not stay in registers. Letters as in <see cref="TreeProbabilities"/> and
 /// <see cref="Strip"/>; s is 1/l_m (utility-scaled) or 1 (unscaled), o is the situation's weight on the path to the choice, else 0.
 /// <code>
 /// up     t_c = s (W_c - max) - log sum      p_c = exp t_c      W_m = max + l log sum | l (max + log sum)     log P = sum over nodes of o_c t_c
@@ -103,12 +104,24 @@ internal sealed class StripProbabilities
             {
                 var distance = (Vector512.LoadUnsafe(ref value, c + lane) - max) * scale;
                 distance.StoreUnsafe(ref t, c + lane);
-                var power = VectorElementary.Exp(distance);
+                if (!WideElementary.IsSupported) continue;
+                var power = WideElementary.Exp(distance);
                 power.StoreUnsafe(ref p, c + lane);
                 total += power;
             }
 
-            total.StoreUnsafe(ref sum, lane);
+            if (WideElementary.IsSupported) total.StoreUnsafe(ref sum, lane);
+        }
+
+        if (!WideElementary.IsSupported)
+        {
+            foreach (var c in children) VectorFunctions.Exp(ref Unsafe.Add(ref t, c), ref Unsafe.Add(ref p, c), lanes);
+            for (nuint lane = 0; lane < lanes; lane += Tile)
+            {
+                var total = Vector512<double>.Zero;
+                foreach (var c in children) total += Vector512.LoadUnsafe(ref p, c + lane);
+                total.StoreUnsafe(ref sum, lane);
+            }
         }
 
         VectorFunctions.Log(ref sum, ref strip.LogOfSum, lanes);
@@ -199,9 +212,24 @@ internal sealed class StripProbabilities
             var distance = (w0 - w1) * scale;
             Vector512.MaxNative(w0, w1).StoreUnsafe(ref largest, lane);
             distance.StoreUnsafe(ref t, c0 + lane);
-            var power = VectorElementary.Exp(-Vector512.Abs(distance));
-            power.StoreUnsafe(ref p, c1 + lane);
-            (Vector512<double>.One + power).StoreUnsafe(ref sum, lane);
+            var below = -Vector512.Abs(distance);
+            if (WideElementary.IsSupported)
+            {
+                var power = WideElementary.Exp(below);
+                power.StoreUnsafe(ref p, c1 + lane);
+                (Vector512<double>.One + power).StoreUnsafe(ref sum, lane);
+            }
+            else
+            {
+                below.StoreUnsafe(ref t, c1 + lane);
+            }
+        }
+
+        if (!WideElementary.IsSupported)
+        {
+            VectorFunctions.Exp(ref Unsafe.Add(ref t, c1), ref Unsafe.Add(ref p, c1), lanes);
+            for (nuint lane = 0; lane < lanes; lane += Tile)
+                (Vector512<double>.One + Vector512.LoadUnsafe(ref p, c1 + lane)).StoreUnsafe(ref sum, lane);
         }
 
         ref var log = ref strip.LogOfSum;
