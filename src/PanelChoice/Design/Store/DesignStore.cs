@@ -71,7 +71,7 @@ internal sealed class DesignStore : IDisposable
 
     private static Checked<DesignStore> Open(SafeFileHandle file, string path, StudySpecification study, long bytesHeld)
     {
-        const string Again = "delete it, and it is made anew";
+        const string Again = "delete the store, and it is made anew";
         var damaged = () => Refuse(path, "store.damaged", "the store is damaged or was cut off", Again);
         var length = RandomAccess.GetLength(file);
         var start = new byte[StorePreamble.Bytes];
