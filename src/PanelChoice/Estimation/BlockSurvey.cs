@@ -100,7 +100,7 @@ internal sealed class BlockSurvey
             for (var i = 0; i < alternatives.Length; i++)
             {
                 var x = Vector512.LoadUnsafe(ref value, lane + ((nuint)i * stride));
-                var lanes = LanesOf(offered[alternatives[i]]);
+                var lanes = TileMask.Lanes(offered[alternatives[i]]);
                 own += lanes & Vector512<double>.One;
                 sum += lanes & x;
                 ofChosen += Select(chosen[alternatives[i]], x);
@@ -120,7 +120,7 @@ internal sealed class BlockSurvey
             for (var i = 0; i < alternatives.Length; i++)
             {
                 var x = Vector512.LoadUnsafe(ref value, lane + ((nuint)i * stride)) - mean;
-                deviations += LanesOf(offered[alternatives[i]]) & (x * x);
+                deviations += TileMask.Lanes(offered[alternatives[i]]) & (x * x);
             }
 
             squares += spread & deviations;
@@ -200,12 +200,5 @@ internal sealed class BlockSurvey
         return (byte)wide;
     }
 
-    private static Vector512<double> Select(byte mask, Vector512<double> value) => LanesOf(mask) & value;
-
-    /// <summary>All bits of each lane whose bit is set.</summary>
-    private static Vector512<double> LanesOf(byte mask)
-    {
-        var bits = Vector512.Create(1UL, 2, 4, 8, 16, 32, 64, 128);
-        return Vector512.Equals(Vector512.Create((ulong)mask) & bits, bits).AsDouble();
-    }
+    private static Vector512<double> Select(byte mask, Vector512<double> value) => TileMask.Lanes(mask) & value;
 }

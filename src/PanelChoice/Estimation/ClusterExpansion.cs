@@ -18,9 +18,6 @@ internal sealed class ClusterExpansion
     /// </summary>
     public const long MostEntries = 1L << 23;
 
-    /// <summary>Persons that third derivatives are taken from at least (about). They only correct the Hessian for the way to a replicate, by a few percent.</summary>
-    private const int ThinnedPersons = 600;
-
     /// <summary>Replicates summed by one thread at a time.</summary>
     private const int SummedTogether = 8;
 
@@ -158,16 +155,13 @@ internal sealed class ClusterExpansion
         }, cancellation);
     }
 
-    /// <summary>Differences of exact Hessians on every so many blocks of the sample.</summary>
+    /// <summary>Differences of exact Hessians on the thinned sample: third derivatives only correct the Hessian for the way to a replicate, by a few percent.</summary>
     private double[] ThirdDerivatives(IChoiceLikelihood likelihood)
     {
         // Rounding is 1e-12 of the Hessian and the next term of the difference 1e-4 of it: both far below what the thinned sample leaves open.
         const double Step = 1e-4;
-        var design = model.Design;
         var n = Active.Length;
-        var every = Math.Clamp(design.Persons / ThinnedPersons, 1, 16);
-        double[] weight = [.. design.PersonWeight.Select((w, p) => design.BlockOf[design.PersonStart[p]] % every == 0 ? w : 0)];
-        var function = new MinusLogLikelihood(likelihood, weight, Scale, Active, model.Parameters.AsSpan());
+        var function = new MinusLogLikelihood(likelihood, ThinnedSample.WeightsOrAll(model.Design), Scale, Active, model.Parameters.AsSpan());
         var x = function.Coordinates(model.Parameters.AsSpan());
         var here = function.Evaluate(x).Hessian;
         var unit = Step * function.Situations;

@@ -11,11 +11,13 @@ internal static class ThinnedSample
     /// <summary>Persons it keeps at least (about; measured: fewer lose more in steps on the whole sample than they save).</summary>
     private const int Persons = 600;
 
-    /// <summary>The design's person weights, 0 outside the part; null where the sample is too small for a part to be worth while.</summary>
-    public static double[]? Weights(ChoiceDesign design)
+    /// <summary>The design's person weights, 0 outside the part; null where a part would be more than a quarter, too much for it to be worth while.</summary>
+    public static double[]? Weights(ChoiceDesign design) => Every(design) < 4 ? null : WeightsOrAll(design);
+
+    /// <summary>The same, but whatever part there is: all persons of a small sample.</summary>
+    public static double[] WeightsOrAll(ChoiceDesign design)
     {
-        var every = Math.Min(16, design.Persons / Persons);
-        if (every < 4) return null;
+        var every = Every(design);
         var weights = new double[design.Persons];
         for (var b = 0; b < design.Blocks.Length; b += every)
         {
@@ -26,4 +28,6 @@ internal static class ThinnedSample
 
         return weights;
     }
+
+    private static int Every(ChoiceDesign design) => Math.Clamp(design.Persons / Persons, 1, 16);
 }

@@ -77,7 +77,7 @@ internal sealed class ReplicateWork
         var weights = LaneWeights.One(first, end);
         for (var lane = (first - block.FirstSituation) / Tile * Tile; lane < tiles * Tile; lane += strip.Lanes)
         {
-            Load(block, lane, tiles * Tile, weights);
+            strip.LoadNext(block, lane, tiles * Tile, weights);
             probabilities.Up();
             probabilities.Down();
             gradient.Add();
@@ -92,19 +92,11 @@ internal sealed class ReplicateWork
     {
         for (var lane = from * Tile; lane < to * Tile; lane += strip.Lanes)
         {
-            if (!Load(block, lane, to * Tile, weights)) continue;
+            if (!strip.LoadNext(block, lane, to * Tile, weights)) continue;
             probabilities.Up();
             value += probabilities.LogLikelihood;
             probabilities.Down();
             gradient.Add();
         }
-    }
-
-    /// <summary>Loads the next strip of the lanes up to an end, cut so that the strips are of about equal length.</summary>
-    private bool Load(DesignBlock block, int lane, int end, in LaneWeights weights)
-    {
-        var strips = (end - lane + plan.StripLanes - 1) / plan.StripLanes;
-        var tiles = ((end - lane) / Tile + strips - 1) / strips;
-        return strip.Load(block, lane, tiles * Tile, weights);
     }
 }

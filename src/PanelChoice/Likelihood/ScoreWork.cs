@@ -44,9 +44,7 @@ internal sealed class ScoreWork
         var weights = LaneWeights.OfPersons(personWeight);
         for (var lane = 0; lane < block.Lanes; lane += strip.Lanes)
         {
-            var strips = (block.Lanes - lane + plan.StripLanes - 1) / plan.StripLanes;
-            var tiles = ((block.Lanes - lane) / Tile + strips - 1) / strips;
-            if (!strip.Load(block, lane, tiles * Tile, weights)) continue;
+            if (!strip.LoadNext(block, lane, block.Lanes, weights)) continue;
             probabilities.Up();
             probabilities.Down();
             SetScores();

@@ -1,4 +1,3 @@
-using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using PanelChoice.Design;
@@ -89,13 +88,21 @@ internal sealed class Strip
         for (var n = 0; n < plan.Nodes; n++) Dissimilarity[n] = plan.NodeParameter[n] is var q && q >= 0 ? Theta[q] : 1;
     }
 
-    /// <summary>Loads a strip. Lanes with weight 0 count as if nothing were offered.</summary>
-    /// <param name="block">Its block.</param>
-    /// <param name="firstLane">First lane, a multiple of 8.</param>
-    /// <param name="lanes">Number of lanes, a multiple of 8.</param>
+    /// <summary>Loads the next strip of the lanes up to an end, cut so that the strips are of about equal length.</summary>
+    /// <param name="block">The block.</param>
+    /// <param name="lane">First lane, a multiple of 8.</param>
+    /// <param name="end">Lane after the last, a multiple of 8.</param>
     /// <param name="weights">Gives the lanes their weights.</param>
     /// <returns>False where every lane has weight 0; then nothing else is loaded.</returns>
-    public bool Load(DesignBlock block, int firstLane, int lanes, in LaneWeights weights)
+    public bool LoadNext(DesignBlock block, int lane, int end, in LaneWeights weights)
+    {
+        var strips = (end - lane + plan.StripLanes - 1) / plan.StripLanes;
+        var tiles = ((end - lane) / Tile + strips - 1) / strips;
+        return Load(block, lane, tiles * Tile, weights);
+    }
+
+    /// <summary>Loads a strip; false where every lane has weight 0. Lanes with weight 0 count as if nothing were offered.</summary>
+    private bool Load(DesignBlock block, int firstLane, int lanes, in LaneWeights weights)
     {
         Lanes = lanes;
         var weight = rows.Lanes(RootOnPath, lanes);
@@ -172,20 +179,12 @@ internal sealed class Strip
             for (var j = 0; j < J; j++, place += stride)
             {
                 var v = Vector512.LoadUnsafe(ref value, place);
-                Vector512.ConditionalSelect(LanesOf(offered[j] & live), v, missing).StoreUnsafe(ref value, place);
-                Vector512.ConditionalSelect(LanesOf(chosen[j] & live), w, Vector512<double>.Zero).StoreUnsafe(ref onPath, place);
+                Vector512.ConditionalSelect(TileMask.Lanes(offered[j] & live), v, missing).StoreUnsafe(ref value, place);
+                Vector512.ConditionalSelect(TileMask.Lanes(chosen[j] & live), w, Vector512<double>.Zero).StoreUnsafe(ref onPath, place);
             }
 
             offered = offered[J..];
             chosen = chosen[J..];
         }
-    }
-
-    /// <summary>All bits of each lane whose bit is set.</summary>
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private static Vector512<double> LanesOf(ulong mask)
-    {
-        var bits = Vector512.Create(1UL, 2, 4, 8, 16, 32, 64, 128);
-        return Vector512.Equals(Vector512.Create(mask) & bits, bits).AsDouble();
     }
 }

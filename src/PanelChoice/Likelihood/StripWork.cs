@@ -36,7 +36,7 @@ internal sealed class StripWork
     {
         for (var lane = 0; lane < block.Lanes; lane += strip.Lanes)
         {
-            if (!Load(block, lane, block.Lanes, weights)) continue;
+            if (!strip.LoadNext(block, lane, block.Lanes, weights)) continue;
             probabilities.Up();
             value += probabilities.LogLikelihood;
             if (derivatives == Derivatives.None) continue;
@@ -60,7 +60,7 @@ internal sealed class StripWork
     {
         for (var lane = 0; lane < block.Situations; lane += strip.Lanes)
         {
-            Load(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
+            strip.LoadNext(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
             probabilities.Up();
             var count = Math.Min(strip.Lanes, block.Situations - lane);
             probabilities.WriteLogProbabilities(log.Slice(block.FirstSituation + lane, count));
@@ -72,7 +72,7 @@ internal sealed class StripWork
     {
         for (var lane = 0; lane < block.Situations; lane += strip.Lanes)
         {
-            Load(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
+            strip.LoadNext(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
             probabilities.Up();
             probabilities.Down();
             var count = Math.Min(strip.Lanes, block.Situations - lane);
@@ -86,20 +86,12 @@ internal sealed class StripWork
         var end = (endSituation - block.FirstSituation + Tile - 1) / Tile * Tile;
         for (var lane = (firstSituation - block.FirstSituation) / Tile * Tile; lane < end; lane += strip.Lanes)
         {
-            Load(block, lane, end, LaneWeights.One(firstSituation, endSituation));
+            strip.LoadNext(block, lane, end, LaneWeights.One(firstSituation, endSituation));
             probabilities.Up();
             probabilities.Down();
             Hessian.Add();
         }
 
         Hessian.Flush(-1, information);
-    }
-
-    /// <summary>Loads the next strip of the lanes up to an end, cut so that the strips are of about equal length.</summary>
-    private bool Load(DesignBlock block, int lane, int end, in LaneWeights weights)
-    {
-        var strips = (end - lane + plan.StripLanes - 1) / plan.StripLanes;
-        var tiles = ((end - lane) / Tile + strips - 1) / strips;
-        return strip.Load(block, lane, tiles * Tile, weights);
     }
 }

@@ -73,9 +73,7 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
             work.Flush(parts.AsSpan(chunk * length, length), derivatives);
         });
 
-        var total = new double[length];
-        for (var part = 0; part < parts.Length; part += length)
-            for (var i = 0; i < length; i++) total[i] += parts[part + i];
+        var total = FixedChunks.Sum(parts, length);
         return new LikelihoodEvaluation(
             total[0],
             ImmutableCollectionsMarshal.AsImmutableArray(total[1..(1 + gradient)]),
@@ -123,10 +121,7 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
             idleScores.Add(work);
         });
 
-        var total = new double[K * K];
-        for (var part = 0; part < parts.Length; part += total.Length)
-            for (var i = 0; i < total.Length; i++) total[i] += parts[part + i];
-        return new SampleScores(byPerson, total);
+        return new SampleScores(byPerson, FixedChunks.Sum(parts, K * K));
     }
 
     public double[] LogProbabilities(ReadOnlySpan<double> parameters)

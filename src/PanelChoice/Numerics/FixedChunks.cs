@@ -12,6 +12,17 @@ internal static class FixedChunks
     /// <summary>First item of a chunk; the end of the last chunk is the start of chunk <c>Count</c>.</summary>
     public static int Start(int items, int chunk) => (int)((long)items * chunk / Count(items));
 
+    /// <summary>Adds up what the chunks came to, in their order.</summary>
+    /// <param name="parts">Chunks x length, chunk by chunk.</param>
+    /// <param name="length">Figures of one chunk.</param>
+    public static double[] Sum(ReadOnlySpan<double> parts, int length)
+    {
+        var total = new double[length];
+        for (var part = 0; part < parts.Length; part += length)
+            for (var i = 0; i < length; i++) total[i] += parts[part + i];
+        return total;
+    }
+
     /// <summary>Runs the action for every chunk on at most the given number of threads.</summary>
     /// <param name="items">Number of items.</param>
     /// <param name="threads">Number of threads, 1 or more.</param>
