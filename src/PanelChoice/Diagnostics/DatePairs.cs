@@ -9,14 +9,21 @@ namespace PanelChoice.Diagnostics;
 /// M = sum F'O F = B'S B - B'U - U'B + sum E'O E           U = sum O E
 /// tr(E'A O A O A E) = |S B - U|^2 - sum |O F|^2           sum |O F|^2 = tr(B' sum O^2 B) - 2 tr(B' sum O^2 E) + sum |O E|^2
 /// </code>
+/// Sums that no product joins with those of the date (E'E, E'OE, |g|^2, ...) are kept for all dates together. Rows are padded with zeros
+/// (<see cref="PaddedRows"/>); of symmetric K x K matrices only what is on and right of the diagonal is there.
 /// </summary>
 internal sealed class DatePairs
 {
     private readonly int J;
     private readonly int K;
+    private readonly int widthJ;
+    private readonly int widthK;
     private readonly double[] q;
     private readonly double[] m;
     private readonly double[] withScores;
+    private readonly double[] ownQ;
+    private readonly double[] ownM;
+    private readonly double[] ownScores;
     private double moment;
     private double squares;
     private double cubes;
@@ -26,46 +33,61 @@ internal sealed class DatePairs
     {
         J = alternatives;
         K = parameters;
-        q = new double[K * K];
-        m = new double[K * K];
-        withScores = new double[K];
+        widthJ = PaddedRows.Padded(J);
+        widthK = PaddedRows.Padded(K);
+        q = new double[widthK * widthK];
+        m = new double[widthK * widthK];
+        withScores = new double[widthK];
+        ownQ = new double[widthK * widthK];
+        ownM = new double[widthK * widthK];
+        ownScores = new double[widthK];
     }
 
     /// <summary>Number of dates with two or more persons.</summary>
     public int Dates { get; private set; }
 
     /// <summary>Numbers that the sums of one date take.</summary>
-    public static int DoublesOfDate(int J, int K) => (2 * J) + (4 * J * J) + (4 * J * K) + (2 * K * K) + K;
+    public static int DoublesOfDate(int J, int K) => (2 * PaddedRows.Padded(J) * (1 + J)) + (3 * J * PaddedRows.Padded(K));
 
-    /// <summary>Adds a date that is complete: its pairs join the sums.</summary>
+    /// <summary>Adds what a person of a date with two or more persons brings to the sums that do not depend on the date.</summary>
+    public void AddPerson(PersonOnDate person)
+    {
+        var residual = person.Residual;
+        moment -= PaddedRows.Dot(residual, residual) / 2;
+        squares -= PaddedRows.Dot(person.Omega, person.Omega) / 2;
+        cubes += 2 * PaddedRows.Dot(person.OmegaSquared, person.Omega);
+        crossCubes -= PaddedRows.Dot(person.OmegaE, person.OmegaE);
+        PaddedRows.Product(person.E, 1, widthK, person.E, J, widthK, widthK, ownQ, isAdded: true, isSymmetric: true);
+        PaddedRows.Product(person.E, 1, widthK, person.OmegaE, J, widthK, widthK, ownM, isAdded: true, isSymmetric: true);
+        PaddedRows.AddCombination(residual, person.E, J, ownScores);
+    }
+
+    /// <summary>Adds a date with two or more persons that is complete: its pairs join the sums.</summary>
     public void Add(OneDate date)
     {
-        if (date.Persons < 2) return;
         Dates++;
-        moment += (SmallMatrix.Dot(date.G, date.G) - date.ResidualSquares) / 2;
-        squares += (SmallMatrix.Dot(date.S, date.S) - date.OmegaSquares) / 2;
+        moment += PaddedRows.Dot(date.G, date.G) / 2;
+        squares += PaddedRows.Dot(date.S, date.S) / 2;
 
-        var squared = new double[J * J];
-        SmallMatrix.AddProduct(date.S, date.S, J, J, J, squared);
-        cubes += SmallMatrix.Dot(squared, date.S) - (3 * SmallMatrix.Dot(date.S, date.OmegaSquared)) + (2 * date.OmegaCubes);
+        var squared = new double[J * widthJ];
+        PaddedRows.Product(date.S, widthJ, 1, date.S, J, J, widthJ, squared);
+        cubes += PaddedRows.Dot(squared, date.S) - (3 * PaddedRows.Dot(date.S, date.OmegaSquared));
 
-        SmallMatrix.AddTransposedProduct(date.B, date.B, J, K, K, q);
-        for (var c = 0; c < q.Length; c++) q[c] -= date.EE[c];
+        PaddedRows.Product(date.B, 1, widthK, date.B, J, widthK, widthK, q, isAdded: true, isSymmetric: true);
 
-        var w = new double[J * K];
-        SmallMatrix.AddProduct(date.S, date.B, J, J, K, w);
-        for (var c = 0; c < w.Length; c++) w[c] -= date.U[c];
-        SmallMatrix.AddTransposedProduct(date.B, w, J, K, K, m);
-        SmallMatrix.AddTransposedProduct(date.U, date.B, J, K, K, m, -1);
-        SmallMatrix.Add(date.EOE, m);
+        var w = new double[J * widthK];
+        var minusU = new double[J * widthK];
+        PaddedRows.Add(-1, date.U, minusU);
+        PaddedRows.Product(date.S, widthJ, 1, date.B, J, J, widthK, w);
+        PaddedRows.Add(1, minusU, w);
+        PaddedRows.Product(date.B, 1, widthK, w, J, widthK, widthK, m, isAdded: true, isSymmetric: true);
+        PaddedRows.Product(minusU, 1, widthK, date.B, J, widthK, widthK, m, isAdded: true, isSymmetric: true);
 
-        var own = new double[J * K];
-        SmallMatrix.AddProduct(date.OmegaSquared, date.B, J, J, K, own);
-        crossCubes += SmallMatrix.Dot(w, w)
-            - (SmallMatrix.Dot(own, date.B) - (2 * SmallMatrix.Dot(date.B, date.OmegaSquaredE)) + date.OmegaESquares);
+        var own = new double[J * widthK];
+        PaddedRows.Product(date.OmegaSquared, widthJ, 1, date.B, J, J, widthK, own);
+        crossCubes += PaddedRows.Dot(w, w) - (PaddedRows.Dot(own, date.B) - (2 * PaddedRows.Dot(date.B, date.OmegaSquaredE)));
 
-        SmallMatrix.AddTransposedProduct(date.B, date.G, J, K, 1, withScores);
-        for (var k = 0; k < K; k++) withScores[k] -= date.OwnScores[k];
+        PaddedRows.AddCombination(date.G, date.B, J, withScores);
     }
 
     /// <summary>Adds the sums of other dates.</summary>
@@ -76,87 +98,63 @@ internal sealed class DatePairs
         squares += other.squares;
         cubes += other.cubes;
         crossCubes += other.crossCubes;
-        SmallMatrix.Add(other.q, q);
-        SmallMatrix.Add(other.m, m);
-        SmallMatrix.Add(other.withScores, withScores);
+        PaddedRows.Add(1, other.q, q);
+        PaddedRows.Add(1, other.m, m);
+        PaddedRows.Add(1, other.withScores, withScores);
+        PaddedRows.Add(1, other.ownQ, ownQ);
+        PaddedRows.Add(1, other.ownM, ownM);
+        PaddedRows.Add(1, other.ownScores, ownScores);
     }
 
     /// <summary>The date score of all dates joined.</summary>
     /// <param name="totalScore">Total score in the whitening basis.</param>
     public DateMoment Moment(ReadOnlySpan<double> totalScore)
     {
-        var bias = SmallMatrix.Trace(q, K) / 2;
+        var between = PaddedRows.Symmetric(q, K);
+        var own = PaddedRows.Symmetric(ownQ, K);
+        for (var c = 0; c < between.Length; c++) between[c] -= own[c];
+        var weighted = PaddedRows.Symmetric(m, K);
+        SmallMatrix.Add(PaddedRows.Symmetric(ownM, K), weighted);
+        var shift = 0.0;
+        for (var k = 0; k < K; k++) shift += (withScores[k] - ownScores[k]) * totalScore[k];
+
+        var bias = SmallMatrix.Trace(between, K) / 2;
         var squared = new double[K * K];
-        SmallMatrix.AddProduct(q, q, K, K, K, squared);
+        SmallMatrix.AddProduct(between, between, K, K, K, squared);
         return new DateMoment(
             new CorrectedScore(
-                moment - SmallMatrix.Dot(withScores, totalScore) + bias,
-                squares - SmallMatrix.Trace(m, K) + (SmallMatrix.Trace(squared, K) / 2),
+                moment - shift + bias,
+                squares - SmallMatrix.Trace(weighted, K) + (SmallMatrix.Trace(squared, K) / 2),
                 moment, squares, bias, Dates),
-            cubes - (3 * crossCubes) + (3 * SmallMatrix.Dot(m, q)) - SmallMatrix.Dot(squared, q));
+            cubes - (3 * crossCubes) + (3 * SmallMatrix.Dot(weighted, between)) - SmallMatrix.Dot(squared, between));
     }
 
     /// <summary>Sums over the persons of one date.</summary>
     internal sealed class OneDate(int J, int K)
     {
-        private readonly double[] o = new double[J * J];
-        private readonly double[] oSquared = new double[J * J];
-        private readonly double[] oE = new double[J * K];
+        public double[] G { get; } = new double[PaddedRows.Padded(J)];
 
-        public int Persons { get; private set; }
+        public double[] P { get; } = new double[PaddedRows.Padded(J)];
 
-        public double[] G { get; } = new double[J];
+        public double[] B { get; } = new double[J * PaddedRows.Padded(K)];
 
-        public double[] P { get; } = new double[J];
+        public double[] S { get; } = new double[J * PaddedRows.Padded(J)];
 
-        public double[] B { get; } = new double[J * K];
+        public double[] U { get; } = new double[J * PaddedRows.Padded(K)];
 
-        public double[] S { get; } = new double[J * J];
+        public double[] OmegaSquared { get; } = new double[J * PaddedRows.Padded(J)];
 
-        public double[] U { get; } = new double[J * K];
+        public double[] OmegaSquaredE { get; } = new double[J * PaddedRows.Padded(K)];
 
-        public double[] EE { get; } = new double[K * K];
-
-        public double[] EOE { get; } = new double[K * K];
-
-        public double[] OwnScores { get; } = new double[K];
-
-        public double[] OmegaSquared { get; } = new double[J * J];
-
-        public double[] OmegaSquaredE { get; } = new double[J * K];
-
-        public double ResidualSquares { get; private set; }
-
-        public double OmegaSquares { get; private set; }
-
-        public double OmegaCubes { get; private set; }
-
-        public double OmegaESquares { get; private set; }
-
-        public void Add(SituationScores scores)
+        public void Add(PersonOnDate person)
         {
-            Persons++;
-            for (var r = 0; r < J; r++)
-                for (var c = 0; c < J; c++) o[(r * J) + c] = scores.OmegaAt(r, c);
-            Array.Clear(oSquared);
-            Array.Clear(oE);
-            SmallMatrix.AddProduct(o, o, J, J, J, oSquared);
-            SmallMatrix.AddProduct(o, scores.Cross, J, J, K, oE);
-
-            SmallMatrix.Add(scores.Residual, G);
-            SmallMatrix.Add(scores.Probability, P);
-            SmallMatrix.Add(scores.Cross, B);
-            SmallMatrix.Add(o, S);
-            SmallMatrix.Add(oE, U);
-            SmallMatrix.Add(oSquared, OmegaSquared);
-            SmallMatrix.AddTransposedProduct(scores.Cross, scores.Cross, J, K, K, EE);
-            SmallMatrix.AddTransposedProduct(scores.Cross, oE, J, K, K, EOE);
-            SmallMatrix.AddTransposedProduct(scores.Cross, scores.Residual, J, K, 1, OwnScores);
-            SmallMatrix.AddProduct(o, oE, J, J, K, OmegaSquaredE);
-            ResidualSquares += SmallMatrix.Dot(scores.Residual, scores.Residual);
-            OmegaSquares += SmallMatrix.Dot(o, o);
-            OmegaCubes += SmallMatrix.Dot(oSquared, o);
-            OmegaESquares += SmallMatrix.Dot(oE, oE);
+            PaddedRows.Add(1, person.Residual, G);
+            PaddedRows.Add(1, person.Probability, P);
+            PaddedRows.Add(1, person.E, B);
+            PaddedRows.Add(1, person.Omega, S);
+            PaddedRows.Add(1, person.OmegaE, U);
+            PaddedRows.Add(1, person.OmegaSquared, OmegaSquared);
+            PaddedRows.Add(1, person.OmegaSquaredE, OmegaSquaredE);
         }
     }
 }

@@ -1,7 +1,7 @@
-using System.Collections.Immutable;
+using System.Runtime.InteropServices;
 using PanelChoice.Design;
+using PanelChoice.Likelihood;
 using PanelChoice.Numerics;
-using PanelChoice.Study;
 
 namespace PanelChoice.Diagnostics;
 
@@ -22,11 +22,11 @@ internal sealed class DateSums
     private readonly double[][] cross;
     private readonly double[][] probability;
 
-    private DateSums(CompactNumbers dates, Dictionary<long, int> place, DatePairs pairs)
+    private DateSums(CompactNumbers dates, Dictionary<long, int> place, int[] count, DatePairs pairs)
     {
         this.dates = dates;
         this.place = place;
-        count = new int[place.Count];
+        this.count = count;
         residual = new double[place.Count][];
         cross = new double[place.Count][];
         probability = new double[place.Count][];
@@ -37,20 +37,17 @@ internal sealed class DateSums
     public DatePairs Pairs { get; }
 
     /// <summary>Sums a design by date.</summary>
-    /// <param name="design">The design.</param>
-    /// <param name="form">The form.</param>
-    /// <param name="parameters">All parameters.</param>
-    /// <param name="basis">The whitening basis at these parameters.</param>
+    /// <param name="kernel">The design's residuals.</param>
+    /// <param name="basis">The whitening basis at the same parameters.</param>
     /// <param name="dates">Date of each situation: any numbers that are equal for the same day.</param>
     /// <param name="threads">Threads; no figure depends on it.</param>
-    public static DateSums Sum(
-        ChoiceDesign design, NestedLogitForm form, ImmutableArray<double> parameters, double[] basis, CompactNumbers dates, int threads)
+    public static DateSums Sum(ResidualKernel kernel, double[] basis, CompactNumbers dates, int threads)
     {
-        var distinct = new SortedSet<long>();
-        for (var t = 0; t < design.Situations; t++) distinct.Add(dates[t]);
-        var place = distinct.Select((date, d) => (date, d)).ToDictionary(x => x.date, x => x.d);
-        var (J, K) = (design.Alternatives, design.Layout.Free.Length);
-        var result = new DateSums(dates, place, new DatePairs(J, K));
+        var persons = new Dictionary<long, int>();
+        for (var t = 0; t < kernel.Layout.Design.Situations; t++) CollectionsMarshal.GetValueRefOrAddDefault(persons, dates[t], out _)++;
+        var place = persons.Keys.Order().Select((date, d) => (date, d)).ToDictionary(x => x.date, x => x.d);
+        var (J, K) = (kernel.Layout.J, kernel.Layout.K);
+        var result = new DateSums(dates, place, [.. persons.OrderBy(p => p.Key).Select(p => p.Value)], new DatePairs(J, K));
         var parts = new DatePairs[FixedChunks.Count(place.Count)];
         foreach (var chunks in Enumerable.Range(0, parts.Length).Chunk(ChunksAtOnce(place.Count, J, K)))
         {
@@ -58,7 +55,7 @@ internal sealed class DateSums
             var shares = chunks.Chunk((chunks.Length + Math.Max(1, threads) - 1) / Math.Max(1, threads)).ToArray();
             FixedChunks.Run(shares.Length, threads, (_, first, end) =>
             {
-                for (var s = first; s < end; s++) result.SumChunks(design, form, parameters, basis, shares[s], parts);
+                for (var s = first; s < end; s++) kernel.Lend(residuals => result.SumChunks(new SituationScores(residuals, basis), kernel.Layout.Design, shares[s], parts));
             });
         }
 
@@ -82,40 +79,44 @@ internal sealed class DateSums
     }
 
     /// <summary>Sums the dates of some neighbouring chunks on one walk through the design.</summary>
-    private void SumChunks(ChoiceDesign design, NestedLogitForm form, ImmutableArray<double> parameters, double[] basis, int[] chunks, DatePairs[] parts)
+    private void SumChunks(SituationScores scores, ChoiceDesign design, int[] chunks, DatePairs[] parts)
     {
         var first = FixedChunks.Start(count.Length, chunks[0]);
         var end = FixedChunks.Start(count.Length, chunks[^1] + 1);
-        var scores = new SituationScores(design, form, parameters.AsSpan(), basis);
         var open = new DatePairs.OneDate[end - first];
-        for (var d = 0; d < open.Length; d++) open[d] = new DatePairs.OneDate(scores.J, scores.K);
-        for (var t = 0; t < design.Situations; t++)
-        {
-            var d = place[dates[t]];
-            if (d < first || d >= end) continue;
-            scores.Load(t);
-            open[d - first].Add(scores);
-        }
-
+        var partOf = new DatePairs[end - first];
         foreach (var chunk in chunks)
         {
-            var pairs = new DatePairs(scores.J, scores.K);
+            parts[chunk] = new DatePairs(scores.J, scores.K);
             for (var d = FixedChunks.Start(count.Length, chunk); d < FixedChunks.Start(count.Length, chunk + 1); d++)
-            {
-                var date = open[d - first];
-                pairs.Add(date);
-                count[d] = date.Persons;
-                residual[d] = date.G;
-                cross[d] = date.B;
-                probability[d] = date.P;
-            }
+                (open[d - first], partOf[d - first]) = (new DatePairs.OneDate(scores.J, scores.K), parts[chunk]);
+        }
 
-            parts[chunk] = pairs;
+        var person = new PersonOnDate(scores.J, scores.K);
+        foreach (var block in design.Blocks)
+            scores.ForEach(
+                block,
+                t =>
+                {
+                    var d = place[dates[t]];
+                    person.Set(scores);
+                    open[d - first].Add(person);
+                    if (count[d] > 1) partOf[d - first].AddPerson(person);
+                },
+                t => place[dates[t]] is var d && d >= first && d < end);
+
+        for (var d = first; d < end; d++)
+        {
+            var date = open[d - first];
+            if (count[d] > 1) partOf[d - first].Add(date);
+            residual[d] = date.G;
+            cross[d] = date.B;
+            probability[d] = date.P;
         }
     }
 
     private static void Subtract(Span<double> from, double[] sum, int count)
     {
-        for (var k = 0; k < sum.Length; k++) from[k] -= sum[k] / count;
+        for (var k = 0; k < Math.Min(from.Length, sum.Length); k++) from[k] -= sum[k] / count;
     }
 }

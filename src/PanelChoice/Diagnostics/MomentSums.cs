@@ -75,7 +75,15 @@ internal sealed class MomentSums
         for (var k = 0; k < Pairs.Length; k++) Pairs[k] += other.Pairs[k];
     }
 
-    private static void Sum(double[] into, double[] from)
+    /// <summary>Adds one moment's sums to another's, but for the variance and the number of pairs.</summary>
+    public void Include(int moment, int of)
+    {
+        Moment[moment] += Moment[of];
+        Bias[moment] += Bias[of];
+        Sum(ScoresOf(moment), ScoresOf(of));
+    }
+
+    private static void Sum(Span<double> into, ReadOnlySpan<double> from)
     {
         for (var k = 0; k < into.Length; k++) into[k] += from[k];
     }

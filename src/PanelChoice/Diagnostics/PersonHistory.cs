@@ -9,67 +9,63 @@ namespace PanelChoice.Diagnostics;
 /// lag h   z = g of the situation exactly h steps back, if it is in the sample
 /// </code>
 /// Positions are whole steps, not negative and rising within a stream. Under the weekly rule a person has one stream for each day of the week, because only situations a whole
-/// number of weeks apart have a distance; lasting taste (rho = 1) has no distance and takes every earlier situation.
+/// number of weeks apart have a distance; lasting taste (rho = 1) has no distance and takes every earlier situation. Rows are padded with zeros
+/// (<see cref="PaddedRows"/>).
 /// </summary>
 internal sealed class PersonHistory
 {
-    /// <summary>Decays of the detector's grid; the last is 1.</summary>
+    /// <summary>Decays of the detector's grid; the first is 0 and the last is 1.</summary>
     public static readonly double[] Decays = [0, 0.3, 0.6, 0.8, 0.9, 1];
 
-    private readonly int streams;
     private readonly int lags;
-    private readonly int J;
-    private readonly int cells;
-    private readonly double[][] residual;
-    private readonly double[][] cross;
+    private readonly Filter[][] filters;
     private readonly long[] lastPosition;
     private readonly bool[] started;
     private readonly Recent[] recent;
-    private int seen;
 
-    public PersonHistory(int streams, int lags, int alternatives, int parameters)
+    /// <summary>A history without anything in it.</summary>
+    /// <param name="streams">Number of streams.</param>
+    /// <param name="lags">Situations this far back are kept; 1 at least.</param>
+    /// <param name="residuals">Length of a row of residuals.</param>
+    /// <param name="cells">Length of E.</param>
+    /// <param name="scores">Length of a row of scores.</param>
+    public PersonHistory(int streams, int lags, int residuals, int cells, int scores)
     {
-        this.streams = streams;
         this.lags = Math.Max(1, lags);
-        J = alternatives;
-        cells = alternatives * parameters;
-        var filters = streams * (Decays.Length - 1);
-        residual = Arrays(filters, J);
-        cross = Arrays(filters, cells);
+        filters = [.. Enumerable.Range(0, streams).Select(_ => Enumerable.Range(1, Decays.Length - 2).Select(r => new Filter(Decays[r], residuals, cells)).ToArray())];
         lastPosition = new long[streams];
         started = new bool[streams];
-        recent = [.. Enumerable.Range(0, this.lags * streams).Select(_ => new Recent(new double[J], new double[J], new double[cells]))];
-        ResidualTotal = new double[J];
-        CrossTotal = new double[cells];
-        ScoreTotal = new double[parameters];
-        InformationTotal = new double[parameters * parameters];
+        recent = [.. Enumerable.Range(0, this.lags * streams).Select(_ => new Recent(residuals, cells))];
+        Total = new Filter(1, residuals, cells);
+        ScoreTotal = new double[scores];
+        InformationTotal = new double[scores * scores];
     }
 
-    /// <summary>Sum of g over all earlier situations (J).</summary>
-    public double[] ResidualTotal { get; }
+    /// <summary>Sums over all earlier situations: R(1).</summary>
+    public Filter Total { get; }
 
-    /// <summary>Sum of E over all earlier situations (J x K).</summary>
-    public double[] CrossTotal { get; }
-
-    /// <summary>Sum of s over all earlier situations (K).</summary>
+    /// <summary>Sum of s over all earlier situations.</summary>
     public double[] ScoreTotal { get; }
 
-    /// <summary>Sum of I over all earlier situations (K x K).</summary>
+    /// <summary>Sum of I over all earlier situations.</summary>
     public double[] InformationTotal { get; }
 
     /// <summary>Whether there is any earlier situation.</summary>
-    public bool IsEmpty => seen == 0;
+    public bool IsEmpty { get; private set; } = true;
 
     /// <summary>Forgets everything: the next person.</summary>
     public void Clear()
     {
-        seen = 0;
-        Array.Clear(started);
-        foreach (var r in recent) r.IsSet = false;
-        foreach (var r in residual) Array.Clear(r);
-        foreach (var c in cross) Array.Clear(c);
-        Array.Clear(ResidualTotal);
-        Array.Clear(CrossTotal);
+        IsEmpty = true;
+        for (var stream = 0; stream < started.Length; stream++)
+        {
+            if (!started[stream]) continue;
+            started[stream] = false;
+            foreach (var filter in filters[stream]) filter.Clear();
+            foreach (var slot in recent.AsSpan(stream * lags, lags)) slot.IsSet = false;
+        }
+
+        Total.Clear();
         Array.Clear(ScoreTotal);
         Array.Clear(InformationTotal);
     }
@@ -81,17 +77,11 @@ internal sealed class PersonHistory
         var gap = position - lastPosition[stream];
         lastPosition[stream] = position;
         if (gap == 1) return;
-        for (var r = 0; r + 1 < Decays.Length; r++)
-        {
-            var fade = Math.Pow(Decays[r], gap - 1);
-            foreach (ref var x in residual[Filter(stream, r)].AsSpan()) x *= fade;
-            foreach (ref var x in cross[Filter(stream, r)].AsSpan()) x *= fade;
-        }
+        foreach (var filter in filters[stream]) filter.Fade(gap - 1);
     }
 
-    /// <summary>z and the filtered E of R(rho) at the present situation.</summary>
-    public (double[] Residual, double[] Cross) Decayed(int decay, int stream) =>
-        decay == Decays.Length - 1 ? (ResidualTotal, CrossTotal) : (residual[Filter(stream, decay)], cross[Filter(stream, decay)]);
+    /// <summary>R(rho) at the present situation for a decay between 0 and 1 that stands at the given place of <see cref="Decays"/>.</summary>
+    public Filter Decayed(int decay, int stream) => filters[stream][decay - 1];
 
     /// <summary>The situation exactly <paramref name="lag"/> steps back (at most the lags kept); null when it is not in the sample.</summary>
     public Recent? Back(long position, int stream, int lag)
@@ -104,25 +94,18 @@ internal sealed class PersonHistory
     /// <summary>Adds the present situation to the past.</summary>
     /// <param name="position">Its position.</param>
     /// <param name="stream">Its stream.</param>
-    /// <param name="g">Residual that later situations meet (J).</param>
-    /// <param name="e">E that goes with it (J x K).</param>
-    /// <param name="probability">P that later situations meet (J).</param>
-    /// <param name="scores">The loaded situation: score and information.</param>
-    public void Push(long position, int stream, ReadOnlySpan<double> g, ReadOnlySpan<double> e, ReadOnlySpan<double> probability, SituationScores scores)
+    /// <param name="g">Residual that later situations meet.</param>
+    /// <param name="e">E that goes with it.</param>
+    /// <param name="probability">P that later situations meet.</param>
+    /// <param name="score">Its score.</param>
+    public void Push(long position, int stream, ReadOnlySpan<double> g, ReadOnlySpan<double> e, ReadOnlySpan<double> probability, ReadOnlySpan<double> score)
     {
-        for (var r = 0; r + 1 < Decays.Length; r++)
-        {
-            Fold(Decays[r], residual[Filter(stream, r)], g);
-            Fold(Decays[r], cross[Filter(stream, r)], e);
-        }
-
-        Fold(1, ResidualTotal, g);
-        Fold(1, CrossTotal, e);
-        Fold(1, ScoreTotal, scores.Score);
-        scores.AddInformation(InformationTotal);
+        foreach (var filter in filters[stream]) filter.Fold(g, e);
+        Total.Fold(g, e);
+        PaddedRows.Add(1, score, ScoreTotal);
         lastPosition[stream] = position;
         started[stream] = true;
-        seen++;
+        IsEmpty = false;
 
         var slot = recent[(stream * lags) + (int)(position % lags)];
         slot.IsSet = true;
@@ -132,26 +115,44 @@ internal sealed class PersonHistory
         probability.CopyTo(slot.Probability);
     }
 
-    private int Filter(int stream, int decay) => (decay * streams) + stream;
-
-    private static void Fold(double factor, double[] sum, ReadOnlySpan<double> add)
+    /// <summary>Running sums of residuals and of E under one decay.</summary>
+    internal sealed class Filter(double decay, int residuals, int cells)
     {
-        for (var k = 0; k < sum.Length; k++) sum[k] = (factor * sum[k]) + add[k];
+        public double[] Residual { get; } = new double[residuals];
+
+        public double[] Cross { get; } = new double[cells];
+
+        public void Clear()
+        {
+            Array.Clear(Residual);
+            Array.Clear(Cross);
+        }
+
+        public void Fade(long steps)
+        {
+            var factor = Math.Pow(decay, steps);
+            foreach (ref var x in Residual.AsSpan()) x *= factor;
+            foreach (ref var x in Cross.AsSpan()) x *= factor;
+        }
+
+        public void Fold(ReadOnlySpan<double> g, ReadOnlySpan<double> e)
+        {
+            PaddedRows.Fold(decay, Residual, g);
+            PaddedRows.Fold(decay, Cross, e);
+        }
     }
 
-    private static double[][] Arrays(int count, int length) => [.. Enumerable.Range(0, count).Select(_ => new double[length])];
-
     /// <summary>One recent situation.</summary>
-    internal sealed class Recent(double[] residual, double[] probability, double[] cross)
+    internal sealed class Recent(int residuals, int cells)
     {
         public bool IsSet { get; set; }
 
         public long Position { get; set; }
 
-        public double[] Residual { get; } = residual;
+        public double[] Residual { get; } = new double[residuals];
 
-        public double[] Probability { get; } = probability;
+        public double[] Probability { get; } = new double[residuals];
 
-        public double[] Cross { get; } = cross;
+        public double[] Cross { get; } = new double[cells];
     }
 }

@@ -1,6 +1,7 @@
 using System.Collections.Immutable;
 using MathNet.Numerics.LinearAlgebra;
 using PanelChoice.Design;
+using PanelChoice.Likelihood;
 using PanelChoice.Numerics;
 using PanelChoice.Study;
 
@@ -42,10 +43,16 @@ internal sealed record ScoreBattery(
         ChoiceDesign design, NestedLogitForm form, ImmutableArray<double> parameters, OccasionPositions positions, int lags,
         CompactNumbers? dates, bool demeanByDate, int threads)
     {
-        if (Whitening.Of(design, form, parameters.AsSpan(), threads) is not { } white) return null;
-        var byDate = dates is { } d ? DateSums.Sum(design, form, parameters, white.Basis, d, threads) : null;
-        var (layout, sums) = SerialMoments.Sum(
-            design, form, parameters, white.Basis, positions, lags, demeanByDate ? byDate : null, threads);
+        return Compute(ResidualKernel.Create(design, form, parameters.AsSpan()), positions, lags, dates, demeanByDate, threads);
+    }
+
+    /// <summary>The same by a given kernel.</summary>
+    internal static ScoreBattery? Compute(
+        ResidualKernel kernel, OccasionPositions positions, int lags, CompactNumbers? dates, bool demeanByDate, int threads)
+    {
+        if (Whitening.Of(kernel, threads) is not { } white) return null;
+        var byDate = dates is { } d ? DateSums.Sum(kernel, white.Basis, d, threads) : null;
+        var (layout, sums) = SerialMoments.Sum(kernel, white.Basis, positions, lags, demeanByDate ? byDate : null, threads);
         CorrectedScore Score(int moment) => CorrectedScore.Of(sums, moment, white.TotalScore);
 
         var size = PersonHistory.Decays.Length;

@@ -1,28 +1,15 @@
 namespace PanelChoice.Diagnostics;
 
-/// <summary>Sums of products of small row-by-row matrices, as plain loops: a library's matrix object per situation would cost more than the work.</summary>
+/// <summary>Sums of products of small row-by-row matrices, as plain loops.</summary>
 internal static class SmallMatrix
 {
-    /// <summary>Adds factor A B (A: rows x inner, B: inner x columns).</summary>
-    public static void AddProduct(ReadOnlySpan<double> a, ReadOnlySpan<double> b, int rows, int inner, int columns, Span<double> into, double factor = 1)
+    /// <summary>Adds A B (A: rows x inner, B: inner x columns).</summary>
+    public static void AddProduct(ReadOnlySpan<double> a, ReadOnlySpan<double> b, int rows, int inner, int columns, Span<double> into)
     {
         for (var r = 0; r < rows; r++)
             for (var i = 0; i < inner; i++)
             {
-                var f = factor * a[(r * inner) + i];
-                if (f == 0) continue;
-                for (var c = 0; c < columns; c++) into[(r * columns) + c] += f * b[(i * columns) + c];
-            }
-    }
-
-    /// <summary>Adds factor A'B (A: inner x rows, B: inner x columns).</summary>
-    public static void AddTransposedProduct(
-        ReadOnlySpan<double> a, ReadOnlySpan<double> b, int inner, int rows, int columns, Span<double> into, double factor = 1)
-    {
-        for (var i = 0; i < inner; i++)
-            for (var r = 0; r < rows; r++)
-            {
-                var f = factor * a[(i * rows) + r];
+                var f = a[(r * inner) + i];
                 if (f == 0) continue;
                 for (var c = 0; c < columns; c++) into[(r * columns) + c] += f * b[(i * columns) + c];
             }

@@ -1,7 +1,6 @@
 using MathNet.Numerics.LinearAlgebra;
-using PanelChoice.Design;
+using PanelChoice.Likelihood;
 using PanelChoice.Numerics;
-using PanelChoice.Study;
 
 namespace PanelChoice.Diagnostics;
 
@@ -19,37 +18,32 @@ internal sealed record Whitening(double[] Basis, double[] TotalScore, double[] I
     public const double SmallestEigenvalue = 1e-12;
 
     /// <summary>Whitens the information of a design at given parameters; null when it is singular or not finite.</summary>
-    public static Whitening? Of(ChoiceDesign design, NestedLogitForm form, ReadOnlySpan<double> parameters, int threads)
+    /// <param name="kernel">The design's residuals at the parameters.</param>
+    /// <param name="threads">Threads; no figure depends on it.</param>
+    public static Whitening? Of(ResidualKernel kernel, int threads)
     {
-        var theta = parameters.ToArray();
-        var size = design.Layout.Free.Length;
-        var parts = new (double[] Score, double[] Information)[FixedChunks.Count(design.Situations)];
-        FixedChunks.Run(design.Situations, threads, (chunk, first, end) =>
+        var design = kernel.Layout.Design;
+        var size = kernel.Layout.K;
+        var width = PaddedRows.Padded(size);
+        var parts = new double[FixedChunks.Count(design.Blocks.Length) * width * (width + 1)];
+        kernel.ForEachChunk(threads, (residuals, chunk, first, end) =>
         {
-            var scores = new SituationScores(design, form, theta, null);
-            var part = (Score: new double[size], Information: new double[size * size]);
-            for (var t = first; t < end; t++)
-            {
-                scores.Load(t);
-                for (var k = 0; k < size; k++) part.Score[k] += scores.Score[k];
-                scores.AddInformation(part.Information);
-            }
-
-            parts[chunk] = part;
+            var scores = new SituationScores(residuals, null);
+            var part = parts.AsMemory(chunk * width * (width + 1), width * (width + 1));
+            for (var b = first; b < end; b++)
+                scores.ForEach(design.Blocks[b], _ =>
+                {
+                    PaddedRows.Add(1, scores.Score, part.Span[..width]);
+                    scores.AddInformation(part.Span[width..]);
+                });
         });
 
-        var total = new double[size];
-        var information = new double[size * size];
-        foreach (var part in parts)
-        {
-            for (var k = 0; k < size; k++) total[k] += part.Score[k];
-            for (var k = 0; k < information.Length; k++) information[k] += part.Information[k];
-        }
-
+        var sums = FixedChunks.Sum(parts, width * (width + 1));
+        var information = PaddedRows.Symmetric(sums.AsSpan(width), size);
         if (BasisOf(information, size) is not { } basis) return null;
         var white = new double[size];
         for (var r = 0; r < size; r++)
-            for (var c = 0; c < size; c++) white[r] += basis[(r * size) + c] * total[c];
+            for (var c = 0; c < size; c++) white[r] += basis[(r * size) + c] * sums[c];
         return new Whitening(basis, white, information);
     }
 

@@ -3,8 +3,8 @@ using MathNet.Numerics.LinearAlgebra;
 namespace PanelChoice.Tests.Diagnostics;
 
 /// <summary>
-/// A two-level nested logit in closed form (utility-scaled) and the battery's moments by plain double loops over pairs of situations.
-/// It shares no code with the library: formulas are written out from the definitions, with explicit A_ss^-1 and no running sums.
+/// The battery's moments by plain double loops over pairs of situations, with explicit A_ss^-1 and no running sums. It shares no code with the
+/// library; where the situations come from <see cref="ClosedFormRows"/>, not a single one.
 /// </summary>
 internal sealed class BruteForce
 {
@@ -12,36 +12,25 @@ internal sealed class BruteForce
     /// <param name="Person">Person.</param>
     /// <param name="Position">Place in time.</param>
     /// <param name="Date">Date.</param>
-    /// <param name="Offered">Offered alternatives.</param>
-    /// <param name="Chosen">Chosen one.</param>
-    /// <param name="X">Covariates, J x coefficients.</param>
-    internal sealed record Row(int Person, long Position, long Date, bool[] Offered, int Chosen, double[,] X);
+    /// <param name="Chosen">Chosen alternative.</param>
+    /// <param name="P">Probability of each alternative.</param>
+    /// <param name="F">f^i: derivatives by (V, l) of every hypothetical choice; null where not offered.</param>
+    /// <param name="S">Its scores.</param>
+    internal sealed record Row(int Person, long Position, long Date, int Chosen, double[] P, double[]?[] F, double[]?[] S);
 
-    private readonly int[] nestOf;
-    private readonly int nests;
-    private readonly double[] theta;
-    private readonly int coefficients;
+    private readonly int parameters;
 
-    /// <summary>Evaluates rows at given parameters.</summary>
+    /// <summary>Sums over rows.</summary>
     /// <param name="rows">Situations, person by person in order.</param>
-    /// <param name="nestOf">Nest of each alternative; -1 for one that stands alone.</param>
-    /// <param name="theta">Coefficients, then one dissimilarity for each nest.</param>
-    public BruteForce(IReadOnlyList<Row> rows, int[] nestOf, double[] theta)
+    public BruteForce(IReadOnlyList<Row> rows)
     {
         Rows = rows;
-        this.nestOf = nestOf;
-        this.theta = theta;
-        nests = nestOf.Max() + 1;
-        coefficients = theta.Length - nests;
-        J = nestOf.Length;
-        foreach (var row in rows)
-        {
-            P.Add(Probabilities(row));
-            G.Add([.. Enumerable.Range(0, J).Select(i => row.Offered[i] ? Residual(row, i) : null)]);
-            S.Add([.. G[^1].Select(f => f is null ? null : Score(row, f))]);
-        }
-
-        var k = theta.Length;
+        J = rows[0].P.Length;
+        parameters = rows[0].S.First(s => s is not null)!.Length;
+        P = [.. rows.Select(r => r.P)];
+        G = [.. rows.Select(r => r.F)];
+        S = [.. rows.Select(r => r.S)];
+        var k = parameters;
         var a = Matrix<double>.Build.Dense(k, k);
         for (var t = 0; t < rows.Count; t++)
             for (var i = 0; i < J; i++)
@@ -56,12 +45,12 @@ internal sealed class BruteForce
 
     public int J { get; }
 
-    public List<double[]> P { get; } = [];
+    public List<double[]> P { get; }
 
     /// <summary>f^i: derivatives by (V, l) of every hypothetical choice of every row.</summary>
-    public List<double[]?[]> G { get; } = [];
+    public List<double[]?[]> G { get; }
 
-    public List<double[]?[]> S { get; } = [];
+    public List<double[]?[]> S { get; }
 
     public Matrix<double> Information { get; }
 
@@ -77,14 +66,14 @@ internal sealed class BruteForce
         var filters = Enumerable.Range(0, Rows.Count).Select(t =>
         {
             var z = new double[J];
-            var ez = Matrix<double>.Build.Dense(J, theta.Length);
+            var ez = Matrix<double>.Build.Dense(J, parameters);
             for (var s = 0; s < Rows.Count; s++)
                 for (var j = 0; j < J; j++)
                     for (var k = 0; k < J; k++)
                     {
                         if (weight(t, s, j, k) is var w && w == 0) continue;
                         z[j] += w * Observed(s)[k];
-                        for (var q = 0; q < theta.Length; q++) ez[j, q] += w * Cov(s)[k, q];
+                        for (var q = 0; q < parameters; q++) ez[j, q] += w * Cov(s)[k, q];
                     }
 
             return (z, ez);
@@ -96,8 +85,8 @@ internal sealed class BruteForce
     public (double Raw, double RawVariance, double Bias, double Value, double Variance) Moment(List<double[]> z, List<Matrix<double>> ez)
     {
         double raw = 0, rawVariance = 0, bias = 0;
-        var ams = Vector<double>.Build.Dense(theta.Length);
-        var total = Vector<double>.Build.Dense(theta.Length);
+        var ams = Vector<double>.Build.Dense(parameters);
+        var total = Vector<double>.Build.Dense(parameters);
         for (var t = 0; t < Rows.Count; t++)
         {
             raw += Dot(z[t], Observed(t));
@@ -106,7 +95,7 @@ internal sealed class BruteForce
                 if (G[t][i] is not { } g) continue;
                 var u = Dot(z[t], g);
                 rawVariance += P[t][i] * u * u;
-                for (var q = 0; q < theta.Length; q++) ams[q] += P[t][i] * u * S[t][i]![q];
+                for (var q = 0; q < parameters; q++) ams[q] += P[t][i] * u * S[t][i]![q];
             }
 
             total += Vector<double>.Build.Dense(ObservedScore(t));
@@ -120,8 +109,8 @@ internal sealed class BruteForce
     public (double Raw, double RawVariance, double Bias, double Value, double Variance) InformationTrace()
     {
         double raw = 0, rawVariance = 0, bias = 0;
-        var ams = Vector<double>.Build.Dense(theta.Length);
-        var total = Vector<double>.Build.Dense(theta.Length);
+        var ams = Vector<double>.Build.Dense(parameters);
+        var total = Vector<double>.Build.Dense(parameters);
         for (var t = 0; t < Rows.Count; t++)
         {
             total += Vector<double>.Build.Dense(ObservedScore(t));
@@ -149,11 +138,11 @@ internal sealed class BruteForce
     {
         var n = Rows.Count;
         double raw = 0, rawVariance = 0;
-        var ams = Vector<double>.Build.Dense(theta.Length);
-        var total = Vector<double>.Build.Dense(theta.Length);
+        var ams = Vector<double>.Build.Dense(parameters);
+        var total = Vector<double>.Build.Dense(parameters);
         var a = Matrix<double>.Build.Dense(n * J, n * J);
         var omega = Matrix<double>.Build.Dense(n * J, n * J);
-        var e = Matrix<double>.Build.Dense(n * J, theta.Length);
+        var e = Matrix<double>.Build.Dense(n * J, parameters);
         for (var t = 0; t < n; t++)
         {
             total += Vector<double>.Build.Dense(ObservedScore(t));
@@ -180,11 +169,11 @@ internal sealed class BruteForce
     /// <summary>Cov(g, s) of a row.</summary>
     public Matrix<double> Cov(int t)
     {
-        var e = Matrix<double>.Build.Dense(J, theta.Length);
+        var e = Matrix<double>.Build.Dense(J, parameters);
         for (var i = 0; i < J; i++)
             if (G[t][i] is { } g)
                 for (var j = 0; j < J; j++)
-                    for (var q = 0; q < theta.Length; q++) e[j, q] += P[t][i] * g[j] * S[t][i]![q];
+                    for (var q = 0; q < parameters; q++) e[j, q] += P[t][i] * g[j] * S[t][i]![q];
         return e;
     }
 
@@ -200,77 +189,10 @@ internal sealed class BruteForce
 
     private Matrix<double> InformationOf(int t)
     {
-        var a = Matrix<double>.Build.Dense(theta.Length, theta.Length);
+        var a = Matrix<double>.Build.Dense(parameters, parameters);
         for (var i = 0; i < J; i++)
             if (S[t][i] is { } s) a += P[t][i] * Vector<double>.Build.Dense(s).OuterProduct(Vector<double>.Build.Dense(s));
         return a;
-    }
-
-    private double Lambda(int nest) => theta[coefficients + nest];
-
-    private double[] Utility(Row row)
-    {
-        var v = new double[J];
-        for (var j = 0; j < J; j++)
-            for (var k = 0; k < coefficients; k++) v[j] += theta[k] * row.X[j, k];
-        return v;
-    }
-
-    private int Group(int j) => nestOf[j] >= 0 ? nestOf[j] : nests + j;
-
-    private double GroupLambda(int group) => group < nests ? Lambda(group) : 1;
-
-    private double[] Probabilities(Row row)
-    {
-        var v = Utility(row);
-        var sums = new Dictionary<int, double>();
-        for (var j = 0; j < J; j++)
-            if (row.Offered[j]) sums[Group(j)] = sums.GetValueOrDefault(Group(j)) + Math.Exp(v[j] / GroupLambda(Group(j)));
-        var all = sums.Sum(s => Math.Pow(s.Value, GroupLambda(s.Key)));
-        return [.. Enumerable.Range(0, J).Select(j => row.Offered[j]
-            ? Math.Exp(v[j] / GroupLambda(Group(j))) / sums[Group(j)] * Math.Pow(sums[Group(j)], GroupLambda(Group(j))) / all
-            : 0)];
-    }
-
-    /// <summary>
-    /// g_j = 1[j = i] / l + 1[j in c] (1 - 1/l) p_j - P_j;  g_l,m = 1[m = c] ((Vbar_m - V_i) / l^2 + h_m) - P_m h_m,  h_m = I_m - Vbar_m / l_m.
-    /// </summary>
-    private double[] Residual(Row row, int i)
-    {
-        var v = Utility(row);
-        var p = Probabilities(row);
-        var f = new double[J + nests];
-        var c = Group(i);
-        var inGroup = Enumerable.Range(0, J).Where(j => row.Offered[j] && Group(j) == c).Sum(j => p[j]);
-        for (var j = 0; j < J; j++)
-        {
-            if (!row.Offered[j]) continue;
-            f[j] = -p[j];
-            if (j == i) f[j] += 1 / GroupLambda(c);
-            if (Group(j) == c) f[j] += (1 - (1 / GroupLambda(c))) * p[j] / inGroup;
-        }
-
-        for (var m = 0; m < nests; m++)
-        {
-            var members = Enumerable.Range(0, J).Where(j => row.Offered[j] && nestOf[j] == m).ToList();
-            if (members.Count == 0) continue;
-            var nestShare = members.Sum(j => p[j]);
-            var mean = members.Sum(j => p[j] / nestShare * v[j]);
-            var h = Math.Log(members.Sum(j => Math.Exp(v[j] / Lambda(m)))) - (mean / Lambda(m));
-            f[J + m] = -nestShare * h;
-            if (m == c) f[J + m] += ((mean - v[i]) / (Lambda(m) * Lambda(m))) + h;
-        }
-
-        return f;
-    }
-
-    private double[] Score(Row row, double[] f)
-    {
-        var s = new double[theta.Length];
-        for (var k = 0; k < coefficients; k++)
-            for (var j = 0; j < J; j++) s[k] += row.X[j, k] * f[j];
-        for (var m = 0; m < nests; m++) s[coefficients + m] = f[J + m];
-        return s;
     }
 
     private static double Dot(double[] left, double[] right)

@@ -2,6 +2,7 @@ using System.Collections.Immutable;
 using MathNet.Numerics.LinearAlgebra;
 using PanelChoice.Design;
 using PanelChoice.Diagnostics;
+using PanelChoice.Likelihood;
 using PanelChoice.Numerics;
 using PanelChoice.Study;
 using PanelChoice.Tests.Support;
@@ -197,7 +198,7 @@ public class MomentTests
     [Fact]
     public void Information_whitens_to_the_identity_and_equals_enumeration()
     {
-        var white = Whitening.Of(design, NestedLogitForm.UtilityScaled, theta.AsSpan(), 1)!;
+        var white = Whitening.Of(ResidualKernel.Create(design, NestedLogitForm.UtilityScaled, theta.AsSpan()), 1)!;
         var k = theta.Length;
         for (var r = 0; r < k; r++)
             for (var c = 0; c < k; c++) Close(brute.Information[r, c], white.Information[(r * k) + c], brute.Information[r, r]);
@@ -219,6 +220,32 @@ public class MomentTests
     }
 
     [Fact]
+    public void No_figure_of_many_blocks_depends_on_the_number_of_threads()
+    {
+        var large = SyntheticPanel.Make(
+            6, 150, 20, 5, [SyntheticPanel.Nest("first", "A", "B"), SyntheticPanel.Nest("second", "C", "D")], [0.6, 0.75], habit: 0.6);
+        var many = large.Design();
+        Assert.True(many.Blocks.Length > 8, "too few blocks to divide");
+        var days = CompactNumbers.Of(Enumerable.Range(0, many.Situations).Select(t => (long)(t % 20)));
+        var steps = new OccasionPositions([.. Enumerable.Range(0, many.Situations).Select(t => (long)(t % 20))], [.. new int[many.Situations]], 1, "step");
+        ScoreBattery Compute(int threads) =>
+            ScoreBattery.Compute(many, NestedLogitForm.UtilityScaled, [.. large.Truth], steps, Lags, days, true, threads)!;
+        var one = Compute(1);
+        foreach (var threads in new[] { 2, 3 })
+        {
+            var several = Compute(threads);
+            Assert.Equal(one.Decays.AsEnumerable(), several.Decays);
+            Assert.Equal(one.DecayCovariance.AsEnumerable(), several.DecayCovariance);
+            Assert.Equal(one.Lags.AsEnumerable(), several.Lags);
+            Assert.Equal(one.Alternatives.AsEnumerable(), several.Alternatives);
+            Assert.Equal(one.Nests.AsEnumerable(), several.Nests);
+            Assert.Equal(one.LastPrediction, several.LastPrediction);
+            Assert.Equal(one.InformationTrace, several.InformationTrace);
+            Assert.Equal(one.Date, several.Date);
+        }
+    }
+
+    [Fact]
     public void Under_the_weekly_rule_only_whole_weeks_have_a_distance_but_lasting_taste_takes_every_earlier_occasion()
     {
         var weekday = Enumerable.Range(0, design.Situations).Select(t => t % Occasions % 2).ToImmutableArray();
@@ -234,6 +261,7 @@ public class MomentTests
     private BruteForce Brute(ImmutableArray<double> at)
     {
         var rows = new List<BruteForce.Row>();
+        var model = new ClosedFormRows(NestOf, [.. at]);
         var covariates = made.Covariates.Covariates;
         for (var t = 0; t < design.Situations; t++)
         {
@@ -241,11 +269,11 @@ public class MomentTests
             for (var k = 0; k < covariates.Length; k++)
                 for (var e = 0; e < covariates[k].Enters.Length; e++)
                     x[covariates[k].Enters[e], k] = covariates[k].IsConstant ? 1 : covariates[k].Values[(t * covariates[k].Enters.Length) + e];
-            rows.Add(new BruteForce.Row(
-                t / Occasions, this.at[t], dates[t], [.. made.Panel.Offered.Skip(t * 5).Take(5)], made.Panel.Chosen[t], x));
+            var (p, f, scores) = model.Of(new ClosedFormRows.Row([.. made.Panel.Offered.Skip(t * 5).Take(5)], x));
+            rows.Add(new BruteForce.Row(t / Occasions, this.at[t], dates[t], made.Panel.Chosen[t], p, f, scores));
         }
 
-        return new BruteForce(rows, NestOf, [.. at]);
+        return new BruteForce(rows);
     }
 
     private static bool Earlier(int t, int s) => s < t && t / Occasions == s / Occasions;

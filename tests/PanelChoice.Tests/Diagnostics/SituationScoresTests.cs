@@ -1,6 +1,7 @@
 using PanelChoice.Diagnostics;
 using PanelChoice.Likelihood;
 using PanelChoice.Study;
+using PanelChoice.Tests.Likelihood;
 using PanelChoice.Tests.Support;
 using Xunit;
 
@@ -20,72 +21,63 @@ public class SituationScoresTests
     [Theory]
     [InlineData(NestedLogitForm.UtilityScaled)]
     [InlineData(NestedLogitForm.Unscaled)]
-    public void Residuals_and_scores_have_mean_zero_and_in_the_scaled_form_residuals_sum_to_zero(NestedLogitForm form)
+    public void Residuals_have_mean_zero_and_in_the_scaled_form_sum_to_zero(NestedLogitForm form)
     {
-        var design = made.Design(form);
-        var scores = new SituationScores(design, form, made.Truth, null);
-        var g = new double[scores.J];
-        var s = new double[scores.K];
-        for (var t = 0; t < design.Situations; t++)
+        var situations = new EnumeratedSituations(made.Design(form), form, made.Truth);
+        foreach (var s in situations)
         {
-            scores.Load(t);
-            var meanG = new double[scores.J];
-            var meanS = new double[scores.K];
-            for (var i = 0; i < scores.J; i++)
+            var mean = new double[situations.Size];
+            for (var i = 0; i < s.P.Length; i++)
             {
-                if (scores.Probability[i] == 0) continue;
-                scores.Hypothetical(i, g, s);
-                if (form == NestedLogitForm.UtilityScaled) Assert.InRange(Math.Abs(g.Sum()), 0, Identity);
-                for (var j = 0; j < scores.J; j++) meanG[j] += scores.Probability[i] * g[j];
-                for (var k = 0; k < scores.K; k++) meanS[k] += scores.Probability[i] * s[k];
+                if (s.F[i] is not { } f) continue;
+                if (form == NestedLogitForm.UtilityScaled) Assert.InRange(Math.Abs(f.Take(s.P.Length).Sum()), 0, Identity);
+                for (var r = 0; r < mean.Length; r++) mean[r] += s.P[i] * f[r];
             }
 
-            Assert.Equal(1, scores.Probability.Sum(), Identity);
-            Assert.All(meanG, x => Assert.InRange(Math.Abs(x), 0, Identity));
-            Assert.All(meanS, x => Assert.InRange(Math.Abs(x), 0, Identity));
+            Assert.Equal(1, s.P.Sum(), Identity);
+            Assert.All(mean, x => Assert.InRange(Math.Abs(x), 0, Identity));
         }
     }
 
     [Theory]
-    [InlineData(NestedLogitForm.UtilityScaled)]
-    [InlineData(NestedLogitForm.Unscaled)]
-    public void Observed_scores_equal_those_of_the_likelihood_and_covariances_equal_enumeration(NestedLogitForm form)
+    [MemberData(nameof(Kernels.Table), MemberType = typeof(Kernels))]
+    public void Observed_scores_equal_those_of_the_likelihood_and_covariances_equal_enumeration(string kernel, NestedLogitForm form)
     {
         var design = made.Design(form);
-        var likelihood = new ScalarNestedLogit(design, form, 1);
-        var expected = likelihood.Scores(made.Truth);
-        var scores = new SituationScores(design, form, made.Truth, null);
-        var g = new double[scores.J];
-        var s = new double[scores.K];
-        for (var t = 0; t < design.Situations; t++)
+        var expected = new ScalarNestedLogit(design, form, 1).Scores(made.Truth);
+        var situations = new EnumeratedSituations(design, form, made.Truth).ToList();
+        var seen = 0;
+        ResidualKernel.Create(design, form, made.Truth, kernel).Lend(residuals =>
         {
-            scores.Load(t);
-            for (var k = 0; k < scores.K; k++) Assert.Equal(expected[(t * scores.K) + k], scores.Score[k], Identity);
-
-            var cross = new double[scores.J * scores.K];
-            var omega = new double[scores.J * scores.J];
-            var information = new double[scores.K * scores.K];
-            for (var i = 0; i < scores.J; i++)
-            {
-                if (scores.Probability[i] == 0) continue;
-                scores.Hypothetical(i, g, s);
-                for (var j = 0; j < scores.J; j++)
+            var scores = new SituationScores(residuals, null);
+            var (J, K) = (scores.J, scores.K);
+            var vector = Enumerable.Range(0, scores.Width).Select(k => k < K ? Math.Sin(k + 1) : 0).ToArray();
+            var product = new double[scores.Width];
+            foreach (var block in design.Blocks)
+                scores.ForEach(block, t =>
                 {
-                    for (var k = 0; k < scores.J; k++) omega[(j * scores.J) + k] += scores.Probability[i] * g[j] * g[k];
-                    for (var k = 0; k < scores.K; k++) cross[(j * scores.K) + k] += scores.Probability[i] * g[j] * s[k];
-                }
+                    seen++;
+                    var here = situations[t];
+                    for (var k = 0; k < K; k++) Assert.Equal(expected[(t * K) + k], scores.Score[k], Identity);
+                    for (var j = 0; j < J; j++)
+                    {
+                        Assert.Equal(here.P[j], scores.Probability[j], Identity);
+                        Assert.Equal(here.F[here.Chosen]![j], scores.Residual[j], Identity);
+                        for (var k = 0; k < J; k++) Assert.Equal(Expected(here, i => here.F[i]![j] * here.F[i]![k]), scores.OmegaAt(j, k), Identity);
+                        for (var k = 0; k < K; k++) Assert.Equal(Expected(here, i => here.F[i]![j] * here.S[i]![k]), scores.Cross[(j * scores.Width) + k], Identity);
+                    }
 
-                for (var k = 0; k < scores.K; k++)
-                    for (var q = 0; q < scores.K; q++) information[(k * scores.K) + q] += scores.Probability[i] * s[k] * s[q];
-            }
-
-            var added = new double[scores.K * scores.K];
-            scores.AddInformation(added);
-            for (var c = 0; c < cross.Length; c++) Assert.Equal(cross[c], scores.Cross[c], Identity);
-            for (var c = 0; c < information.Length; c++) Assert.Equal(information[c], added[c], Identity);
-            for (var j = 0; j < scores.J; j++)
-                for (var k = 0; k < scores.J; k++) Assert.Equal(omega[(j * scores.J) + k], scores.OmegaAt(j, k), Identity);
-        }
+                    scores.SetInformation();
+                    var information = PaddedRows.Symmetric(scores.Information, K);
+                    scores.ApplyInformation(vector, product);
+                    for (var k = 0; k < K; k++)
+                    {
+                        for (var q = 0; q < K; q++) Assert.Equal(Expected(here, i => here.S[i]![k] * here.S[i]![q]), information[(k * K) + q], Identity);
+                        Assert.Equal(Enumerable.Range(0, K).Sum(q => information[(k * K) + q] * vector[q]), product[k], Identity);
+                    }
+                });
+        });
+        Assert.Equal(design.Situations, seen);
     }
 
     [Theory]
@@ -134,8 +126,6 @@ public class SituationScoresTests
         var k = design.Layout.Count;
         var information = new double[k * k];
         const double h = 1e-3;
-        var s = new double[k];
-        var g = new double[6];
         double[] Shift(int parameter, double by)
         {
             var x = (double[])made.Truth.Clone();
@@ -147,24 +137,13 @@ public class SituationScoresTests
         {
             var weights = new[] { (h, 8.0), (-h, -8.0), (2 * h, -1.0), (-2 * h, 1.0) };
             foreach (var (by, weight) in weights)
-            {
-                var shifted = new SituationScores(design, form, Shift(q, by), null);
-                var here = new SituationScores(design, form, made.Truth, null);
-                for (var t = 0; t < design.Situations; t++)
-                {
-                    here.Load(t);
-                    shifted.Load(t);
+                foreach (var (here, shifted) in new EnumeratedSituations(design, form, made.Truth).Zip(new EnumeratedSituations(design, form, Shift(q, by))))
                     for (var i = 0; i < 6; i++)
-                    {
-                        if (here.Probability[i] == 0) continue;
-                        shifted.Hypothetical(i, g, s);
-                        for (var r = 0; r < k; r++) information[(r * k) + q] -= here.Probability[i] * weight * s[r] / (12 * h);
-                    }
-                }
-            }
+                        if (here.F[i] is not null)
+                            for (var r = 0; r < k; r++) information[(r * k) + q] -= here.P[i] * weight * shifted.S[i]![r] / (12 * h);
         }
 
-        var white = Whitening.Of(design, form, made.Truth, 1)!;
+        var white = Whitening.Of(ResidualKernel.Create(design, form, made.Truth), 1)!;
         var scale = white.Information.Max(Math.Abs);
         for (var c = 0; c < information.Length; c++) Assert.InRange(Math.Abs(information[c] - white.Information[c]), 0, Difference * scale);
     }
@@ -178,4 +157,7 @@ public class SituationScoresTests
         Assert.Null(Whitening.BasisOf([1, double.NaN, double.NaN, 1], 2));
         Assert.NotNull(Whitening.BasisOf([2, 1, 1, 1], 2));
     }
+
+    private static double Expected(BruteForce.Row situation, Func<int, double> of) =>
+        Enumerable.Range(0, situation.P.Length).Where(i => situation.F[i] is not null).Sum(i => situation.P[i] * of(i));
 }
