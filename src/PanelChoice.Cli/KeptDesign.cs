@@ -8,6 +8,6 @@ internal sealed record KeptDesign(string File, int Megabytes)
     /// <summary>The budget where none is stated.</summary>
     public const int UsualMegabytes = 256;
 
-    /// <summary>Bytes of the design to hold: half of the budget, because the sums over persons and clusters grow with the panel too.</summary>
-    public long BytesHeld => Megabytes * 500_000L;
+    /// <summary>The budget in bytes.</summary>
+    public long Bytes => Megabytes * 1_000_000L;
 }

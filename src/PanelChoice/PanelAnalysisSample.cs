@@ -1,3 +1,4 @@
+using System.Collections.Immutable;
 using PanelChoice.Covariates;
 using PanelChoice.Data;
 using PanelChoice.Design;
@@ -12,6 +13,12 @@ namespace PanelChoice;
 /// <summary>What an estimation starts from: the sample and its design. The table and the panel that it was made from need not be in memory.</summary>
 public sealed class PanelAnalysisSample : IDisposable
 {
+    /// <summary>The design is held up to this share of the memory, because the sums over persons and clusters grow with the panel too.</summary>
+    private const long ShareHeld = 2;
+
+    /// <summary>Memory for sorting: nothing else is in it while rows are sorted, but the process itself must stay within what it will take later.</summary>
+    private const long ShareOfSort = 4, LeastForSort = 8 << 20, MostForSort = 256 << 20;
+
     private readonly Lazy<StaticDesign?> staticDesign;
 
     private readonly DesignStore? store;
@@ -46,7 +53,7 @@ public sealed class PanelAnalysisSample : IDisposable
     {
         ArgumentNullException.ThrowIfNull(study);
         ArgumentNullException.ThrowIfNull(work);
-        return Parts(study, bytesKept, rowsOfPart, mustBeOrdered: false, work, (_, designs) =>
+        return Parts(study, bytesKept, rowsOfPart, null, work, (_, designs) =>
             designs.Main(format => new MemoryBlockStore(format)).Then(made => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
                 made.Sample, made.Design,
                 () => StaticDesign.Of(study, made.Sample, made.Design, terms => designs.Other(terms, f => new MemoryBlockStore(f)).Value), null))));
@@ -58,29 +65,29 @@ public sealed class PanelAnalysisSample : IDisposable
     /// </summary>
     /// <param name="study">The study.</param>
     /// <param name="store">The store's file.</param>
-    /// <param name="bytesHeld">Bytes of the design that may be held in memory.</param>
+    /// <param name="memoryBytes">Bytes of memory that the panel may take.</param>
     /// <param name="work">Progress and cancellation.</param>
     /// <returns>The sample, every problem found with the data, or why the store is not to be used.</returns>
-    /// <exception cref="IOException">The store cannot be written.</exception>
+    /// <exception cref="IOException">The store cannot be written, or there is no room beside it to sort the panel's rows.</exception>
     /// <exception cref="UnauthorizedAccessException">The store may not be written.</exception>
     /// <exception cref="OperationCanceledException">Cancelled.</exception>
-    public static Checked<PanelAnalysisSample> Keep(StudySpecification study, string store, long bytesHeld, WorkContext work) =>
-        Keep(study, store, bytesHeld, TableScan.BytesKept, TableScan.RowsOfPart, work);
+    public static Checked<PanelAnalysisSample> Keep(StudySpecification study, string store, long memoryBytes, WorkContext work) =>
+        Keep(study, store, memoryBytes, TableScan.BytesKept, TableScan.RowsOfPart, work);
 
     /// <summary>The same with the sizes of what is kept and of a part given.</summary>
     internal static Checked<PanelAnalysisSample> Keep(
-        StudySpecification study, string store, long bytesHeld, long bytesKept, int rowsOfPart, WorkContext work)
+        StudySpecification study, string store, long memoryBytes, long bytesKept, int rowsOfPart, WorkContext work)
     {
         ArgumentNullException.ThrowIfNull(study);
         ArgumentException.ThrowIfNullOrEmpty(store);
         ArgumentNullException.ThrowIfNull(work);
         if (!File.Exists(store))
         {
-            var made = Parts(study, bytesKept, rowsOfPart, mustBeOrdered: true, work, (parts, designs) => Make(study, store, parts, designs));
-            if (made.Value is null) return Checked<PanelAnalysisSample>.Bad(made.Problems);
+            var problems = Make(study, store, memoryBytes, bytesKept, rowsOfPart, work);
+            if (!problems.IsEmpty) return Checked<PanelAnalysisSample>.Bad(problems);
         }
 
-        return DesignStore.Open(store, study, bytesHeld).Then(kept => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
+        return DesignStore.Open(store, study, memoryBytes / ShareHeld).Then(kept => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
             kept.Sample, kept.Main, () => kept.Second is null ? null : new StaticDesign(kept.Second, kept.SecondNames), kept)));
     }
 
@@ -88,15 +95,29 @@ public sealed class PanelAnalysisSample : IDisposable
     public void Dispose() => store?.Dispose();
 
     private static Checked<T> Parts<T>(
-        StudySpecification study, long bytesKept, int rowsOfPart, bool mustBeOrdered, WorkContext work, Func<PanelParts, PartedDesigns, Checked<T>> use)
+        StudySpecification study, long bytesKept, int rowsOfPart, RowSort? sort, WorkContext work, Func<PanelParts, PartedDesigns, Checked<T>> use)
         where T : class
     {
         work.Report("reading the data", 0, 1);
-        var made = TableScan.Of(study, bytesKept, mustBeOrdered)
+        var made = TableScan.Of(study, bytesKept, sort)
             .Then(scan => PanelParts.Of(study, scan, rowsOfPart))
             .Then(parts => NestTreeBuilder.Build(study, parts.Outline.Alternatives).Then(tree => use(parts, new PartedDesigns(study, parts, tree, work))));
         work.Report("reading the data", 1, 1);
         return made;
+    }
+
+    private static ImmutableArray<Problem> Make(
+        StudySpecification study, string store, long memoryBytes, long bytesKept, int rowsOfPart, WorkContext work)
+    {
+        using var sort = new RowSort(store, Math.Clamp(memoryBytes / ShareOfSort, LeastForSort, MostForSort), work);
+        try
+        {
+            return Parts(study, bytesKept, rowsOfPart, sort, work, (parts, designs) => Make(study, store, parts, designs)).Problems;
+        }
+        catch (DiskWriteException e)
+        {
+            throw new IOException(e.Message, e);
+        }
     }
 
     /// <summary>Makes a store: the design of the study's terms and that on which the cause of dependence is judged, so that the data are not needed again.</summary>
@@ -104,23 +125,16 @@ public sealed class PanelAnalysisSample : IDisposable
     {
         using var writer = new StoreWriter(store);
         var sections = new List<StoreWriter.Section>();
-        try
+        return designs.Main(Begin).Then(made =>
         {
-            return designs.Main(Begin).Then(made =>
-            {
-                var still = StaticDesign.Of(study, made.Sample, made.Design, terms => designs.Other(terms, Begin).Value);
-                var (sample, design) = (made.Sample, made.Design);
-                writer.Complete(new StoreHeader(
-                    new StoreOrigin(DesignFingerprint.Of(study), parts.Outline.File, parts.Outline.Sha256, parts.Stamp), sample, design.PersonStart,
-                    design.PersonWeight, design.ClusterBy, design.ClusterOf, design.Clusters, [.. design.Blocks.Select(b => b.Situations)],
-                    Stored(design), still is null ? null : Stored(still.Design), still?.Means ?? []));
-                return Checked<DesignedSample>.Good(made);
-            });
-        }
-        catch (StoreWriteException e)
-        {
-            throw new IOException(e.Message, e);
-        }
+            var still = StaticDesign.Of(study, made.Sample, made.Design, terms => designs.Other(terms, Begin).Value);
+            var (sample, design) = (made.Sample, made.Design);
+            writer.Complete(new StoreHeader(
+                new StoreOrigin(DesignFingerprint.Of(study), parts.Outline.File, parts.Outline.Sha256, parts.Stamp), sample, design.PersonStart,
+                design.PersonWeight, design.ClusterBy, design.ClusterOf, design.Clusters, [.. design.Blocks.Select(b => b.Situations)],
+                Stored(design), still is null ? null : Stored(still.Design), still?.Means ?? []));
+            return Checked<DesignedSample>.Good(made);
+        });
 
         StoreWriter.Section Begin(BlockFormat format)
         {

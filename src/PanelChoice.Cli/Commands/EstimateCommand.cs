@@ -24,7 +24,7 @@ internal static class EstimateCommand
                 if (kept is null) return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, work));
                 OutputException.RefuseInput(kept.File, specification);
                 return ProgressDisplay.Run(options, work => PanelAnalysis.Run(
-                    specification, OutputException.Guard(kept.File, () => PanelAnalysisSample.Keep(specification, kept.File, kept.BytesHeld, work)), work));
+                    specification, OutputException.Guard(kept.File, () => PanelAnalysisSample.Keep(specification, kept.File, kept.Bytes, work)), work));
             },
             (_, result) => Tell(result, folder, strict, options));
     }

@@ -55,6 +55,15 @@ internal abstract class CellColumn(string file, string name)
     /// <summary>Drops the first entries; what was wrong with them stays noted.</summary>
     public abstract void Forget(int count);
 
+    /// <summary>Bytes of an entry that <see cref="Store"/> writes.</summary>
+    public abstract int StoredBytes { get; }
+
+    /// <summary>Writes an entry, so that it can be added again with <see cref="Restore"/>.</summary>
+    public abstract void Store(int index, Span<byte> to);
+
+    /// <summary>Adds an entry that <see cref="Store"/> wrote.</summary>
+    public abstract void Restore(ReadOnlySpan<byte> from);
+
     /// <summary>Adds a cell written as text that is not blank.</summary>
     protected abstract void Written(CellPlace at, ReadOnlySpan<byte> utf8);
 

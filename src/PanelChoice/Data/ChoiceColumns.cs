@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using System.Runtime.InteropServices;
 using PanelChoice.Study;
 
 namespace PanelChoice.Data;
@@ -21,6 +22,7 @@ internal sealed class ChoiceColumns
     private readonly List<NumberColumn> numbers = [];
     private readonly List<TextColumn> texts = [];
     private readonly ColumnBuffer<long> sourceRow = new();
+    private readonly CellColumn[] besidesPerson;
 
     /// <summary>The columns of a study's table.</summary>
     /// <param name="study">The study.</param>
@@ -34,13 +36,15 @@ internal sealed class ChoiceColumns
         // The offered column comes first, because it decides which cells of its row may be empty.
         offered = panel.Offered is { } o ? Reading(o, new FlagColumn(panel.File, o, otherwise: true)) : null;
         person = Reading(panel.Person, new TextColumn(panel.File, panel.Person, isKey: true, outline?.Persons ?? []));
-        occasion = panel.Occasion is { } when ? Reading(when, new OccasionColumn(panel.File, when)) : null;
+        occasion = panel.Occasion is { } when ? Reading(when, new OccasionColumn(panel.File, when, outline?.OccasionKind ?? OccasionKind.None)) : null;
         alternative = Reading(panel.Alternative, new TextColumn(panel.File, panel.Alternative, isKey: true, outline?.Alternatives ?? []));
         chosen = Reading(panel.Chosen, new FlagColumn(panel.File, panel.Chosen, otherwise: false));
         weight = panel.Weight is { } w ? Reading(w, new NumberColumn(panel.File, w)) : null;
         foreach (var name in Needed.Numbers) numbers.Add(Reading(name, new NumberColumn(panel.File, name)));
         foreach (var name in Needed.Texts) texts.Add(Reading(name, new TextColumn(panel.File, name, isKey: false, outline?.Texts[name] ?? [])));
         Readings = [.. readings];
+        besidesPerson = [.. readings.Select(r => r.Into).Where(c => c != person)];
+        StoredBytes = sizeof(int) + sizeof(long) + besidesPerson.Sum(c => c.StoredBytes);
 
         T Reading<T>(string source, T into)
             where T : CellColumn
@@ -68,9 +72,6 @@ internal sealed class ChoiceColumns
     /// <summary>Person of each row held, coded in the order in which persons first came up.</summary>
     public ReadOnlySpan<int> PersonCodes => person.Codes;
 
-    /// <summary>Row number of the file of a row held.</summary>
-    public long SourceRow(int index) => sourceRow[index];
-
     /// <summary>Begins a row.</summary>
     public void BeginRow(long row) => sourceRow.Add(row);
 
@@ -91,6 +92,38 @@ internal sealed class ChoiceColumns
     {
         sourceRow.Reserve(more);
         foreach (var reading in Readings) reading.Into.Reserve(more);
+    }
+
+    /// <summary>Bytes of a row that <see cref="Store"/> writes.</summary>
+    public int StoredBytes { get; }
+
+    /// <summary>Writes a row held: the person's code first, by which <see cref="PersonOf"/> tells rows apart.</summary>
+    public void Store(int index, Span<byte> to)
+    {
+        MemoryMarshal.Write(to, person.Codes[index]);
+        MemoryMarshal.Write(to[sizeof(int)..], sourceRow[index]);
+        to = to[(sizeof(int) + sizeof(long))..];
+        foreach (var column in besidesPerson)
+        {
+            column.Store(index, to);
+            to = to[column.StoredBytes..];
+        }
+    }
+
+    /// <summary>Person's code in a row that <see cref="Store"/> wrote.</summary>
+    public static int PersonOf(ReadOnlySpan<byte> row) => MemoryMarshal.Read<int>(row);
+
+    /// <summary>Adds a row that <see cref="Store"/> wrote.</summary>
+    public void Restore(ReadOnlySpan<byte> from)
+    {
+        person.Restore(from);
+        sourceRow.Add(MemoryMarshal.Read<long>(from[sizeof(int)..]));
+        from = from[(sizeof(int) + sizeof(long))..];
+        foreach (var column in besidesPerson)
+        {
+            column.Restore(from);
+            from = from[column.StoredBytes..];
+        }
     }
 
     /// <summary>Drops all rows held; what was wrong with them stays noted.</summary>
@@ -128,7 +161,7 @@ internal sealed class ChoiceColumns
         texts.ToImmutableDictionary(t => t.Name, t => Ordered(t, null), StringComparer.Ordinal));
 
     /// <summary>Names of persons in the order in which they first came up.</summary>
-    public ImmutableArray<string> PersonsAsTheyCame() => person.Values();
+    public ImmutableArray<string> PersonsAsTheyCame() => person.Names();
 
     /// <summary>
     /// Hands over the first rows, which hold whole persons in the panel's order, as a table of these persons alone; other columns keep the codes of the
@@ -138,8 +171,7 @@ internal sealed class ChoiceColumns
     /// <param name="outline">What the first reading found.</param>
     public ChoiceTable? TakePersons(int rows, TableOutline outline)
     {
-        var isOther = person.HasUnknown || alternative.HasUnknown || texts.Exists(t => t.HasUnknown) || (occasion?.Kind ?? OccasionKind.None) != outline.OccasionKind;
-        if (isOther || !AllProblems(outline.Rows).IsEmpty) return null;
+        if (!IsAsIn(outline)) return null;
         var codes = person.Take(rows);
         var (first, last) = (codes[0], codes[^1]);
         return Take(
@@ -149,9 +181,14 @@ internal sealed class ChoiceColumns
             texts.ToImmutableDictionary(t => t.Name, t => new CodedColumn(t.Take(rows), outline.Texts[t.Name]), StringComparer.Ordinal));
     }
 
+    /// <summary>Whether rows read again, so far, show nothing that the first reading did not see.</summary>
+    public bool IsAsIn(TableOutline outline) =>
+        !person.HasUnknown && !alternative.HasUnknown && !texts.Exists(t => t.HasUnknown) && (occasion?.Kind ?? OccasionKind.None) == outline.OccasionKind
+        && AllProblems(outline.Rows).IsEmpty;
+
     private static ImmutableArray<string> Ordered(TextColumn column, Func<ImmutableArray<string>, int[]>? order)
     {
-        var values = column.Values();
+        var values = column.Names();
         return order is null ? values.Sort(StringComparer.Ordinal) : [.. order(values).Select(i => values[i])];
     }
 

@@ -6,6 +6,7 @@ namespace PanelChoice.Data;
 /// <summary>The entries of a column that were read and not handed over yet: they come in at the end and leave at the beginning.</summary>
 /// <typeparam name="T">What an entry is.</typeparam>
 internal sealed class ColumnBuffer<T>
+    where T : unmanaged
 {
     private T[] items = [];
     private int start;

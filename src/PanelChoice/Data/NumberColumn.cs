@@ -1,43 +1,32 @@
-using System.Collections.Immutable;
-
 namespace PanelChoice.Data;
 
 /// <summary>
 /// A column of numbers: attributes, weights, factors. An empty cell (or NaN) is accepted on a row that was not offered and held as NaN;
 /// true and false read as 1 and 0.
 /// </summary>
-internal sealed class NumberColumn(string file, string name) : CellColumn(file, name)
+internal sealed class NumberColumn(string file, string name) : ValueColumn<double>(file, name)
 {
-    private readonly ColumnBuffer<double> values = new();
-
-    /// <summary>Hands over the first entries.</summary>
-    public ImmutableArray<double> Take(int count) => values.Take(count);
-
-    public override void Reserve(int more) => values.Reserve(more);
-
-    public override void Forget(int count) => values.Forget(count);
-
-    public override void Whole(CellPlace at, long value) => values.Add(value);
+    public override void Whole(CellPlace at, long value) => Values.Add(value);
 
     public override void Number(CellPlace at, double value)
     {
         if (!double.IsFinite(value) && (at.IsOffered || double.IsInfinity(value))) RejectNotFinite(at, CellText.Of(value));
-        values.Add(value);
+        Values.Add(value);
     }
 
-    public override void Truth(CellPlace at, bool value) => values.Add(value ? 1 : 0);
+    public override void Truth(CellPlace at, bool value) => Values.Add(value ? 1 : 0);
 
     public override void Moment(CellPlace at, DateTime value)
     {
         RejectNotANumber(at, Shown(value));
-        values.Add(double.NaN);
+        Values.Add(double.NaN);
     }
 
     public override void Empty(CellPlace at)
     {
         if (at.IsOffered)
             RejectEmpty(at, "give the number; a cell may be empty only where the alternative was not offered");
-        values.Add(double.NaN);
+        Values.Add(double.NaN);
     }
 
     protected override void Written(CellPlace at, ReadOnlySpan<byte> utf8)
@@ -59,7 +48,7 @@ internal sealed class NumberColumn(string file, string name) : CellColumn(file, 
                 RejectNotANumber(at, Shown(utf8));
         }
 
-        values.Add(value);
+        Values.Add(value);
     }
 
     private void RejectNotANumber(CellPlace at, string value) =>

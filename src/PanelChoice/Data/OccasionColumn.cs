@@ -1,4 +1,3 @@
-using System.Collections.Immutable;
 using System.Globalization;
 
 namespace PanelChoice.Data;
@@ -7,24 +6,18 @@ namespace PanelChoice.Data;
 /// The column of occasions: whole numbers throughout, or dates throughout. What the first readable cell holds settles which; a later cell of
 /// the other kind is a problem.
 /// </summary>
-internal sealed class OccasionColumn(string file, string name) : CellColumn(file, name)
+/// <param name="file">The data file as the study writes it.</param>
+/// <param name="name">Name of the column.</param>
+/// <param name="known">What the cells hold, when the column is read again; none at the first reading.</param>
+internal sealed class OccasionColumn(string file, string name, OccasionKind known) : ValueColumn<long>(file, name)
 {
     private const string Remedy = "write every occasion as a whole number, or every one as a date like 2031-04-14";
 
     /// <summary>Occasions farther from 0 could lie so far apart that their distance is no whole number of 64 bits.</summary>
     private const long Farthest = 1L << 62;
 
-    private readonly ColumnBuffer<long> values = new();
-
     /// <summary>What the cells hold; none until one could be read.</summary>
-    public OccasionKind Kind { get; private set; }
-
-    /// <summary>Hands over the first entries.</summary>
-    public ImmutableArray<long> Take(int count) => values.Take(count);
-
-    public override void Reserve(int more) => values.Reserve(more);
-
-    public override void Forget(int count) => values.Forget(count);
+    public OccasionKind Kind { get; private set; } = known;
 
     public override void Whole(CellPlace at, long value)
     {
@@ -33,7 +26,7 @@ internal sealed class OccasionColumn(string file, string name) : CellColumn(file
             Reject(
                 "data.occasion_out_of_range", at, value.ToString(CultureInfo.InvariantCulture), "is too large for an occasion",
                 "number the occasions from 1, or write them as dates like 2031-04-14");
-        values.Add(value);
+        Values.Add(value);
     }
 
     public override void Number(CellPlace at, double value)
@@ -54,7 +47,7 @@ internal sealed class OccasionColumn(string file, string name) : CellColumn(file
     public override void Empty(CellPlace at)
     {
         RejectEmpty(at, Remedy);
-        values.Add(0);
+        Values.Add(0);
     }
 
     protected override void Written(CellPlace at, ReadOnlySpan<byte> utf8)
@@ -69,7 +62,7 @@ internal sealed class OccasionColumn(string file, string name) : CellColumn(file
     {
         if (!Fits(OccasionKind.Date))
             RejectMixed(at, value.ToString("yyyy-MM-dd", CultureInfo.InvariantCulture), "is a date where the rows above hold whole numbers");
-        values.Add(value.DayNumber);
+        Values.Add(value.DayNumber);
     }
 
     private bool Fits(OccasionKind kind)
@@ -83,6 +76,6 @@ internal sealed class OccasionColumn(string file, string name) : CellColumn(file
     private void RejectNeither(CellPlace at, string value, string what)
     {
         Reject("data.occasion_not_date_or_whole", at, value, what, Remedy);
-        values.Add(0);
+        Values.Add(0);
     }
 }

@@ -7,7 +7,7 @@ namespace PanelChoice.Data;
 /// <summary>
 /// A data file that was read once from end to end: every cell is checked, and what must be known of the whole is known. Where the rows are few they
 /// were kept; where they are many and each person's rows stand together, in the panel's order of persons, the file is read again in parts of whole
-/// persons, so that no table of it ever is in memory.
+/// persons, so that no table of it ever is in memory. Rows in another order are sorted on the disk first, where there is a place for that.
 /// </summary>
 internal sealed class TableScan
 {
@@ -20,17 +20,21 @@ internal sealed class TableScan
     /// <summary>Rows of a part, unless a person has more: few enough that what is made of them stays far below the memory of the design.</summary>
     public const int RowsOfPart = 16_384;
 
+    private const int RowsForgottenAtOnce = 8_192;
+
     private readonly StudySpecification study;
     private readonly FileStamp stamp;
     private readonly ChoiceTable? kept;
+    private readonly RowSort? sorted;
 
-    private TableScan(StudySpecification study, TableOutline outline, FileStamp stamp, Problem? disorder, ChoiceTable? kept)
+    private TableScan(StudySpecification study, TableOutline outline, FileStamp stamp, bool isInOrder, ChoiceTable? kept, RowSort? sorted)
     {
         this.study = study;
         this.stamp = stamp;
         this.kept = kept;
+        this.sorted = sorted;
         Outline = outline;
-        Disorder = disorder;
+        IsInOrder = isInOrder;
     }
 
     /// <summary>What is known of the file as a whole.</summary>
@@ -39,14 +43,18 @@ internal sealed class TableScan
     /// <summary>Size and time of the file when it was read.</summary>
     public FileStamp Stamp => stamp;
 
-    /// <summary>Why the file cannot be read in parts; null where it can.</summary>
-    public Problem? Disorder { get; }
+    /// <summary>Whether the rows of each person stand together in the file, in the panel's order of persons.</summary>
+    public bool IsInOrder { get; }
 
     /// <summary>Reads a study's file.</summary>
     /// <param name="study">The study.</param>
     /// <param name="bytesKept">Bytes of rows up to which the table is kept.</param>
-    /// <param name="mustBeOrdered">Whether a file whose table is not kept is refused where it is not in order of persons; otherwise its table is held as a whole.</param>
-    public static Checked<TableScan> Of(StudySpecification study, long bytesKept, bool mustBeOrdered)
+    /// <param name="sort">
+    /// Sorts the rows of a file whose table is not kept and which is not in order of persons, and must live as long as the scan is visited; null where its table
+    /// is to be held as a whole then.
+    /// </param>
+    /// <exception cref="DiskWriteException">Rows cannot be sorted on the disk.</exception>
+    public static Checked<TableScan> Of(StudySpecification study, long bytesKept, RowSort? sort)
     {
         var scanned = ChoiceTableReader.Open<TableScan>(study, (file, read) =>
         {
@@ -59,13 +67,12 @@ internal sealed class TableScan
             var wrong = columns.AllProblems(rows.Count);
             if (!wrong.IsEmpty) return Checked<TableScan>.Bad(wrong);
             var outline = columns.Outline(sha256, rows.Count);
-            var disorder = rows.Disorder(study, columns.PersonsAsTheyCame(), outline.Persons);
-            if (disorder is not null && mustBeOrdered && !rows.AreKept) return Checked<TableScan>.Bad([disorder]);
-            return Checked<TableScan>.Good(new TableScan(study, outline, stamp, disorder, rows.AreKept ? columns.Finish(sha256).Value : null));
+            var isInOrder = !rows.AreScattered && columns.PersonsAsTheyCame().SequenceEqual(outline.Persons);
+            return Checked<TableScan>.Good(new TableScan(study, outline, stamp, isInOrder, rows.AreKept ? columns.Finish(sha256).Value : null, null));
         });
-        return scanned.Value is { Disorder: not null, kept: null } scan
-            ? ChoiceTableReader.Read(study).Then(table => Checked<TableScan>.Good(new TableScan(study, scan.Outline, scan.stamp, scan.Disorder, table)))
-            : scanned;
+        return scanned.Value is not { IsInOrder: false, kept: null } scan ? scanned
+            : sort is null ? ChoiceTableReader.Read(study).Then(table => Checked<TableScan>.Good(scan.With(table, null)))
+            : scan.Sort(sort);
     }
 
     /// <summary>
@@ -83,6 +90,19 @@ internal sealed class TableScan
             return [];
         }
 
+        if (sorted is not null)
+        {
+            var columns = new ChoiceColumns(study, Outline);
+            var parts = new PersonsCut(columns, Outline, rowsOfPart, mayEndWith, each);
+            sorted.Visit(row =>
+            {
+                columns.Restore(row);
+                parts.Cut();
+            });
+            parts.CutRest();
+            return parts.IsAsBefore ? [] : Changed().Problems;
+        }
+
         return ChoiceTableReader.Open<TableScan>(study, (_, read) =>
         {
             if (FileStamp.Of(study) != stamp) return Changed();
@@ -95,23 +115,52 @@ internal sealed class TableScan
         }).Problems;
     }
 
+    /// <summary>Reads the file a second time, now that the order of persons is known, and sorts its rows.</summary>
+    private Checked<TableScan> Sort(RowSort sort) => ChoiceTableReader.Open<TableScan>(study, (_, read) =>
+    {
+        if (FileStamp.Of(study) != stamp) return Changed();
+        var columns = new ChoiceColumns(study, Outline);
+        sort.Begin(columns.StoredBytes, Outline.Rows, Outline.File);
+        var rows = 0L;
+        var isAsBefore = true;
+        columns.RowsAdded = () =>
+        {
+            if (columns.Rows >= RowsForgottenAtOnce) HandOver();
+        };
+        read(columns);
+        HandOver();
+        if (!isAsBefore || rows != Outline.Rows || FileStamp.Of(study) != stamp) return Changed();
+        sort.Complete();
+        return Checked<TableScan>.Good(With(null, sort));
+
+        void HandOver()
+        {
+            rows += columns.Rows;
+            isAsBefore = isAsBefore && columns.IsAsIn(Outline);
+            if (isAsBefore) sort.Take(columns);
+            else columns.Forget();
+        }
+    });
+
+    private TableScan With(ChoiceTable? table, RowSort? sort) => new(study, Outline, stamp, IsInOrder, table, sort);
+
     private Checked<TableScan> Changed() => Checked<TableScan>.Bad(
         [new Problem("data.changed", study.Panel.File, "the file changed while it was being read", "start again once nothing writes to it")]);
 
     /// <summary>Looks at rows as they come in: how many there are, and whether persons stand together.</summary>
     private sealed class RowsSeen(ChoiceColumns columns, long bytesKept)
     {
-        private const int RowsForgottenAtOnce = 8_192;
-
-        private readonly List<long> firstRow = [];
         private readonly int mostKept = (int)Math.Min(int.MaxValue / 2, bytesKept / (16 + (8 * columns.Readings.Length)));
-        private (long Row, int Person)? scattered;
+        private int persons;
         private int person = -1;
         private int looked;
 
         public long Count { get; private set; }
 
         public bool AreKept { get; private set; } = true;
+
+        /// <summary>Whether rows of others stand between those of some person.</summary>
+        public bool AreScattered { get; private set; }
 
         public void Take()
         {
@@ -121,8 +170,8 @@ internal sealed class TableScan
                 var code = codes[looked];
                 if (code == person || code < 0) continue;
                 // Codes count persons as they come: a lower one was here before and left.
-                if (code == firstRow.Count) firstRow.Add(columns.SourceRow(looked));
-                else scattered ??= (columns.SourceRow(looked), code);
+                if (code == persons) persons++;
+                else AreScattered = true;
                 person = code;
             }
 
@@ -130,20 +179,6 @@ internal sealed class TableScan
             if (AreKept || looked < RowsForgottenAtOnce) return;
             columns.Forget();
             looked = 0;
-        }
-
-        /// <summary>The first row at which the file is not in the panel's order of persons; null where it is.</summary>
-        public Problem? Disorder(StudySpecification study, ImmutableArray<string> asTheyCame, ImmutableArray<string> inOrder)
-        {
-            var order = NameOrder.AreWholeNumbers(inOrder) ? "by number" : "as text, character by character";
-            Problem At(long row, string who, string what) => new(
-                "data.not_in_order", study.Panel.File, what,
-                $"sort the file's rows by '{study.Panel.Person}', {order}; the order inside a person does not matter") { Row = row, Column = study.Panel.Person, Value = who };
-            if (scattered is { } at) return At(at.Row, asTheyCame[at.Person], "this person's rows began further up, and rows of others stand between");
-            for (var p = 0; p < inOrder.Length; p++)
-                if (asTheyCame[p] != inOrder[p])
-                    return At(firstRow[p], asTheyCame[p], $"this person comes before '{inOrder[p]}', who belongs here");
-            return null;
         }
     }
 

@@ -14,26 +14,25 @@ namespace PanelChoice.Data;
 /// <param name="name">Name of the column.</param>
 /// <param name="isKey">Whether every row needs a value; otherwise a cell may be empty where the alternative was not offered.</param>
 /// <param name="known">Values whose codes are given, code by code, when the column is read again; none at the first reading.</param>
-internal sealed class TextColumn(string file, string name, bool isKey, ImmutableArray<string> known) : CellColumn(file, name)
+internal sealed class TextColumn(string file, string name, bool isKey, ImmutableArray<string> known) : ValueColumn<int>(file, name)
 {
     /// <summary>A longer value is no name; it is free text, or a quote that closed far too late.</summary>
     private const int Longest = 200;
 
-    private readonly ColumnBuffer<int> codes = new();
     private readonly Dictionary<string, int> codeOf = Numbered(known);
     private byte[] lastText = [];
     private int lastLength = -1;
     private int lastCode;
 
     /// <summary>Codes of the entries, in the order in which their values first came up.</summary>
-    public ReadOnlySpan<int> Codes => codes.Span;
+    public ReadOnlySpan<int> Codes => Values.Span;
 
-    /// <summary>The values that came up, code by code.</summary>
-    public ImmutableArray<string> Values()
+    /// <summary>The names that came up, code by code.</summary>
+    public ImmutableArray<string> Names()
     {
-        var values = new string[codeOf.Count];
-        foreach (var (value, code) in codeOf) values[code] = value;
-        return ImmutableCollectionsMarshal.AsImmutableArray(values);
+        var names = new string[codeOf.Count];
+        foreach (var (value, code) in codeOf) names[code] = value;
+        return ImmutableCollectionsMarshal.AsImmutableArray(names);
     }
 
     /// <summary>Whether a value came up that is not among the known ones.</summary>
@@ -46,40 +45,33 @@ internal sealed class TextColumn(string file, string name, bool isKey, Immutable
         Array.Sort(levels, StringComparer.Ordinal);
         var rank = new int[levels.Length];
         for (var i = 0; i < levels.Length; i++) rank[codeOf[levels[i]]] = i;
-        for (var i = 0; i < codes.Count; i++) if (codes[i] >= 0) codes[i] = rank[codes[i]];
-        return new CodedColumn(codes.Take(codes.Count), ImmutableCollectionsMarshal.AsImmutableArray(levels));
+        for (var i = 0; i < Values.Count; i++) if (Values[i] >= 0) Values[i] = rank[Values[i]];
+        return new CodedColumn(Values.Take(Values.Count), ImmutableCollectionsMarshal.AsImmutableArray(levels));
     }
-
-    /// <summary>Hands over the codes of the first entries.</summary>
-    public ImmutableArray<int> Take(int count) => codes.Take(count);
-
-    public override void Reserve(int more) => codes.Reserve(more);
-
-    public override void Forget(int count) => codes.Forget(count);
 
     public override void Whole(CellPlace at, long value)
     {
         Span<char> text = stackalloc char[20];
         value.TryFormat(text, out var length, provider: CultureInfo.InvariantCulture);
-        codes.Add(CodeOf(text[..length]));
+        Values.Add(CodeOf(text[..length]));
     }
 
     public override void Number(CellPlace at, double value)
     {
         if (double.IsNaN(value)) Empty(at);
         else if (CellText.IsWhole(value, out var whole)) Whole(at, whole);
-        else codes.Add(CodeOf(CellText.Of(value)));
+        else Values.Add(CodeOf(CellText.Of(value)));
     }
 
-    public override void Truth(CellPlace at, bool value) => codes.Add(CodeOf(value ? "true" : "false"));
+    public override void Truth(CellPlace at, bool value) => Values.Add(CodeOf(value ? "true" : "false"));
 
-    public override void Moment(CellPlace at, DateTime value) => codes.Add(CodeOf(Shown(value)));
+    public override void Moment(CellPlace at, DateTime value) => Values.Add(CodeOf(Shown(value)));
 
     public override void Empty(CellPlace at)
     {
         if (isKey) RejectEmpty(at, "every row needs a value here");
         else if (at.IsOffered) RejectEmpty(at, "give the value; a cell may be empty only where the alternative was not offered");
-        codes.Add(CodedColumn.NoValue);
+        Values.Add(CodedColumn.NoValue);
     }
 
     protected override void Written(CellPlace at, ReadOnlySpan<byte> utf8)
@@ -87,7 +79,7 @@ internal sealed class TextColumn(string file, string name, bool isKey, Immutable
         // Long panels repeat a person's id row after row: comparing with the cell above is much cheaper than a look-up.
         if (lastLength == utf8.Length && utf8.SequenceEqual(lastText.AsSpan(0, lastLength)))
         {
-            codes.Add(lastCode);
+            Values.Add(lastCode);
             return;
         }
 
@@ -113,7 +105,7 @@ internal sealed class TextColumn(string file, string name, bool isKey, Immutable
             lastCode = code;
         }
 
-        codes.Add(code);
+        Values.Add(code);
     }
 
     private static Dictionary<string, int> Numbered(ImmutableArray<string> values)

@@ -25,12 +25,12 @@ public sealed class DesignStoreTests : IDisposable
 
     [Theory]
     [InlineData(0)]
-    [InlineData(3_000)]
+    [InlineData(6_000)]
     [InlineData(1 << 30)]
-    public void A_store_gives_the_bits_of_memory_however_much_of_it_is_held(long bytesHeld)
+    public void A_store_gives_the_bits_of_memory_however_much_memory_it_may_take(long memoryBytes)
     {
         using var memory = Good(PanelAnalysisSample.Read(study, WorkContext.Quiet));
-        using var kept = Good(PanelAnalysisSample.Keep(study, store, bytesHeld, 0, 100, WorkContext.Quiet));
+        using var kept = Good(PanelAnalysisSample.Keep(study, store, memoryBytes, 0, 100, WorkContext.Quiet));
         Same(memory.Sample, kept.Sample);
         Same(memory.Design, kept.Design);
         Same(memory.Static()!.Design, kept.Static()!.Design);

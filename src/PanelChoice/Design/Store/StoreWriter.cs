@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using PanelChoice.Data;
 using PanelChoice.Numerics;
 
 namespace PanelChoice.Design.Store;
@@ -113,7 +114,7 @@ internal sealed class StoreWriter : IDisposable
             }
             catch (IOException e)
             {
-                throw new StoreWriteException(e);
+                throw new DiskWriteException(e);
             }
 
             block.Clear();
@@ -121,6 +122,3 @@ internal sealed class StoreWriter : IDisposable
         }
     }
 }
-
-/// <summary>A block could not be written; told apart from what goes wrong with the data file, which is being read at the same time.</summary>
-internal sealed class StoreWriteException(IOException cause) : Exception(cause.Message, cause);
