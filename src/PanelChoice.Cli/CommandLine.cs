@@ -128,26 +128,9 @@ internal static class CommandLine
         var study = Study();
         var output = Path("--out", "Write result.json, coefficients.csv and replicates.parquet to this folder.", "DIR");
         var strict = Strict();
-        var store = Path("--store", "Keep the built design in this file, or take it from there, and read it as it is needed: for panels larger than memory.", "FILE");
-        var memory = new Option<int?>("--memory")
-        {
-            Description = $"With --store: megabytes that the panel may take in memory (default {KeptDesign.UsualMegabytes}).", HelpName = "MB",
-            CustomParser = result =>
-            {
-                var text = result.Tokens[0].Value;
-                if (int.TryParse(text, System.Globalization.NumberStyles.None, System.Globalization.CultureInfo.InvariantCulture, out var n) && n >= 1) return n;
-                result.AddError($"--memory needs a whole number of megabytes, not '{text}'.");
-                return null;
-            },
-        };
-        var command = new Command("estimate", "The main job: fit, standard errors side by side, diagnostics, verdict.") { study, output, strict, store, memory };
-        command.Validators.Add(result =>
-        {
-            if (result.GetResult(memory) is not null && result.GetResult(store) is null) result.AddError("--memory says how much of a store is held in memory, so it needs --store.");
-        });
-        command.SetAction(r => EstimateCommand.Run(
-            r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict),
-            r.GetValue(store) is { } file ? new KeptDesign(file, r.GetValue(memory) ?? KeptDesign.UsualMegabytes) : null, options(r)));
+        var command = new Command("estimate", "The main job: fit, standard errors side by side, diagnostics, verdict.") { study, output, strict };
+        var store = new StoreOptions(command, Path);
+        command.SetAction(r => EstimateCommand.Run(r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict), store.Of(r), options(r)));
         return command;
     }
 
@@ -167,7 +150,9 @@ internal static class CommandLine
         var output = Path("--out", "Folder of the parts; all parts of an analysis go into one.", "DIR");
         output.Required = true;
         var command = new Command("bootstrap", "Makes one part of the bootstrap's and the jackknife's refits, for 'gather' to join.") { study, part, output };
-        command.SetAction(r => BootstrapCommand.Run(r.GetRequiredValue(study), r.GetRequiredValue(part), r.GetRequiredValue(output), options(r)));
+        var store = new StoreOptions(command, Path);
+        command.SetAction(r => BootstrapCommand.Run(
+            r.GetRequiredValue(study), r.GetRequiredValue(part), r.GetRequiredValue(output), store.Of(r), options(r)));
         return command;
     }
 
@@ -179,8 +164,9 @@ internal static class CommandLine
         var output = Path("--out", "Write result.json, coefficients.csv and replicates.parquet here and not to the folder of the parts.", "DIR");
         var strict = Strict();
         var command = new Command("gather", "Joins the parts that 'bootstrap' made and ends as 'estimate' does, bit for bit.") { folder, study, output, strict };
+        var store = new StoreOptions(command, Path);
         command.SetAction(r => GatherCommand.Run(
-            r.GetRequiredValue(folder), r.GetValue(study), r.GetValue(output), r.GetValue(strict), options(r)));
+            r.GetRequiredValue(folder), r.GetValue(study), r.GetValue(output), r.GetValue(strict), store.Of(r), options(r)));
         return command;
     }
 

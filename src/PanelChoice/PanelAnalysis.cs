@@ -27,14 +27,14 @@ public static class PanelAnalysis
     /// <param name="study">The study.</param>
     /// <param name="read">The sample, or the problems that kept it from being made.</param>
     /// <param name="work">Threads, progress, cancellation; no figure depends on them.</param>
-    /// <returns>The result, or the problems.</returns>
+    /// <returns>The result, or the problems; <c>store.unreadable</c> where the sample's store cannot be read to the end.</returns>
     /// <exception cref="OperationCanceledException">Cancelled.</exception>
     public static Checked<AnalysisResult> Run(StudySpecification study, Checked<PanelAnalysisSample> read, WorkContext work)
     {
         ArgumentNullException.ThrowIfNull(read);
         return read.Then(sample =>
         {
-            using (sample) return Checked<AnalysisResult>.Good(Conclude(Fit(study, sample, work), work));
+            using (sample) return sample.WhileReadable(() => Checked<AnalysisResult>.Good(Conclude(Fit(study, sample, work), work)));
         });
     }
 

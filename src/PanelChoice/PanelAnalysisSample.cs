@@ -91,6 +91,10 @@ public sealed class PanelAnalysisSample : IDisposable
             kept.Sample, kept.Main, () => kept.Second is null ? null : new StaticDesign(kept.Second, kept.SecondNames), kept)));
     }
 
+    /// <summary>Runs something that reads the design, and turns a store that cannot be read any more into a problem.</summary>
+    internal Checked<T> WhileReadable<T>(Func<Checked<T>> use)
+        where T : class => StoreReadException.Guard(store?.File, use);
+
     /// <summary>Lets go of the store's file, where there is one.</summary>
     public void Dispose() => store?.Dispose();
 
@@ -112,7 +116,8 @@ public sealed class PanelAnalysisSample : IDisposable
         using var sort = new RowSort(store, Math.Clamp(memoryBytes / ShareOfSort, LeastForSort, MostForSort), work);
         try
         {
-            return Parts(study, bytesKept, rowsOfPart, sort, work, (parts, designs) => Make(study, store, parts, designs)).Problems;
+            return StoreReadException.Guard(
+                store, () => Parts(study, bytesKept, rowsOfPart, sort, work, (parts, designs) => Make(study, store, parts, designs))).Problems;
         }
         catch (DiskWriteException e)
         {

@@ -11,7 +11,9 @@ namespace PanelChoice.Benchmarks;
 /// Writes a case as an analyst would hold it: a long table of trips and a study file that makes the case's covariates from it. Past choices
 /// are not in the table; the study asks for them.
 /// </summary>
-internal sealed class CommuteFiles(CommuteCase made)
+/// <param name="made">The case.</param>
+/// <param name="isByOccasion">Whether rows stand day by day, all persons of a day together; otherwise person by person.</param>
+internal sealed class CommuteFiles(CommuteCase made, bool isByOccasion = false)
 {
     private const int RowsOfGroup = 1 << 18;
 
@@ -36,8 +38,9 @@ internal sealed class CommuteFiles(CommuteCase made)
         using var file = new StreamWriter(path, append: false, new UTF8Encoding(false), 1 << 16) { NewLine = "\n" };
         file.WriteLine($"person,occasion,mode,offered,taken,{string.Join(',', attributes.Select(a => a.Name))}");
         var line = new StringBuilder();
-        for (var row = 0; row < Rows; row++)
+        for (var at = 0; at < Rows; at++)
         {
+            var row = RowAt(at);
             line.Clear().Append(CultureInfo.InvariantCulture, $"{Person(row)},{Occasion(row)},{Modes[row % J]},{(IsOffered(row) ? 1 : 0)},{(IsTaken(row) ? 1 : 0)}");
             foreach (var (_, from) in attributes) line.Append(CultureInfo.InvariantCulture, $",{Value(from, row)}");
             file.WriteLine(line);
@@ -97,6 +100,14 @@ internal sealed class CommuteFiles(CommuteCase made)
 
     private static string ColumnOf(string term) => term.Replace(' ', '_');
 
+    /// <summary>Row of the case that stands at a place of the table.</summary>
+    private int RowAt(int place)
+    {
+        if (!isByOccasion) return place;
+        var (situation, alternative) = (place / J, place % J);
+        return ((((situation % made.Shape.Persons) * made.Shape.Occasions) + (situation / made.Shape.Persons)) * J) + alternative;
+    }
+
     private int Person(int row) => (row / (J * made.Shape.Occasions)) + 1;
 
     private int Occasion(int row) => (row / J % made.Shape.Occasions) + 1;
@@ -125,7 +136,7 @@ internal sealed class CommuteFiles(CommuteCase made)
                 for (var first = 0; first < Rows; first += RowsOfGroup)
                 {
                     var start = first;
-                    T[] Cells<T>(Func<int, T> value) => [.. Enumerable.Range(start, Math.Min(RowsOfGroup, Rows - start)).Select(value)];
+                    T[] Cells<T>(Func<int, T> value) => [.. Enumerable.Range(start, Math.Min(RowsOfGroup, Rows - start)).Select(at => value(RowAt(at)))];
                     using var group = writer.CreateRowGroup();
                     await group.WriteAsync<int>(keys[0], Cells(Person)).ConfigureAwait(false);
                     await group.WriteAsync<int>(keys[1], Cells(Occasion)).ConfigureAwait(false);

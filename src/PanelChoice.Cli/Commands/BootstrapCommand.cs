@@ -12,8 +12,9 @@ internal static class BootstrapCommand
     /// <param name="study">The study file.</param>
     /// <param name="share">Which part.</param>
     /// <param name="folder">Folder of the parts.</param>
+    /// <param name="kept">The store that the design is kept in; null for memory.</param>
     /// <param name="options">What every command takes.</param>
-    public static int Run(string study, RefitShare share, string folder, RunOptions options)
+    public static int Run(string study, RefitShare share, string folder, KeptDesign? kept, RunOptions options)
     {
         if (!KernelChoice.IsToBeHad(options)) return ExitCode.Usage;
         try
@@ -24,8 +25,9 @@ internal static class BootstrapCommand
                 {
                     OutputException.Guard(folder, () => ResultFiles.Probe(folder));
                     foreach (var name in GatheredParts.NamesOf(share)) OutputException.RefuseInput(Path.Combine(folder, name), specification);
-                    return OutputException.Guard(
-                        folder, () => ProgressDisplay.Run(options, work => PanelAnalysisParts.Make(specification, share, folder, work)));
+                    KeptDesign.RefuseInput(kept, specification);
+                    return OutputException.Guard(folder, () => ProgressDisplay.Run(
+                        options, work => PanelAnalysisParts.Make(specification, share, folder, () => KeptDesign.Read(kept, specification, work), work)));
                 },
                 (specification, part) =>
                 {

@@ -21,10 +21,8 @@ internal static class EstimateCommand
             specification =>
             {
                 if (folder is not null) Probe(folder, specification);
-                if (kept is null) return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, work));
-                OutputException.RefuseInput(kept.File, specification);
-                return ProgressDisplay.Run(options, work => PanelAnalysis.Run(
-                    specification, OutputException.Guard(kept.File, () => PanelAnalysisSample.Keep(specification, kept.File, kept.Bytes, work)), work));
+                KeptDesign.RefuseInput(kept, specification);
+                return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, KeptDesign.Read(kept, specification, work), work));
             },
             (_, result) => Tell(result, folder, strict, options));
     }

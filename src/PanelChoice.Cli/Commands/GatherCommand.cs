@@ -11,8 +11,9 @@ internal static class GatherCommand
     /// <param name="study">The study file; null for the one the parts name.</param>
     /// <param name="output">Folder for the result's files; null for the folder of the parts.</param>
     /// <param name="strict">Whether a flagged dependence ends with its own code.</param>
+    /// <param name="kept">The store that the design is kept in; null for memory.</param>
     /// <param name="options">What every command takes.</param>
-    public static int Run(string folder, string? study, string? output, bool strict, RunOptions options)
+    public static int Run(string folder, string? study, string? output, bool strict, KeptDesign? kept, RunOptions options)
     {
         if (!KernelChoice.IsToBeHad(options)) return ExitCode.Usage;
         var read = GatheredParts.Read(folder);
@@ -26,7 +27,9 @@ internal static class GatherCommand
             specification =>
             {
                 EstimateCommand.Probe(output, specification);
-                return ProgressDisplay.Run(options, work => PanelAnalysisParts.Conclude(specification, parts, work));
+                KeptDesign.RefuseInput(kept, specification);
+                return ProgressDisplay.Run(
+                    options, work => PanelAnalysisParts.Conclude(specification, parts, () => KeptDesign.Read(kept, specification, work), work));
             },
             (_, result) => EstimateCommand.Tell(result, output, strict, options));
     }

@@ -252,4 +252,13 @@ internal readonly record struct FileStamp(long Bytes, long Written)
         var info = new FileInfo(study.Panel.FullPath);
         return new FileStamp(info.Length, info.LastWriteTimeUtc.Ticks);
     }
+
+    /// <summary>Lower-case hexadecimal SHA-256 of the bytes of a study's data file; null where there is no such file.</summary>
+    /// <exception cref="IOException">It cannot be read.</exception>
+    public static string? Sha256Of(StudySpecification study)
+    {
+        if (!File.Exists(study.Panel.FullPath)) return null;
+        using var data = File.OpenRead(study.Panel.FullPath);
+        return Convert.ToHexStringLower(SHA256.HashData(data));
+    }
 }

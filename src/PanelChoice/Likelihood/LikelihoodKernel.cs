@@ -17,6 +17,10 @@ public static class LikelihoodKernel
     public static IChoiceLikelihood Create(ChoiceDesign design, NestedLogitForm form, int threads) =>
         Create(design, form, threads, Environment.GetEnvironmentVariable(Variable));
 
+    /// <summary>Name of the kernel that this process uses, as <see cref="IChoiceLikelihood.Kernel"/> gives it.</summary>
+    internal static string NameHere =>
+        Environment.GetEnvironmentVariable(Variable) == ScalarNestedLogit.Name ? ScalarNestedLogit.Name : VectorNestedLogit.Name;
+
     /// <summary>Why a value of <see cref="Variable"/> cannot be had, and what to do, as the rest of a sentence; null where it can, or leaves the choice open.</summary>
     /// <param name="kernel">The value; null or empty leaves the choice open.</param>
     public static string? Refusal(string? kernel) => Refusal(kernel, VectorNestedLogit.Name);
@@ -35,6 +39,6 @@ public static class LikelihoodKernel
     internal static IChoiceLikelihood Create(ChoiceDesign design, NestedLogitForm form, int threads, string? kernel)
     {
         if (Refusal(kernel) is { } refusal) throw new ArgumentException($"The environment variable {Variable} is '{kernel}', {refusal}.", nameof(kernel));
-        return kernel == "scalar" ? new ScalarNestedLogit(design, form, threads) : new VectorNestedLogit(design, form, threads);
+        return kernel == ScalarNestedLogit.Name ? new ScalarNestedLogit(design, form, threads) : new VectorNestedLogit(design, form, threads);
     }
 }

@@ -24,6 +24,9 @@ namespace PanelChoice.Likelihood;
 /// </summary>
 internal sealed class ScalarNestedLogit : IChoiceLikelihood
 {
+    /// <summary>Name of this kernel.</summary>
+    internal const string Name = "scalar";
+
     private readonly NestedLogitForm form;
     private readonly int threads;
 
@@ -40,7 +43,7 @@ internal sealed class ScalarNestedLogit : IChoiceLikelihood
 
     public ChoiceDesign Design { get; }
 
-    public string Kernel => "scalar";
+    public string Kernel => Name;
 
     private int K => Design.Layout.Count;
 

@@ -126,6 +126,44 @@ public class PartsTests
         Assert.Equal(bytes, File.ReadAllBytes(file));
     }
 
+    [Fact]
+    public void Parts_made_and_gathered_with_a_store_have_the_bytes_of_those_without()
+    {
+        using var study = new SmallStudy();
+        Make(study, 2);
+        string[] store = ["--store", study.PathOf("kept.store"), "--memory", "1"];
+        foreach (var part in new[] { "1/2", "2/2" })
+        {
+            var made = CommandLineProcess.InProcess(["bootstrap", study.StudyFile, "--part", part, "--out", study.PathOf("kept"), .. store]);
+            Assert.Equal((0, ""), (made.Code, made.Error));
+        }
+
+        foreach (var name in Names(study.PathOf("parts")))
+            Assert.Equal(File.ReadAllBytes(Path.Combine(study.PathOf("parts"), name)), File.ReadAllBytes(Path.Combine(study.PathOf("kept"), name)));
+        Assert.Equal(0, CommandLineProcess.InProcess("gather", study.PathOf("parts"), "--quiet").Code);
+        Assert.Equal((0, ""), CommandLineProcess.InProcess(["gather", study.PathOf("kept"), "--quiet", .. store]) is var o ? (o.Code, o.Error) : default);
+        AssertSameResults(study.PathOf("parts"), study.PathOf("kept"));
+        Assert.Equal(64, CommandLineProcess.InProcess("gather", study.PathOf("parts"), "--memory", "5").Code);
+    }
+
+    [Fact]
+    public void A_complete_part_is_recognised_without_reading_a_cell_of_the_data()
+    {
+        using var study = new SmallStudy();
+        Make(study, 1);
+        // A store of something else would be refused as soon as anybody opened it.
+        File.WriteAllText(study.PathOf("kept.store"), "no store");
+        string[] again = ["bootstrap", study.StudyFile, "--part", "1/1", "--out", study.PathOf("parts"), "--store", study.PathOf("kept.store")];
+        var known = CommandLineProcess.InProcess(again);
+        Assert.Equal((0, ""), (known.Code, known.Error));
+        Assert.Contains("It was complete already", known.Out, StringComparison.Ordinal);
+
+        // Other data, another seed: what is there is not what is asked for, and the long way finds it out.
+        File.AppendAllText(study.DataFile, "\n");
+        Assert.Equal(65, CommandLineProcess.InProcess(again).Code);
+        Assert.Contains("differs in the data file", Bootstrap(study, "1/1").Error, StringComparison.Ordinal);
+    }
+
     [Theory]
     [InlineData("part-2-of-2.refits", "hello, world, this is a letter\n", "it is not a file of refits; move it away")]
     [InlineData("part-2-of-2.unfinished", "hello, world, this is a letter\n", "it is not a file of refits; move it away")]

@@ -44,6 +44,50 @@ public class StoreTests
     }
 
     [Fact]
+    public void Rows_in_any_order_give_the_bytes_of_memory_and_leave_nothing_but_the_store()
+    {
+        // So many rows that they are not kept: each has a number without meaning besides.
+        using var study = new SmallStudy(
+            text => text.Replace("replicates = 19", "replicates = 0", StringComparison.Ordinal).Replace("\"refit\"", "\"off\"", StringComparison.Ordinal)
+                .Replace("starts = 2", "starts = 1", StringComparison.Ordinal).Replace("draws = 499", "draws = 99", StringComparison.Ordinal),
+            data => Scattered(data, copies: 130));
+        string[] common = ["estimate", study.StudyFile, "--out"];
+        Assert.Equal(0, CommandLineProcess.InProcess([.. common, study.PathOf("memory")]).Code);
+        var kept = CommandLineProcess.InProcess([.. common, study.PathOf("kept"), "--store", study.PathOf("kept.store"), "--memory", "1"]);
+        Assert.Equal((0, ""), (kept.Code, kept.Error));
+        Assert.Equal(File.ReadAllBytes(Path.Combine(study.PathOf("memory"), "result.json")), File.ReadAllBytes(Path.Combine(study.PathOf("kept"), "result.json")));
+        Assert.Equal(["kept", "kept.store", "memory"], study.OtherFiles());
+    }
+
+    [Fact]
+    public async Task A_store_that_is_cut_off_while_it_is_read_is_one_sentence_and_what_was_done_is_kept()
+    {
+        if (OperatingSystem.IsWindows()) return; // There a file in use cannot be cut off.
+        using var study = new SmallStudy(_ => Study().Replace("replicates = 0", "replicates = 120", StringComparison.Ordinal), _ => Data(persons: 40));
+        string[] common = ["bootstrap", "study.toml", "--part", "1/1", "--out", "parts", "--store", "kept.store", "--memory", "1", "--threads", "1"];
+        var part = study.PathOf("parts/part-1-of-1.unfinished");
+        using (var process = CommandLineProcess.Start(study.Folder, new Dictionary<string, string>(), common))
+        {
+            var error = process.StandardError.ReadToEndAsync();
+            var output = process.StandardOutput.ReadToEndAsync();
+            // With its first refits on the disk the run is in the midst of reading the store.
+            while (!process.WaitForExit(2) && !(File.Exists(part) && new FileInfo(part).Length > 3_000)) { }
+            using (var cut = new FileStream(study.PathOf("kept.store"), FileMode.Open, FileAccess.Write, FileShare.ReadWrite | FileShare.Delete)) cut.SetLength(1_000);
+            await process.WaitForExitAsync();
+            Assert.Equal((65, ""), (process.ExitCode, await output));
+            Assert.Equal(
+                "panelchoice: kept.store: the store cannot be read any more (the file ends before it should), so the run was given up and no result written; "
+                + "check the disk and what else writes to the file, delete the store, and run the same command again.\n", await error);
+        }
+
+        Assert.Equal(["part-1-of-1.unfinished"], Directory.GetFiles(study.PathOf("parts")).Select(f => Path.GetFileName(f)));
+        File.Delete(study.PathOf("kept.store"));
+        var again = CommandLineProcess.Run(study.Folder, common);
+        Assert.Equal((0, ""), (again.Code, again.Error));
+        Assert.Contains("of these refits were there from an earlier run", string.Join(' ', again.Out.Split((char[]?)null, StringSplitOptions.RemoveEmptyEntries)), StringComparison.Ordinal);
+    }
+
+    [Fact]
     public void What_cannot_be_meant_is_told_before_anything_is_read()
     {
         using var study = new SmallStudy();
@@ -60,7 +104,7 @@ public class StoreTests
         // Peak resident memory is the system's own record of a process, which only Linux shows in a file.
         if (!OperatingSystem.IsLinux()) return;
         const int Budget = 12;
-        using var study = new SmallStudy(_ => Study(), _ => Data());
+        using var study = new SmallStudy(_ => Study(), _ => Data(persons: 750));
         var memory = Peak("memory");
         var kept = Peak("kept", "--store", "kept.store", "--memory", $"{Budget}");
         Assert.Equal(File.ReadAllBytes(Path.Combine(study.PathOf("memory"), "result.json")), File.ReadAllBytes(Path.Combine(study.PathOf("kept"), "result.json")));
@@ -81,6 +125,15 @@ public class StoreTests
             Assert.Equal((0, ""), (process.ExitCode, error.Result));
             return peak;
         }
+    }
+
+    /// <summary>The persons several times under other names, and all rows in an order of no meaning.</summary>
+    private static string Scattered(string data, int copies)
+    {
+        var lines = data.TrimEnd().Split('\n');
+        var random = new CounterRandom(3, "order", 0);
+        var rows = Enumerable.Range(1, copies).SelectMany(copy => lines.Skip(1).Select(line => $"{copy}0{line}"));
+        return lines[0] + "\n" + string.Join('\n', rows.OrderBy(_ => random.Next(1 << 30))) + "\n";
     }
 
     private static long HighWater(int process)
@@ -128,11 +181,11 @@ public class StoreTests
     }
 
     /// <summary>Columns with all digits of a double, which no whole number can stand for.</summary>
-    private static string Data()
+    private static string Data(int persons)
     {
         var random = new CounterRandom(3, "many occasions", 0);
         var text = new StringBuilder("who,day,mode,taken,a,b\n");
-        for (var person = 1; person <= 750; person++)
+        for (var person = 1; person <= persons; person++)
             for (var day = 0; day < 200; day++)
             {
                 var chosen = random.Next(2);

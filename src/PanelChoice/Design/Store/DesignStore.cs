@@ -14,14 +14,18 @@ internal sealed class DesignStore : IDisposable
 {
     private readonly SafeFileHandle file;
 
-    private DesignStore(SafeFileHandle file, EstimationSample sample, ChoiceDesign main, ChoiceDesign? second, ImmutableArray<string> secondNames)
+    private DesignStore(SafeFileHandle file, string path, EstimationSample sample, ChoiceDesign main, ChoiceDesign? second, ImmutableArray<string> secondNames)
     {
         this.file = file;
+        File = path;
         Sample = sample;
         Main = main;
         Second = second;
         SecondNames = secondNames;
     }
+
+    /// <summary>The store's file, as it was named.</summary>
+    public string File { get; }
 
     /// <summary>The sample.</summary>
     public EstimationSample Sample { get; }
@@ -51,7 +55,7 @@ internal sealed class DesignStore : IDisposable
         var file = (SafeFileHandle?)null;
         try
         {
-            file = File.OpenHandle(path, FileMode.Open, FileAccess.Read, FileShare.Read | FileShare.Delete);
+            file = System.IO.File.OpenHandle(path, FileMode.Open, FileAccess.Read, FileShare.Read | FileShare.Delete);
             var opened = Open(file, path, study, bytesHeld);
             if (opened.Value is not null) file = null;
             return opened;
@@ -88,7 +92,7 @@ internal sealed class DesignStore : IDisposable
             return Refuse(
                 path, "store.other_study", "the store was made for a study with another panel, history rule, nests, terms, form or cluster than this one has now",
                 "delete it, or name another file for this study");
-        if (!File.Exists(study.Panel.FullPath))
+        if (!System.IO.File.Exists(study.Panel.FullPath))
             return Checked<DesignStore>.Bad([new Problem("data.not_found", study.Panel.File, "there is no such file", $"check [panel] file; it was looked for at {study.Panel.FullPath}")]);
         if (!header.Origin.IsOf(study))
             return Refuse(path, "store.other_data", $"the data file {study.Panel.File} is not what it was when the store was made", Again);
@@ -100,12 +104,12 @@ internal sealed class DesignStore : IDisposable
         var second = header.Second is null ? null : DesignOf(file, header, header.Second, nests, blocks, 0);
         return header.Second is not null && second is null
             ? damaged()
-            : Checked<DesignStore>.Good(new DesignStore(file, header.Sample, main, second, header.SecondNames));
+            : Checked<DesignStore>.Good(new DesignStore(file, path, header.Sample, main, second, header.SecondNames));
     }
 
     private static StoreHeader? HeaderOf(string path, StorePreamble preamble)
     {
-        using var stream = File.OpenRead(path);
+        using var stream = System.IO.File.OpenRead(path);
         stream.Position = preamble.HeaderAt;
         if (StorePreamble.ChecksumOf(stream, preamble.HeaderBytes) != preamble.HeaderChecksum) return null;
         stream.Position = preamble.HeaderAt;

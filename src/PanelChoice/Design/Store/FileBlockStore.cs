@@ -48,7 +48,7 @@ internal sealed class FileBlockStore(
         while (buffer.Length > 0)
         {
             var read = RandomAccess.Read(file, buffer, at);
-            if (read == 0) throw new EndOfStreamException("The store's file became shorter while it was in use.");
+            if (read == 0) throw new EndOfStreamException("the file ends before it should");
             buffer = buffer[read..];
             at += read;
         }
@@ -85,7 +85,15 @@ internal sealed class FileBlockStore(
 
             // What the buffer held is gone even where the file cannot be read.
             (firstBlock, endBlock) = (0, 0);
-            ReadExactly(store.File, buffer.AsSpan(start, bytes), store.offset[block]);
+            try
+            {
+                ReadExactly(store.File, buffer.AsSpan(start, bytes), store.offset[block]);
+            }
+            catch (Exception e) when (e is IOException or UnauthorizedAccessException)
+            {
+                throw new StoreReadException(e);
+            }
+
             (firstBlock, endBlock) = (block, end);
         }
     }

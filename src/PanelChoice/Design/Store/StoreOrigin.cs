@@ -1,4 +1,3 @@
-using System.Security.Cryptography;
 using PanelChoice.Data;
 using PanelChoice.Study;
 
@@ -16,9 +15,7 @@ internal sealed record StoreOrigin(string Study, string DataFile, string DataSha
     {
         var stamp = FileStamp.Of(study);
         if (stamp == DataStamp) return true;
-        if (stamp.Bytes != DataStamp.Bytes) return false;
-        using var data = File.OpenRead(study.Panel.FullPath);
-        return Convert.ToHexStringLower(SHA256.HashData(data)) == DataSha256;
+        return stamp.Bytes == DataStamp.Bytes && FileStamp.Sha256Of(study) == DataSha256;
     }
 
     /// <summary>Writes it.</summary>

@@ -38,6 +38,17 @@ internal sealed class PartJournal : IRefitJournal, IDisposable
     /// <summary>The file that the part ends as.</summary>
     public string File => Path.Combine(folder, PartFile.NameOf(share, PartFile.Done));
 
+    /// <summary>A part that is complete and whole; null where there is none.</summary>
+    /// <param name="folder">The folder of the parts.</param>
+    /// <param name="share">Which part.</param>
+    /// <exception cref="IOException">It cannot be read.</exception>
+    /// <exception cref="UnauthorizedAccessException">It may not be read.</exception>
+    public static PartFile? Finished(string folder, RefitShare share)
+    {
+        var path = Path.Combine(folder, PartFile.NameOf(share, PartFile.Done));
+        return System.IO.File.Exists(path) && PartFile.Read(path) is { IsComplete: true, Damage: null } file && file.Header?.Share == share ? file : null;
+    }
+
     /// <summary>Opens a part: as it stands when it is complete, to go on when it is not, new when there is none.</summary>
     /// <param name="folder">The folder of the parts; it must exist.</param>
     /// <param name="header">What the part says of itself.</param>

@@ -37,11 +37,21 @@ public sealed record RefitOrigin(
         ArgumentNullException.ThrowIfNull(model);
         ArgumentNullException.ThrowIfNull(plan);
         return new RefitOrigin(
-            study.Sha256, dataSha256, study.Estimate.Seed, study.Inference.BootstrapSeed, model.Likelihood.Kernel, ResultBuilder.Version,
-            $"{RuntimeInformation.FrameworkDescription} on {RuntimeInformation.ProcessArchitecture}",
+            study.Sha256, dataSha256, study.Estimate.Seed, study.Inference.BootstrapSeed, model.Likelihood.Kernel, ResultBuilder.Version, RuntimeHere,
             Convert.ToHexStringLower(SHA256.HashData(MemoryMarshal.AsBytes(model.Parameters.AsSpan()))),
             model.Parameters.Length, plan.Replicates, plan.Deletions);
     }
+
+    /// <summary>The same refits made from a study and data here, as far as that is known without a fit.</summary>
+    /// <param name="study">The study.</param>
+    /// <param name="dataSha256">SHA-256 of its data.</param>
+    internal RefitOrigin GivenBy(StudySpecification study, string dataSha256) => this with
+    {
+        Study = study.Sha256, Data = dataSha256, EstimateSeed = study.Estimate.Seed, BootstrapSeed = study.Inference.BootstrapSeed,
+        Kernel = LikelihoodKernel.NameHere, Version = ResultBuilder.Version, Runtime = RuntimeHere,
+    };
+
+    private static string RuntimeHere => $"{RuntimeInformation.FrameworkDescription} on {RuntimeInformation.ProcessArchitecture}";
 
     /// <summary>
     /// One short name for what was given: lower-case hexadecimal SHA-256 over study, data, seeds, kernel, version and runtime. The estimate and the
