@@ -31,6 +31,9 @@ internal sealed class ReplicateSearch
     /// <summary>The error of the Hessian, as a share of it, with which a step may be the last.</summary>
     private const double MostError = 0.8;
 
+    /// <summary>The error of a Hessian that no step was long enough to test: the bound is then about 2.4 decrements.</summary>
+    private const double Untold = 0.5;
+
     /// <summary>Condition of the scaled Hessian above which exact Newton steps have to judge whether every parameter is identified.</summary>
     private const double MostCondition = 1e6;
 
@@ -147,6 +150,7 @@ internal sealed class ReplicateSearch
     private double[]? CorrectedHessian(out double error)
     {
         var hessian = model.HessianAt(Sum(x, from, -1));
+        var isTold = false;
         error = 0;
         for (var i = 1; i < points.Count; i++)
         {
@@ -167,6 +171,7 @@ internal sealed class ReplicateSearch
             factor.Solve(solved);
             var along = Math.Sqrt(Math.Max(0, TensorPrimitives.Dot(solved, missed)) / curvature);
             error = Math.Max(error, (i == 1 ? 3 : 1) * Math.Sqrt(Count) * along);
+            isTold = true;
             var seen = TensorPrimitives.Dot(y, s);
             if (!(seen > 0.1 * curvature)) return null;
             for (var r = 0; r < Count; r++)
@@ -174,6 +179,7 @@ internal sealed class ReplicateSearch
                     hessian[(r * Count) + c] += (y[r] * y[c] / seen) - (product[r] * product[c] / curvature);
         }
 
+        if (!isTold) error = Untold;
         return hessian;
     }
 

@@ -85,6 +85,23 @@ public class CertificateTests
         Assert.InRange(found[0]!.Decrement / found[1]!.Decrement, 1, 1.5);
     }
 
+    [Fact]
+    public void Where_the_way_is_too_short_to_test_the_Hessian_its_error_is_not_taken_for_nothing()
+    {
+        var exact = Cases["ordinary"]().Model;
+        // A start three billionths of a standard error off, and a Hessian that is too large by a third: the sample itself is the replicate.
+        var k = 0;
+        var near = exact.Parameters.SetItem(k, exact.Parameters[k] + (3e-9 / Math.Sqrt(-exact.Hessian[0])));
+        var replicates = new Replicates(exact with { Parameters = near, Hessian = [.. exact.Hessian.Select(h => 4 * h / 3)] });
+        var clusters = exact.Design.Clusters.Length;
+        var request = new RefitRequest([.. Enumerable.Repeat(1.0, clusters)], near, []);
+        var outcome = Assert.Single(replicates.SideBySide([request], 1e-5, clusters * (long)exact.Layout.Free.Length));
+        Assert.NotNull(outcome);
+        var distance = replicates.Distance(request, outcome);
+        Assert.True(distance > 5 * Rounding, $"the distance {distance} tests nothing");
+        Assert.InRange(distance, 0, outcome.Decrement);
+    }
+
     /// <summary>A column that nearly every choice goes along.</summary>
     private static SyntheticPanel NearSeparation()
     {
