@@ -27,11 +27,11 @@ internal sealed class BatchedRefits(ClusterExpansion expansion, FittedModel mode
     /// <param name="cancellation">Stops between chunks of the data.</param>
     public RefitOutcome?[] Run(IReadOnlyList<PreparedRefit> requests, int threads, CancellationToken cancellation)
     {
-        var around = expansion.At([.. requests.Select(r => r.Request.ClusterWeight)], threads);
+        var starts = expansion.At([.. requests.Select(r => r.Request.ClusterWeight)], threads);
         var searches = new ReplicateSearch[requests.Count];
         FixedChunks.Run(searches.Length, threads, (_, first, end) =>
         {
-            for (var r = first; r < end; r++) searches[r] = Begin(requests[r], around[r]);
+            for (var r = first; r < end; r++) searches[r] = Begin(requests[r], starts[r]);
         });
 
         var waiting = new Queue<ReplicateSearch>(searches);
@@ -49,13 +49,13 @@ internal sealed class BatchedRefits(ClusterExpansion expansion, FittedModel mode
         return [.. searches.Select(s => s.Outcome)];
     }
 
-    private ReplicateSearch Begin(PreparedRefit refit, LikelihoodEvaluation around)
+    private ReplicateSearch Begin(PreparedRefit refit, ReplicateStart start)
     {
         var function = new MinusLogLikelihood(likelihood, refit.PersonWeight, expansion.Scale, refit.Active, model.Parameters.AsSpan());
-        var here = function.InCoordinates(model.Parameters.AsSpan(), around);
+        var here = function.InCoordinates(model.Parameters.AsSpan(), start.At);
         var local = new CubicModel(here.Gradient, here.Hessian, Third(refit.Active), function.Situations);
         return new ReplicateSearch(
-            function, model.Parameters.AsSpan(), local, refit.PersonWeight, Math.Sqrt(Math.Max(1, function.Unit / samplingWeight)), tolerance);
+            function, model.Parameters.AsSpan(), local, refit.PersonWeight, Math.Sqrt(Math.Max(1, function.Unit / samplingWeight)), start.HessianError, tolerance);
     }
 
     /// <summary>Third derivatives by the parameters that move.</summary>

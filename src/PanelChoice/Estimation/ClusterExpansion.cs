@@ -3,8 +3,17 @@ using System.Numerics.Tensors;
 using System.Runtime.InteropServices;
 using PanelChoice.Likelihood;
 using PanelChoice.Numerics;
+using PanelChoice.Optimisation;
 
 namespace PanelChoice.Estimation;
+
+/// <summary>What is known of a replicate at the full estimate.</summary>
+/// <param name="At">Its log-likelihood there (without its value), with its derivatives.</param>
+/// <param name="HessianError">
+/// Where the Hessian is the sample's, scaled to the replicate's weight: its expected distance from the replicate's own, as a share of it (the root of the mean
+/// squared Frobenius norm over draws, which bounds that of the largest share in any direction). 0 where it is the replicate's own.
+/// </param>
+internal sealed record ReplicateStart(LikelihoodEvaluation At, double HessianError);
 
 /// <summary>
 /// The log-likelihood of each cluster to second order around the full estimate, and that of the sample to third order. One pass makes it; after that any
@@ -26,6 +35,7 @@ internal sealed class ClusterExpansion
     private readonly int stride;
     private readonly double[] rows;
     private readonly double[] situations;
+    private readonly double[] hessianShares;
     private readonly double allSituations;
 
     private ClusterExpansion(FittedModel model, double[] scale, ImmutableArray<int> active, bool holdsHessians)
@@ -38,6 +48,7 @@ internal sealed class ClusterExpansion
         stride = n + (holdsHessians ? n * (n + 1) / 2 : 0);
         rows = new double[(long)model.Design.Clusters.Length * stride];
         situations = new double[model.Design.Clusters.Length];
+        hessianShares = new double[holdsHessians ? 0 : model.Design.Clusters.Length];
         var design = model.Design;
         for (var p = 0; p < design.Persons; p++)
             situations[design.ClusterOf[p]] += design.PersonWeight[p] * (design.PersonStart[p + 1] - design.PersonStart[p]);
@@ -62,7 +73,7 @@ internal sealed class ClusterExpansion
     /// <param name="scale">Scale of each column.</param>
     /// <param name="mostEntries">Doubles that scores and Hessians may take.</param>
     /// <param name="cancellation">Stops between stretches of persons.</param>
-    /// <returns>The expansion; null where not even the clusters' scores may be held.</returns>
+    /// <returns>The expansion; null where not even the clusters' scores may be held, or the sample's Hessian is not that of a maximum.</returns>
     public static ClusterExpansion? Of(
         FittedModel model, IChoiceLikelihood likelihood, double[] scale, long mostEntries, CancellationToken cancellation)
     {
@@ -71,36 +82,36 @@ internal sealed class ClusterExpansion
         long clusters = model.Design.Clusters.Length;
         if (n == 0 || clusters * n > 2 * mostEntries) return null;
         var expansion = new ClusterExpansion(model, scale, active, clusters * (n + (n * (n + 1) / 2)) <= mostEntries);
-        expansion.AddPersons(likelihood, cancellation);
+        if (expansion.InverseOfSample() is not { } inverse) return null;
+        expansion.AddPersons(likelihood, inverse, cancellation);
         expansion.Third = expansion.ThirdDerivatives(likelihood);
         return expansion;
     }
 
     /// <summary>
-    /// The log-likelihood (without its value) of some replicates at the full estimate, with its derivatives. What a replicate gets depends on its own
-    /// weights alone.
+    /// What is known of some replicates at the full estimate. What a replicate gets depends on its own weights alone.
     /// </summary>
     /// <param name="clusterWeights">Weight of each cluster, replicate by replicate.</param>
     /// <param name="threads">Threads, 1 or more.</param>
-    public LikelihoodEvaluation[] At(IReadOnlyList<ImmutableArray<double>> clusterWeights, int threads)
+    public ReplicateStart[] At(IReadOnlyList<ImmutableArray<double>> clusterWeights, int threads)
     {
-        var evaluations = new LikelihoodEvaluation[clusterWeights.Count];
-        var groups = (evaluations.Length + SummedTogether - 1) / SummedTogether;
+        var starts = new ReplicateStart[clusterWeights.Count];
+        var groups = (starts.Length + SummedTogether - 1) / SummedTogether;
         FixedChunks.Run(groups, threads, (_, first, end) =>
         {
             for (var group = first; group < end; group++)
             {
                 var from = group * SummedTogether;
-                Sum(clusterWeights, from, evaluations.AsSpan(from, Math.Min(SummedTogether, evaluations.Length - from)));
+                Sum(clusterWeights, from, starts.AsSpan(from, Math.Min(SummedTogether, starts.Length - from)));
             }
         });
-        return evaluations;
+        return starts;
     }
 
-    private void Sum(IReadOnlyList<ImmutableArray<double>> clusterWeights, int from, Span<LikelihoodEvaluation> evaluations)
+    private void Sum(IReadOnlyList<ImmutableArray<double>> clusterWeights, int from, Span<ReplicateStart> starts)
     {
-        var sums = new double[evaluations.Length * stride];
-        var counts = new double[evaluations.Length];
+        var sums = new double[starts.Length * stride];
+        var counts = new double[starts.Length];
         for (var g = 0; g < situations.Length; g++)
         {
             var row = rows.AsSpan(g * stride, stride);
@@ -114,7 +125,24 @@ internal sealed class ClusterExpansion
             }
         }
 
-        for (var r = 0; r < counts.Length; r++) evaluations[r] = Expand(sums.AsSpan(r * stride, stride), counts[r] / allSituations);
+        for (var r = 0; r < counts.Length; r++)
+        {
+            var share = counts[r] / allSituations;
+            starts[r] = new ReplicateStart(Expand(sums.AsSpan(r * stride, stride), share), HessianError(clusterWeights[from + r].AsSpan(), share));
+        }
+    }
+
+    /// <summary>sqrt(sum over clusters of (w_g / share - 1)^2 |H^-1/2 H_g H^-1/2|^2), w_g the cluster's weight in the replicate, H_g its Hessian, H the sample's.</summary>
+    private double HessianError(ReadOnlySpan<double> clusterWeight, double share)
+    {
+        var sum = 0.0;
+        for (var g = 0; g < hessianShares.Length; g++)
+        {
+            var off = ((clusterWeight[g] / share) - 1) * hessianShares[g];
+            sum += off * off;
+        }
+
+        return Math.Sqrt(sum);
     }
 
     /// <summary>K first and K x K second derivatives from a row of sums.</summary>
@@ -139,16 +167,32 @@ internal sealed class ClusterExpansion
         return new LikelihoodEvaluation(0, ImmutableCollectionsMarshal.AsImmutableArray(gradient), ImmutableCollectionsMarshal.AsImmutableArray(hessian));
     }
 
-    private void AddPersons(IChoiceLikelihood likelihood, CancellationToken cancellation)
+    /// <summary>The inverse of minus the sample's Hessian, n x n; null where it is not positive definite.</summary>
+    private double[]? InverseOfSample()
+    {
+        var (n, K) = (Active.Length, model.Layout.Count);
+        double[] information = [.. Active.SelectMany(r => Active.Select(c => -model.Hessian[(r * K) + c]))];
+        return ScaledCholesky.Factor(information, n, out _)?.Inverse();
+    }
+
+    private void AddPersons(IChoiceLikelihood likelihood, double[] inverse, CancellationToken cancellation)
     {
         var design = model.Design;
-        var K = model.Layout.Count;
+        var (n, K) = (Active.Length, model.Layout.Count);
+        var own = new double[n * n];
         SeparatePasses.Of(likelihood).ForEachPerson([.. model.Parameters], (person, score, hessian) =>
         {
             var weight = design.PersonWeight[person];
             var row = rows.AsSpan(design.ClusterOf[person] * stride, stride);
             for (var i = 0; i < Active.Length; i++) row[i] += weight * score[Active[i]];
-            if (!holdsHessians) return;
+            if (!holdsHessians)
+            {
+                // The sizes of a cluster's persons add up to at least the size of their sum.
+                for (var i = 0; i < own.Length; i++) own[i] = hessian[(Active[i / n] * K) + Active[i % n]];
+                hessianShares[design.ClusterOf[person]] += weight * Math.Sqrt(SymmetricProduct.SquaredShare(own, inverse, n));
+                return;
+            }
+
             var place = Active.Length;
             for (var i = 0; i < Active.Length; i++)
                 for (var j = 0; j <= i; j++) row[place++] += weight * hessian[(Active[i] * K) + Active[j]];

@@ -53,12 +53,10 @@ internal sealed class ReferenceFits
     /// <summary>Whether a lane offers what the key says; if not, the key is changed.</summary>
     private static bool IsAsBefore(BlockReader reader, int lane, char[] key)
     {
-        var bit = lane % ChoiceDesign.TileLanes;
-        var masks = reader.OfferedMasks.Slice(lane / ChoiceDesign.TileLanes * key.Length, key.Length);
         var same = true;
-        for (var j = 0; j < masks.Length; j++)
+        for (var j = 0; j < key.Length; j++)
         {
-            var now = (char)('0' + (masks[j] >> bit & 1));
+            var now = reader.IsOffered(lane, j) ? '1' : '0';
             same &= now == key[j];
             key[j] = now;
         }

@@ -16,8 +16,9 @@ namespace PanelChoice.Estimation;
 /// way changed the gradient by y, and |y - M s| / |s| in that norm is the error of M along s: seen along one of n directions, an error has about
 /// sqrt(n) times that norm. From the full estimate, where M is exact, to the end of a step the error grows in proportion or faster, so that its mean is half
 /// (third derivatives off) or a third (fourth derivatives missing) of its value at the end: the first step counts three times. And where third derivatives
-/// change the Hessian by a share t of itself, fourth derivatives may change it by a share of the order of t^2. k is the sum of both, and the bound is
-/// doubled for what neither sees.
+/// change the Hessian by a share t of itself, fourth derivatives may change it by a share of the order of t^2. Where the sample's Hessian stands for the
+/// replicate's, M is not exact at the full estimate either, and a step may miss the one direction in which it is wrong: there the size of that error comes in,
+/// as the clusters' Hessians let it be expected (<see cref="ReplicateStart"/>). k is the sum of all, and the bound is doubled for what none sees.
 /// </para>
 /// </summary>
 internal sealed class ReplicateSearch
@@ -45,6 +46,7 @@ internal sealed class ReplicateSearch
     private readonly double[] personWeight;
     private readonly double tolerance;
     private readonly double clones;
+    private readonly double borrowed;
     private readonly double[] from;
     private readonly List<double[]> points;
     private readonly List<double[]> gradients;
@@ -58,14 +60,16 @@ internal sealed class ReplicateSearch
     /// <param name="model">The function to third order around it.</param>
     /// <param name="personWeight">The replicate's weights.</param>
     /// <param name="clones">By how much its pooled standard errors are smaller than they are in the function's units.</param>
+    /// <param name="borrowed">Error of the model's Hessian at the full estimate as a share of it: 0 where it is the replicate's own.</param>
     /// <param name="tolerance">Distance from the maximum, in those standard errors, at which to stop.</param>
     public ReplicateSearch(
-        MinusLogLikelihood function, ReadOnlySpan<double> estimate, CubicModel model, double[] personWeight, double clones, double tolerance)
+        MinusLogLikelihood function, ReadOnlySpan<double> estimate, CubicModel model, double[] personWeight, double clones, double borrowed, double tolerance)
     {
         this.function = function;
         this.model = model;
         this.personWeight = personWeight;
         this.clones = clones;
+        this.borrowed = borrowed;
         this.tolerance = tolerance;
         from = x = function.Coordinates(estimate);
         points = [from];
@@ -125,12 +129,7 @@ internal sealed class ReplicateSearch
     {
         var turn = new double[Count * Count];
         model.AddThird(Sum(x, from, -1), 1, turn);
-        var share = new double[Count * Count];
-        for (var i = 0; i < Count; i++) SymmetricProduct.Of(turn, inverse.AsSpan(i * Count, Count)).CopyTo(share, i * Count);
-        var sum = 0.0;
-        for (var i = 0; i < Count; i++)
-            for (var j = 0; j < Count; j++) sum += share[(i * Count) + j] * share[(j * Count) + i];
-        return Math.Max(0, sum);
+        return SymmetricProduct.SquaredShare(turn, inverse, Count);
     }
 
     private void Move(double[] step)
@@ -179,7 +178,7 @@ internal sealed class ReplicateSearch
                     hessian[(r * Count) + c] += (y[r] * y[c] / seen) - (product[r] * product[c] / curvature);
         }
 
-        if (!isTold) error = Untold;
+        error = borrowed + (isTold ? error : Untold);
         return hessian;
     }
 

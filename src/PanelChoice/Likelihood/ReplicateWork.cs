@@ -68,11 +68,26 @@ internal sealed class ReplicateWork
     /// <summary>Writes the derivatives of one person's log-likelihood: K first, then K x K second.</summary>
     public void PersonDerivatives(int person, Span<double> derivatives)
     {
+        derivatives.Clear();
+        AddPerson(person, withGradient: true);
+        gradient.Flush(derivatives[..plan.K]);
+        hessian!.Flush(1, derivatives[plan.K..]);
+    }
+
+    /// <summary>Writes the K x K second derivatives of one person's log-likelihood.</summary>
+    public void PersonHessian(int person, Span<double> second)
+    {
+        second.Clear();
+        AddPerson(person, withGradient: false);
+        hessian!.Flush(1, second);
+    }
+
+    private void AddPerson(int person, bool withGradient)
+    {
         var design = plan.Design;
         var (first, end) = (design.PersonStart[person], design.PersonStart[person + 1]);
         var block = design.Blocks[design.BlockOf[first]];
         hessian ??= new StripHessian(plan, strip, probabilities);
-        derivatives.Clear();
         var tiles = (end - block.FirstSituation + Tile - 1) / Tile;
         var weights = LaneWeights.One(first, end);
         for (var lane = (first - block.FirstSituation) / Tile * Tile; lane < tiles * Tile; lane += strip.Lanes)
@@ -80,12 +95,9 @@ internal sealed class ReplicateWork
             strip.LoadNext(block, lane, tiles * Tile, weights);
             probabilities.Up();
             probabilities.Down();
-            gradient.Add();
+            if (withGradient) gradient.Add();
             hessian.Add();
         }
-
-        gradient.Flush(derivatives[..plan.K]);
-        hessian.Flush(1, derivatives[plan.K..]);
     }
 
     private void AddTiles(DesignBlock block, int from, int to, in LaneWeights weights)

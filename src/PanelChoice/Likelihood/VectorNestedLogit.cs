@@ -1,4 +1,5 @@
 using System.Collections.Concurrent;
+using System.Numerics.Tensors;
 using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using PanelChoice.Design;
@@ -142,14 +143,19 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
         var persons = endPerson - firstPerson;
         if (!ParameterDomain.Contains(Design.Layout, parameters)) return ParameterDomain.Nan(persons * K * K);
         var information = new double[persons * K * K];
-        Run(persons, parameters, (work, _, first, end) =>
+        var theta = parameters.ToArray();
+        FixedChunks.Run(persons, threads, (_, first, end) =>
         {
+            if (!idleReplicates.TryTake(out var work)) work = new ReplicateWork(plan);
+            work.Begin(theta);
             for (var p = first; p < end; p++)
             {
-                var from = Design.PersonStart[firstPerson + p];
-                work.AddInformation(
-                    Design.Blocks[Design.BlockOf[from]], from, Design.PersonStart[firstPerson + p + 1], information.AsSpan(p * K * K, K * K));
+                var own = information.AsSpan(p * K * K, K * K);
+                work.PersonHessian(firstPerson + p, own);
+                TensorPrimitives.Negate(own, own);
             }
+
+            idleReplicates.Add(work);
         });
         return information;
     }
@@ -193,12 +199,13 @@ internal sealed class VectorNestedLogit : IChoiceLikelihood, IReplicateLikelihoo
         ArgumentNullException.ThrowIfNull(take);
         var length = K + (K * K);
         var window = new double[Math.Min(Design.Persons, PersonsAtOnce) * length];
-        if (!ParameterDomain.Contains(Design.Layout, parameters)) Array.Fill(window, double.NaN);
+        var isInside = ParameterDomain.Contains(Design.Layout, parameters);
+        if (!isInside) Array.Fill(window, double.NaN);
         for (var from = 0; from < Design.Persons; from += PersonsAtOnce)
         {
             cancellation.ThrowIfCancellationRequested();
             var count = Math.Min(PersonsAtOnce, Design.Persons - from);
-            if (!double.IsNaN(window[0])) FixedChunks.Run(count, threads, (_, first, end) =>
+            if (isInside) FixedChunks.Run(count, threads, (_, first, end) =>
             {
                 if (!idleReplicates.TryTake(out var work)) work = new ReplicateWork(plan);
                 work.Begin(parameters);

@@ -110,7 +110,7 @@ public class BatchedRefitTests
         var model = Small.Model;
         var expansion = ClusterExpansion.Of(model, model.Likelihood, model.Survey!.Scale, ClusterExpansion.MostEntries, CancellationToken.None)!;
         var request = Small.Draws(3)[2];
-        var sums = expansion.At([Small.Draws(1)[0].ClusterWeight, request.ClusterWeight], 2)[1];
+        var sums = expansion.At([Small.Draws(1)[0].ClusterWeight, request.ClusterWeight], 2)[1].At;
         var direct = model.Likelihood.Evaluate(model.Parameters.AsSpan(), PreparedRefit.Of(model, request).PersonWeight, Derivatives.Hessian);
         Assert.InRange(Likelihood.Kernels.Distance(direct.Gradient, sums.Gradient), 0, 1e-11);
         Assert.InRange(Likelihood.Kernels.Distance(direct.Hessian, sums.Hessian), 0, 1e-11);

@@ -52,6 +52,53 @@ public class CertificateTests
         }
     }
 
+    [Theory]
+    [InlineData(false)]
+    [InlineData(true)]
+    public void Where_the_Hessian_is_the_sample_s_its_distance_from_the_replicate_s_own_is_known_beforehand(bool inHouseholds)
+    {
+        var made = Replicates.Panel(11, 120, 10);
+        var model = new Replicates(inHouseholds ? Households(made) : made.Design() with { PersonWeight = [.. Enumerable.Range(0, 120).Select(p => 1 + (p % 5))] }).Model;
+        var (n, K, clusters) = (model.Layout.Free.Length, model.Layout.Count, model.Design.Clusters.Length);
+        var expansion = ClusterExpansion.Of(model, model.Likelihood, model.Survey!.Scale, (long)clusters * n, CancellationToken.None)!;
+        var requests = new Replicates(model).Draws(60);
+        var starts = expansion.At([.. requests.Select(r => r.ClusterWeight)], 1);
+        var inverse = PanelChoice.Numerics.ScaledCholesky.Factor([.. model.Hessian.Select(h => -h)], n, out _)!.Inverse();
+        var ratios = new List<double>();
+        for (var r = 0; r < requests.Length; r++)
+        {
+            var own = model.Likelihood.Evaluate(model.Parameters.AsSpan(), PreparedRefit.Of(model, requests[r]).PersonWeight, PanelChoice.Likelihood.Derivatives.Hessian).Hessian;
+            var share = starts[r].At.Hessian[0] / model.Hessian[0];
+            double[] off = [.. own.Select((h, i) => (h - starts[r].At.Hessian[i]) / share)];
+            ratios.Add(Math.Sqrt(PanelChoice.Optimisation.SymmetricProduct.SquaredShare(off, inverse, K)) / starts[r].HessianError);
+        }
+
+        // It is the root of the mean square over draws, and persons of a household are taken as if all went the same way.
+        Assert.InRange(Math.Sqrt(ratios.Average(q => q * q)), 0.4, 1.1);
+        Assert.InRange(ratios.Max(), 0, 2);
+        var ownHessians = ClusterExpansion.Of(model, model.Likelihood, model.Survey!.Scale, ClusterExpansion.MostEntries, CancellationToken.None)!;
+        Assert.Equal(0, ownHessians.At([requests[0].ClusterWeight], 1)[0].HessianError);
+    }
+
+    [Fact]
+    public void The_certificate_holds_where_one_direction_of_the_sample_s_Hessian_is_wrong()
+    {
+        // A single nest in the unscaled form: draws differ in what they tell of its dissimilarity far more than in anything else.
+        var panel = SyntheticPanel.Make(1_000_068, 374, 53, 4, [SyntheticPanel.Nest("one", "B", "C", "D")], [0.8], attributes: 1, offeredShare: 0.8);
+        var replicates = new Replicates(panel.Design(NestedLogitForm.Unscaled), NestedLogitForm.Unscaled);
+        var requests = replicates.Draws(150);
+        var outcomes = replicates.SideBySide(requests, 1e-5, 374L * replicates.Model.Layout.Free.Length);
+        var settled = 0;
+        for (var r = 0; r < requests.Length; r++)
+        {
+            if (outcomes[r] is not { } outcome) continue;
+            settled++;
+            Assert.InRange(replicates.Distance(requests[r], outcome), 0, outcome.Decrement + Rounding);
+        }
+
+        Assert.InRange(settled, 60, requests.Length);
+    }
+
     [Fact]
     public void The_certificate_of_exact_Newton_steps_holds_too()
     {

@@ -70,6 +70,29 @@ public class ReplicateLikelihoodTests
     }
 
     [Theory]
+    [InlineData("scalar")]
+    [InlineData("vector")]
+    public void A_person_whose_derivatives_overflow_leaves_the_others_alone(string kernel)
+    {
+        const NestedLogitForm Form = NestedLogitForm.UtilityScaled;
+        // More persons than are held at a time; the utilities of the first are beyond the range of numbers.
+        var plain = SyntheticPanel.Make(41, 2_200, 2, 3, [], [], attributes: 1, offeredShare: 1);
+        var made = Estimation.Fits.Add(plain, Estimation.Fits.Shared(plain, "height", (o, j) => o < 2 ? 1e300 * (j - 1) : 0.1 * ((o + j) % 3)));
+        var likelihood = Kernels.Create(kernel, made.Design(Form), Form);
+        double[] point = [0.1, -0.2, -0.5, 1e10];
+        var scores = likelihood.Scores(point);
+        SeparatePasses.Of(likelihood).ForEachPerson(point, (person, score, second) =>
+        {
+            if (person == 0) return;
+            Assert.Equal(scores[person * 8] + scores[(person * 8) + 4], score[0], Identity);
+            Assert.True(double.IsFinite(second[0]), $"person {person}");
+        }, CancellationToken.None);
+        var first = double.NaN;
+        SeparatePasses.Of(likelihood).ForEachPerson(point, (person, score, _) => first = person == 0 ? score[0] : first, CancellationToken.None);
+        Assert.True(double.IsNaN(first), "nothing overflows here");
+    }
+
+    [Theory]
     [MemberData(nameof(Kernels.Table), MemberType = typeof(Kernels))]
     public void Outside_the_domain_a_point_is_not_a_number_and_leaves_the_others_alone(string kernel, NestedLogitForm form)
     {

@@ -121,6 +121,43 @@ public sealed class PartFileTests : IDisposable
     }
 
     [Fact]
+    public async Task A_run_that_comes_while_another_finishes_finds_the_part_at_work_or_complete()
+    {
+        if (OperatingSystem.IsWindows()) return;
+        var done = folder.PathOf("part-2-of-2.refits");
+        for (var round = 0; round < 150; round++)
+        {
+            File.Delete(done);
+            using var begun = new ManualResetEventSlim();
+            var first = Task.Run(() =>
+            {
+                using var journal = PartJournal.Open(Folder, Header).Value!;
+                foreach (var (series, number, outcome) in Refits) journal.Keep(series, [number], [outcome]);
+                begun.Set();
+                journal.Complete();
+            });
+            begun.Wait();
+            while (true)
+            {
+                try
+                {
+                    using var second = PartJournal.Open(Folder, Header).Value!;
+                    Assert.True(second.WasComplete, $"round {round}: the second run takes the part for unfinished");
+                    break;
+                }
+                catch (IOException busy)
+                {
+                    Assert.StartsWith("another run is at work on part 2 of 2", busy.Message, StringComparison.Ordinal);
+                }
+            }
+
+            await first;
+            Assert.True(PartFile.Read(done).IsComplete);
+            Assert.Equal(["part-2-of-2.refits"], Directory.GetFiles(Folder).Select(f => Path.GetFileName(f)!));
+        }
+    }
+
+    [Fact]
     public void A_layout_of_a_later_version_is_called_so()
     {
         var later = PartFile.Read("later", new MemoryStream([.. "panelchoice-refits/2\n"u8, 1, 2, 3]));

@@ -33,8 +33,9 @@ internal sealed partial class PartFolder(string folder)
         var study = headers.Count == 0 ? null : StudyFile(headers[0].Header!);
         var done = headers.Where(f => f is { IsComplete: true, Damage: null } && f.Path.EndsWith(PartFile.Done, StringComparison.Ordinal))
             .OrderBy(f => f.Header!.Share.Part).ToList();
+        var strange = TellSplit(headers);
         foreach (var (name, file) in read)
-            if (file is not null && !done.Contains(file)) TellUnusable(name, file, study, done);
+            if (file is not null && !done.Contains(file) && !strange.Contains(file)) TellUnusable(name, file, study, done);
         Compare(done);
         var parts = headers.Select(f => f.Header!.Share.Parts).Concat(files.Select(f => ShareOf(f)?.Parts ?? 0)).Max();
         if (problems.All(p => p.Id != "parts.split")) TellMissing(parts, done, study);
@@ -92,15 +93,25 @@ internal sealed partial class PartFolder(string folder)
         Tell("parts.unfinished", name, share, what, $"{again}, which goes on from there");
     }
 
+    /// <summary>Says where parts, finished or not, come from divisions into different numbers, and gives those of another division than most.</summary>
+    private List<PartFile> TellSplit(List<PartFile> files)
+    {
+        if (files.Count == 0) return [];
+        var first = files.GroupBy(f => f.Header!.Share.Parts).OrderByDescending(g => g.Count()).First().First();
+        var strange = files.Where(f => f.Header!.Share.Parts != first.Header!.Share.Parts).ToList();
+        foreach (var file in strange.Take(1))
+            problems.Add(new Problem(
+                "parts.split", file.Path,
+                $"it is one of {file.Header!.Share.Parts} parts, but {Path.GetFileName(first.Path)} is one of {first.Header!.Share.Parts}",
+                "keep the parts of one division in the folder and move the others away"));
+        return strange;
+    }
+
     /// <summary>Compares complete parts with the first one.</summary>
     private void Compare(List<PartFile> done)
     {
         if (done.Count == 0) return;
         var (first, name) = (done[0].Header!, Path.GetFileName(done[0].Path));
-        foreach (var file in done.Skip(1).Where(f => f.Header!.Share.Parts != first.Share.Parts).Take(1))
-            problems.Add(new Problem(
-                "parts.split", file.Path, $"it is one of {file.Header!.Share.Parts} parts, but {name} is one of {first.Share.Parts}",
-                "keep the parts of one division in the folder and move the others away"));
         foreach (var same in done.GroupBy(f => f.Header!.Share).Where(g => g.Count() > 1))
             problems.Add(new Problem(
                 "parts.duplicate", same.ElementAt(1).Path, $"it holds part {same.Key.Part} of {same.Key.Parts}, as {Path.GetFileName(same.First().Path)} does",

@@ -58,19 +58,27 @@ internal sealed class PartJournal : IRefitJournal, IDisposable
     public static Checked<PartJournal> Open(string folder, PartHeader header)
     {
         var done = Path.Combine(folder, PartFile.NameOf(header.Share, PartFile.Done));
+        var path = Path.Combine(folder, PartFile.NameOf(header.Share, PartFile.Unfinished));
         string? replaces = null;
         if (System.IO.File.Exists(done))
         {
-            var file = PartFile.Read(done);
+            var file = Exclusively(header.Share, () => PartFile.Read(done));
             if (WhyKept(file, header) is { } problem) return Checked<PartJournal>.Bad([problem]);
             if (file is { IsComplete: true, Damage: null }) return Checked<PartJournal>.Good(new PartJournal(folder, file, null, header.Share));
             replaces = $"{done} is damaged ({file.Damage ?? "it has no end"}) and is made again.";
         }
 
-        var path = Path.Combine(folder, PartFile.NameOf(header.Share, PartFile.Unfinished));
-        var stream = Lock(path, header.Share);
+        var stream = Exclusively(header.Share, () => new FileStream(path, FileMode.OpenOrCreate, FileAccess.ReadWrite, FileShare.None, 1 << 16));
         try
         {
+            // Between the two looks another run may have finished the part, and what is open now may be its very file under its final name.
+            if (!System.IO.File.Exists(path) || (replaces is null && System.IO.File.Exists(done)))
+            {
+                if (stream.Length == 0 && !OperatingSystem.IsWindows()) System.IO.File.Delete(path);
+                stream.Dispose();
+                return Open(folder, header);
+            }
+
             var file = PartFile.Read(path, stream);
             if (WhyKept(file, header) is { } problem)
             {
@@ -120,8 +128,10 @@ internal sealed class PartJournal : IRefitJournal, IDisposable
         if (stream is null) return;
         PartRecords.Write(stream, seal, PartRecords.End());
         stream.Flush(flushToDisk: true);
-        stream.Dispose();
+        // Where an open file can be renamed it keeps its lock until it has its name, so that no other run takes it for unfinished.
+        if (OperatingSystem.IsWindows()) stream.Dispose();
         System.IO.File.Move(stream.Name, File, overwrite: true);
+        stream.Dispose();
     }
 
     /// <inheritdoc/>
@@ -142,11 +152,12 @@ internal sealed class PartJournal : IRefitJournal, IDisposable
         return new Problem("parts.other_origin", file.Path, what, "delete it if it is out of date, or name another folder with --out");
     }
 
-    private static FileStream Lock(string path, RefitShare share)
+    /// <summary>Opens something, or says that another run has it.</summary>
+    private static T Exclusively<T>(RefitShare share, Func<T> open)
     {
         try
         {
-            return new FileStream(path, FileMode.OpenOrCreate, FileAccess.ReadWrite, FileShare.None, 1 << 16);
+            return open();
         }
         catch (IOException busy) when (FileLocks.IsTaken(busy))
         {
