@@ -26,7 +26,7 @@ internal static class BenchmarkCommand
     private static readonly (string Name, Action<string[]> Measure)[] Others =
     [
         ("whole", cases => WholeRunRows.Run(OneOf(cases))), ("loading", cases => LoadingRows.Run(OneOf(cases))), ("growth", _ => GrowthRows.Run()),
-        ("narrow", NarrowRows.Run), ("store", cases => StoreRows.Run(CommuteShape.Of(cases[^1]))),
+        ("narrow", NarrowRows.Run), ("store", cases => StoreRows.Run(CommuteShape.Of(cases[^1]))), ("parts", cases => PartRows.Run(OneOf(cases))),
     ];
 
     private static readonly string[] Rows = ["elementary", .. ByCase.Select(r => r.Name), .. Others.Select(r => r.Name)];
