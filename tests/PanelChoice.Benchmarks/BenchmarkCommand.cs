@@ -92,10 +92,9 @@ internal static class BenchmarkCommand
         return Agreement.IsBroken ? Wrong : 0;
     }
 
-    /// <summary>Which rows a case is measured for: replicates only where a goal is set, threads where there is enough for two.</summary>
+    /// <summary>Which rows a case is measured for: the jackknife only where a goal is set, threads where there is enough for two.</summary>
     private static bool Belongs(string row, string name, bool isRounded) => row switch
     {
-        "bootstrap" => name is "S" or "M",
         "jackknife" => name == "S" && isRounded,
         "threads" => name == "M",
         _ => true,

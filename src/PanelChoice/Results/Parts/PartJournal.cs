@@ -46,7 +46,7 @@ internal sealed class PartJournal : IRefitJournal, IDisposable
     public static PartFile? Finished(string folder, RefitShare share)
     {
         var path = Path.Combine(folder, PartFile.NameOf(share, PartFile.Done));
-        return System.IO.File.Exists(path) && PartFile.Read(path) is { IsComplete: true, Damage: null } file && file.Header?.Share == share ? file : null;
+        return System.IO.File.Exists(path) && Exclusively(share, () => PartFile.Read(path)) is { IsComplete: true, Damage: null } file && file.Header?.Share == share ? file : null;
     }
 
     /// <summary>Opens a part: as it stands when it is complete, to go on when it is not, new when there is none.</summary>
@@ -72,9 +72,10 @@ internal sealed class PartJournal : IRefitJournal, IDisposable
         try
         {
             // Between the two looks another run may have finished the part, and what is open now may be its very file under its final name.
-            if (!System.IO.File.Exists(path) || (replaces is null && System.IO.File.Exists(done)))
+            var isGone = !System.IO.File.Exists(path);
+            if (isGone || (replaces is null && System.IO.File.Exists(done)))
             {
-                if (stream.Length == 0 && !OperatingSystem.IsWindows()) System.IO.File.Delete(path);
+                if (!isGone && stream.Length == 0 && !OperatingSystem.IsWindows()) System.IO.File.Delete(path);
                 stream.Dispose();
                 return Open(folder, header);
             }
