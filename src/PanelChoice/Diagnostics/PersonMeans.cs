@@ -1,5 +1,6 @@
 using System.Collections.Immutable;
 using PanelChoice.Design;
+using PanelChoice.Numerics;
 using PanelChoice.Study;
 
 namespace PanelChoice.Diagnostics;
@@ -39,21 +40,22 @@ internal static class PersonMeans
     /// </summary>
     /// <param name="design">Design of the static fit, the means last among its coefficients.</param>
     /// <param name="firstMean">The first mean's coefficient.</param>
-    public static ImmutableSortedSet<int> Collinear(ChoiceDesign design, int firstMean)
+    /// <param name="threads">Threads; the result does not depend on it.</param>
+    public static ImmutableSortedSet<int> Collinear(ChoiceDesign design, int firstMean, int threads)
     {
         var size = design.Layout.Coefficients;
-        var information = EqualProbabilityInformation(design);
+        var information = EqualProbabilityInformation(design, threads);
         var keep = new bool[size];
         var factor = new double[size][];
         for (var k = 0; k < size; k++)
         {
             factor[k] = new double[size];
-            var variance = information[k, k];
+            var variance = information[(k * size) + k];
             var left = variance;
             for (var q = 0; q < k; q++)
             {
                 if (!keep[q]) continue;
-                var sum = information[k, q];
+                var sum = information[(k * size) + q];
                 for (var r = 0; r < q; r++) if (keep[r]) sum -= factor[k][r] * factor[q][r];
                 factor[k][q] = sum / factor[q][q];
                 left -= factor[k][q] * factor[k][q];
@@ -98,31 +100,48 @@ internal static class PersonMeans
         left.Source == right.Source && left.Log == right.Log && left.Times == right.Times && left.Each == right.Each && left.Base == right.Base
         && left.Alternatives.SequenceEqual(right.Alternatives);
 
-    private static double[,] EqualProbabilityInformation(ChoiceDesign design)
+    /// <summary>
+    /// Sum over situations of the cross-products of deviations from the mean over offered alternatives, divided by the number of these. From deviations,
+    /// not from a likelihood's second derivatives: those lose the digits that a column's mean has more than its deviations.
+    /// </summary>
+    private static double[] EqualProbabilityInformation(ChoiceDesign design, int threads)
     {
-        var size = design.Layout.Coefficients;
-        var alternatives = design.Alternatives;
-        var information = new double[size, size];
-        var x = new double[alternatives, size];
-        var mean = new double[size];
-        var reader = design.Store.Reader();
-        foreach (var block in design.Blocks)
+        var (size, alternatives) = (design.Layout.Coefficients, design.Alternatives);
+        var width = PaddedRows.Padded(size);
+        var parts = new double[FixedChunks.Count(design.Blocks.Length) * width * width];
+        FixedChunks.Run(design.Blocks.Length, threads, (chunk, first, end) =>
         {
-            reader.Open(block);
-            for (var lane = 0; lane < block.Situations; lane++)
+            var deviation = new double[alternatives * width];
+            var share = new double[alternatives * width];
+            var mean = new double[width];
+            var reader = design.Store.Reader();
+            for (var b = first; b < end; b++)
             {
-                Array.Clear(x);
-                Array.Clear(mean);
-                var offered = Enumerable.Range(0, alternatives).Where(j => reader.IsOffered(lane, j)).ToArray();
-                foreach (var column in design.Columns) x[column.Alternative, column.Parameter] = reader.Value(column.Storage, lane);
-                for (var k = 0; k < size; k++)
-                    foreach (var j in offered) mean[k] += x[j, k] / offered.Length;
-                foreach (var j in offered)
-                    for (var k = 0; k < size; k++)
-                        for (var q = 0; q <= k; q++) information[k, q] += (x[j, k] - mean[k]) * (x[j, q] - mean[q]) / offered.Length;
-            }
-        }
+                var block = design.Blocks[b];
+                reader.Open(block);
+                for (var lane = 0; lane < block.Situations; lane++)
+                {
+                    var offered = 0;
+                    Array.Clear(deviation);
+                    Array.Clear(share);
+                    Array.Clear(mean);
+                    foreach (var c in design.Columns)
+                        if (reader.IsOffered(lane, c.Alternative)) deviation[(c.Alternative * width) + c.Parameter] = reader.Value(c.Storage, lane);
+                    for (var j = 0; j < alternatives; j++)
+                    {
+                        if (!reader.IsOffered(lane, j)) continue;
+                        offered++;
+                        PaddedRows.Add(1, deviation.AsSpan(j * width, width), mean);
+                    }
 
-        return information;
+                    for (var j = 0; j < alternatives; j++)
+                        if (reader.IsOffered(lane, j)) PaddedRows.Add(-1.0 / offered, mean, deviation.AsSpan(j * width, width));
+                    PaddedRows.Add(1.0 / offered, deviation, share);
+                    PaddedRows.Product(
+                        deviation, 1, width, share, alternatives, width, width, parts.AsSpan(chunk * width * width, width * width), isAdded: true, isSymmetric: true);
+                }
+            }
+        });
+        return PaddedRows.Symmetric(FixedChunks.Sum(parts, width * width), size);
     }
 }

@@ -35,7 +35,7 @@ internal sealed record StaticFit(FittedModel? Model, string? Reason, ImmutableAr
         var plain = StaticDesign.Plain(study, sample);
         if (plain < all.Layout.Coefficients)
         {
-            var collinear = PersonMeans.Collinear(all, plain);
+            var collinear = PersonMeans.Collinear(all, plain, work.Threads);
             var withMeans = Fit(study, all.Without(collinear), form, work);
             if (withMeans.Status == FitStatus.Converged)
                 return new StaticFit(

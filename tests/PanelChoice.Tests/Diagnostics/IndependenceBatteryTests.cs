@@ -218,7 +218,7 @@ public class IndependenceBatteryTests
         var pass = set.Covariates.Single(c => c.Term == "pass");
         var design = ChoiceDesignBuilder.Build(
             set with { Covariates = [.. set.Covariates, pass with { Term = "person mean of pass" }] }, made.Tree, made.Study.Nests, NestedLogitForm.UtilityScaled);
-        Assert.Equal([set.Covariates.Length], PersonMeans.Collinear(design, set.Covariates.Length));
+        Assert.Equal([set.Covariates.Length], PersonMeans.Collinear(design, set.Covariates.Length, 1));
         var varies = PersonMeans.VaryWithinPersons(design);
         Assert.False(varies[set.Covariates.IndexOf(pass)]);
         Assert.True(varies[set.Covariates.IndexOf(set.Covariates.Single(c => c.Term == "cost"))]);
