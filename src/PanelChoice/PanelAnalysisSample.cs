@@ -56,7 +56,7 @@ public sealed class PanelAnalysisSample : IDisposable
         return Parts(study, bytesKept, rowsOfPart, null, work, (_, designs) =>
             designs.Main(format => new MemoryBlockStore(format)).Then(made => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
                 made.Sample, made.Design,
-                () => StaticDesign.Of(study, made.Sample, made.Design, terms => designs.Other(terms, f => new MemoryBlockStore(f)).Value), null))));
+                () => StaticDesign.Of(study, made.Sample, made.Design, terms => designs.Other(terms, f => new MemoryBlockStore(f)).Value, f => new MemoryBlockStore(f)), null))));
     }
 
     /// <summary>

@@ -19,7 +19,7 @@ internal static class BenchmarkCommand
     [
         ("gradient", LikelihoodRows.Gradient), ("stream", LikelihoodRows.Stream), ("hessian", LikelihoodRows.Hessian), ("fit", EstimationRows.Fit),
         ("covariances", EstimationRows.Covariances), ("bootstrap", EstimationRows.Bootstrap), ("jackknife", EstimationRows.Jackknife),
-        ("threads", LikelihoodRows.Threads),
+        ("diagnostics", DiagnosticsRows.Battery), ("threads", LikelihoodRows.Threads),
     ];
 
     /// <summary>Rows that are measured once.</summary>

@@ -25,14 +25,17 @@ internal sealed record StaticDesign(ChoiceDesign Design, ImmutableArray<string> 
     /// <param name="study">The study.</param>
     /// <param name="sample">The sample of the user's model.</param>
     /// <param name="main">The design of the user's model.</param>
-    /// <param name="build">Builds the design of other terms on the same sample; null where they do not fit it.</param>
+    /// <param name="build">Builds the design of other terms on the same sample from the data; null where they do not fit it.</param>
+    /// <param name="target">Where a design goes that can be derived from the main one without the data; null where none is to be.</param>
     public static StaticDesign? Of(
-        StudySpecification study, EstimationSample sample, ChoiceDesign main, Func<ImmutableArray<TermSpecification>, ChoiceDesign?> build)
+        StudySpecification study, EstimationSample sample, ChoiceDesign main, Func<ImmutableArray<TermSpecification>, ChoiceDesign?> build,
+        Func<BlockFormat, IBlockTarget>? target = null)
     {
         var terms = TermsOf(study);
         if (terms.IsEmpty) return null;
         var varies = PersonMeans.VaryWithinPersons(main);
         var means = PersonMeans.TermsFor(terms, term => sample.Covariates.Select((c, k) => varies[k] && study.Terms[c.TermIndex] == term).Any(v => v));
+        if (target is not null && DerivedDesign.Of(study, sample, main, terms, means, target) is { } derived) return new StaticDesign(derived, Names(means));
         if (build([.. terms, .. means]) is { } all) return new StaticDesign(all, Names(means));
         means = [.. means.Where(m => build([.. terms, m]) is not null)];
         return build([.. terms, .. means]) is { } some ? new StaticDesign(some, Names(means))

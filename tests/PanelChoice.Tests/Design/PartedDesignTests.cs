@@ -39,6 +39,47 @@ public class PartedDesignTests
         }
     }
 
+    [Theory]
+    [MemberData(nameof(Rules))]
+    public void The_static_design_derived_from_the_main_one_has_the_bits_of_the_one_built_from_the_data(string rule, string without)
+    {
+        using var folder = new TemporaryFolder();
+        var written = Write(folder, rule, without, "");
+        var cost = written.Terms.Single(t => t.Name == "minutes") with
+        {
+            Name = "cost by mode", Source = new ColumnSource("cost", new Now(), null, false, null), Each = true, Base = "A",
+        };
+        // Means of indicators of a text column have names that only the data tell.
+        var study = written with { Terms = [.. written.Terms.Where(t => t.Name != "weather"), cost] };
+        var whole = Whole(study);
+        Assert.Equal(3, whole.Static!.Means.Length);
+        var asksTheData = false;
+        var derived = StaticDesign.Of(
+            study, whole.Sample, whole.Design,
+            _ =>
+            {
+                asksTheData = true;
+                return whole.Static.Design;
+            },
+            format => new MemoryBlockStore(format))!;
+        Assert.Equal(rule == "workday", asksTheData);
+        Same(whole.Static.Design, derived.Design);
+        Assert.Equal(whole.Static.Means.AsEnumerable(), derived.Means);
+
+        asksTheData = false;
+        var lagged = study with { Terms = [.. study.Terms.Where(t => t.Name != "minutes")] };
+        var other = Whole(lagged);
+        StaticDesign.Of(
+            lagged, other.Sample, other.Design,
+            _ =>
+            {
+                asksTheData = true;
+                return other.Static!.Design;
+            },
+            format => new MemoryBlockStore(format));
+        Assert.True(asksTheData, "the mean of a column that enters with a lag alone is not in the main design");
+    }
+
     [Fact]
     public void Rows_inside_a_person_may_stand_in_any_order()
     {
