@@ -119,7 +119,15 @@ internal static class CommandLine
             if (!string.IsNullOrWhiteSpace(file) && !BuildCommand.Writes(file)) result.AddError($"--out needs a file that ends in .csv or .parquet, not '{file}'.");
         });
         var command = new Command("build", "Builds the covariates: lagged choices, lagged attributes, habit stocks and the rest.") { study, output };
-        command.SetAction(r => BuildCommand.Run(r.GetRequiredValue(study), r.GetValue(output), options(r)));
+        var store = new StoreOptions(command, Path);
+        command.Validators.Add(result =>
+        {
+            if (result.GetResult(output) is not null && store.AreIn(result))
+                result.AddError("--out writes covariates that are held in memory, --store a design that is not; give one of them.");
+        });
+        command.SetAction(r => store.Of(r) is { } kept
+            ? BuildCommand.Run(r.GetRequiredValue(study), kept, options(r))
+            : BuildCommand.Run(r.GetRequiredValue(study), r.GetValue(output), options(r)));
         return command;
     }
 

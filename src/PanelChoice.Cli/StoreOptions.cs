@@ -32,6 +32,9 @@ internal sealed class StoreOptions
     public KeptDesign? Of(ParseResult parsed) =>
         parsed.GetValue(store) is { } file ? new KeptDesign(file, parsed.GetValue(memory) ?? KeptDesign.UsualMegabytes) : null;
 
+    /// <summary>Whether a store is named on the command line.</summary>
+    public bool AreIn(CommandResult result) => result.GetResult(store) is not null;
+
     private static int? Megabytes(ArgumentResult result)
     {
         var text = result.Tokens[0].Value;

@@ -23,6 +23,7 @@ internal static class StudyRun
     public static int Reject(RunOptions options, IReadOnlyCollection<Problem> problems)
     {
         foreach (var problem in problems) options.Terminal.Problem(problem.Sentence);
+        if (problems.All(p => p.Id == "store.little_memory")) return ExitCode.Usage;
         return problems.All(p => p.Id is "study.not_found" or "data.not_found" or "parts.not_found" or "parts.missing") ? ExitCode.NotFound : ExitCode.Rejected;
     }
 }

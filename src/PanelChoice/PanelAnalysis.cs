@@ -34,7 +34,7 @@ public static class PanelAnalysis
         ArgumentNullException.ThrowIfNull(read);
         return read.Then(sample =>
         {
-            using (sample) return sample.WhileReadable(() => Checked<AnalysisResult>.Good(Conclude(Fit(study, sample, work), work)));
+            using (sample) return sample.Estimate(() => Checked<AnalysisResult>.Good(Conclude(Fit(study, sample, work), work)));
         });
     }
 
@@ -76,7 +76,8 @@ public static class PanelAnalysis
         var model = MaximumLikelihood.Fit(likelihood, form, study.Estimate, work);
         // Sentences of later stages name clusters; from here on they know them by pseudonyms alone.
         var pseudonyms = Pseudonyms.Of(sample.Sample.Sha256, sample.Design.Clusters);
-        return new PanelAnalysisFit(study, sample, model, InferenceInput.From(model, new ClusterRefitter(model, work.Threads), pseudonyms));
+        var evidence = InferenceInput.From(model, new ClusterRefitter(model, work.Threads), pseudonyms) with { RefitsAtOnce = sample.RefitsAtOnce };
+        return new PanelAnalysisFit(study, sample, model, evidence);
     }
 
     /// <summary>Everything after the fit: standard errors, the test of independence, what was found.</summary>

@@ -76,7 +76,7 @@ public static class PanelAnalysisParts
     private static Checked<T> With<T>(Checked<PanelAnalysisSample> read, Func<PanelAnalysisSample, Checked<T>> use)
         where T : class => read.Then(sample =>
     {
-        using (sample) return sample.WhileReadable(() => use(sample));
+        using (sample) return sample.Estimate(() => use(sample));
     });
 
     /// <summary>Does everything else that the main job does, with the refits of the parts: the result is the same, bit for bit.</summary>

@@ -1,9 +1,11 @@
 using System.Collections.Immutable;
+using System.Globalization;
 using PanelChoice.Covariates;
 using PanelChoice.Data;
 using PanelChoice.Design;
 using PanelChoice.Design.Store;
 using PanelChoice.Diagnostics;
+using PanelChoice.Inference;
 using PanelChoice.Numerics;
 using PanelChoice.Panels;
 using PanelChoice.Study;
@@ -22,6 +24,7 @@ public sealed class PanelAnalysisSample : IDisposable
     private readonly Lazy<StaticDesign?> staticDesign;
 
     private readonly DesignStore? store;
+    private Problem? littleMemory;
 
     private PanelAnalysisSample(EstimationSample sample, ChoiceDesign design, Func<StaticDesign?> staticDesign, DesignStore? store)
     {
@@ -36,6 +39,9 @@ public sealed class PanelAnalysisSample : IDisposable
 
     /// <summary>The design.</summary>
     public ChoiceDesign Design { get; }
+
+    /// <summary>Most refits that may be at work at a time.</summary>
+    internal int RefitsAtOnce { get; private init; } = int.MaxValue;
 
     /// <summary>The design on which the cause of dependence is judged; made when it is first asked for.</summary>
     internal StaticDesign? Static() => staticDesign.Value;
@@ -87,13 +93,29 @@ public sealed class PanelAnalysisSample : IDisposable
             if (!problems.IsEmpty) return Checked<PanelAnalysisSample>.Bad(problems);
         }
 
-        return DesignStore.Open(store, study, memoryBytes / ShareHeld).Then(kept => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
-            kept.Sample, kept.Main, () => kept.Second is null ? null : new StaticDesign(kept.Second, kept.SecondNames), kept)));
+        var memory = (RunMemory?)null;
+        return DesignStore.Open(store, study, design =>
+        {
+            memory = RunMemory.Of(design, study.Inference);
+            return Math.Min(memoryBytes / ShareHeld, memory.Left(memoryBytes, work.Threads));
+        }).Then(kept => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
+            kept.Sample, kept.Main, () => kept.Second is null ? null : new StaticDesign(kept.Second, kept.SecondNames), kept)
+            {
+                RefitsAtOnce = memory!.RefitsAtOnce(memoryBytes),
+                littleMemory = memoryBytes < memory.Least ? LittleMemory(kept, memoryBytes, memory) : null,
+            }));
     }
 
-    /// <summary>Runs something that reads the design, and turns a store that cannot be read any more into a problem.</summary>
-    internal Checked<T> WhileReadable<T>(Func<Checked<T>> use)
-        where T : class => StoreReadException.Guard(store?.File, use);
+    private static Problem LittleMemory(DesignStore kept, long memoryBytes, RunMemory needed) => new(
+        "store.little_memory", kept.File,
+        string.Create(
+            CultureInfo.InvariantCulture,
+            $"the sums over {kept.Main.Persons:#,0} persons do not fit into a budget of {memoryBytes / 1_000_000:#,0} MB, however little of the design is held"),
+        string.Create(CultureInfo.InvariantCulture, $"give --memory {Math.Ceiling(needed.Least / 1e6)} or more"));
+
+    /// <summary>Runs an estimation on the sample; a budget that cannot hold what it takes, and a store that cannot be read any more, become problems.</summary>
+    internal Checked<T> Estimate<T>(Func<Checked<T>> use)
+        where T : class => littleMemory is { } problem ? Checked<T>.Bad([problem]) : StoreReadException.Guard(store?.File, use);
 
     /// <summary>Lets go of the store's file, where there is one.</summary>
     public void Dispose() => store?.Dispose();

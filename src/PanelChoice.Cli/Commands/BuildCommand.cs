@@ -33,4 +33,21 @@ internal static class BuildCommand
             options.Print(letter);
             return ExitCode.Done;
         });
+
+    /// <summary>Builds the design of a panel larger than memory and keeps it for later runs.</summary>
+    /// <param name="study">The study file.</param>
+    /// <param name="kept">The store.</param>
+    /// <param name="options">What every command takes.</param>
+    public static int Run(string study, KeptDesign kept, RunOptions options) => StudyRun.With(
+        study, options,
+        specification =>
+        {
+            KeptDesign.RefuseInput(kept, specification);
+            return ProgressDisplay.Run(options, work => KeptDesign.Read(kept, specification, work));
+        },
+        (specification, sample) =>
+        {
+            using (sample) options.Print(StoreReport.Of(specification, sample, kept.File));
+            return ExitCode.Done;
+        });
 }

@@ -80,12 +80,23 @@ internal sealed class ClusterExpansion
         ImmutableArray<int> active = [.. model.Layout.Free.Except(model.Held)];
         long n = active.Length;
         long clusters = model.Design.Clusters.Length;
-        if (n == 0 || clusters * n > 2 * mostEntries) return null;
-        var expansion = new ClusterExpansion(model, scale, active, clusters * (n + (n * (n + 1) / 2)) <= mostEntries);
+        var entries = Entries(clusters, n, mostEntries);
+        if (entries == 0) return null;
+        var expansion = new ClusterExpansion(model, scale, active, holdsHessians: entries > clusters * n);
         if (expansion.InverseOfSample() is not { } inverse) return null;
         expansion.AddPersons(likelihood, inverse, cancellation);
         expansion.Third = expansion.ThirdDerivatives(likelihood);
         return expansion;
+    }
+
+    /// <summary>Doubles that scores, and Hessians where they may be held too, of so many clusters take; 0 where not even the scores may be held.</summary>
+    /// <param name="clusters">Number of clusters.</param>
+    /// <param name="parameters">Number of parameters that were estimated.</param>
+    /// <param name="mostEntries">Doubles that scores and Hessians may take.</param>
+    public static long Entries(long clusters, long parameters, long mostEntries)
+    {
+        var (scores, all) = (clusters * parameters, clusters * (parameters + (parameters * (parameters + 1) / 2)));
+        return all <= mostEntries ? all : scores <= 2 * mostEntries ? scores : 0;
     }
 
     /// <summary>

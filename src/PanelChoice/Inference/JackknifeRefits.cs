@@ -82,7 +82,7 @@ internal sealed record JackknifeRefits(
             return NumberedRefits.Make(input, RefitSeries.Jackknife, [.. pending.Select(d => d.Cluster)], g => Without(input, g), work);
         return
         [
-            .. pending.Chunk(NumberedRefits.BatchPerThread * Math.Max(1, work.Threads))
+            .. pending.Chunk(NumberedRefits.Batch(input, work))
                 .SelectMany(batch => input.Refitter.Refit([.. batch.Select(d => d.Request(input))], work.Cancellation)),
         ];
     }

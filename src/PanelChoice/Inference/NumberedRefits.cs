@@ -14,6 +14,9 @@ internal static class NumberedRefits
     /// </summary>
     public const int BatchPerThread = 32;
 
+    /// <summary>Refits handed to the refitter at a time.</summary>
+    public static int Batch(InferenceInput input, WorkContext work) => Math.Min(input.RefitsAtOnce, BatchPerThread * Math.Max(1, work.Threads));
+
     /// <summary>One outcome for each number, in the same order.</summary>
     /// <param name="input">The fit, the refitter and the journal.</param>
     /// <param name="series">The series.</param>
@@ -29,7 +32,7 @@ internal static class NumberedRefits
             for (var i = 0; i < outcomes.Length; i++) outcomes[i] = journal.Find(series, numbers[i]);
         var missing = Enumerable.Range(0, outcomes.Length).Where(i => outcomes[i] is null).ToList();
         var done = outcomes.Length - missing.Count;
-        foreach (var batch in missing.Chunk(BatchPerThread * Math.Max(1, work.Threads)))
+        foreach (var batch in missing.Chunk(Batch(input, work)))
         {
             work.Report(step, done, outcomes.Length);
             ImmutableArray<int> asked = [.. batch.Select(i => numbers[i])];

@@ -164,7 +164,7 @@ public sealed class DesignStoreTests : IDisposable
 
     private string Refused(string id, StudySpecification of)
     {
-        var problem = Assert.Single(DesignStore.Open(store, of, 0).Problems);
+        var problem = Assert.Single(DesignStore.Open(store, of, _ => 0).Problems);
         Assert.Equal(id, problem.Id);
         return problem.Sentence;
     }

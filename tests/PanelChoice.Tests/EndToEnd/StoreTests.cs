@@ -88,6 +88,23 @@ public class StoreTests
     }
 
     [Fact]
+    public void A_store_can_be_built_ahead_of_the_runs_that_read_it()
+    {
+        using var study = new SmallStudy();
+        var store = study.PathOf("kept.store");
+        var built = CommandLineProcess.InProcess("build", study.StudyFile, "--store", store);
+        Assert.Equal((0, ""), (built.Code, built.Error));
+        Assert.Contains("panelchoice estimate", built.Out, StringComparison.Ordinal);
+        Assert.Equal(["kept.store"], study.OtherFiles());
+        var bytes = File.ReadAllBytes(store);
+        Assert.Equal(0, CommandLineProcess.InProcess("estimate", study.StudyFile, "--store", store).Code);
+        Assert.Equal(bytes, File.ReadAllBytes(store));
+        Assert.Equal(64, CommandLineProcess.InProcess("build", study.StudyFile, "--store", store, "--out", "x.csv").Code);
+        File.WriteAllBytes(store, bytes[..500]);
+        Assert.Equal(65, CommandLineProcess.InProcess("build", study.StudyFile, "--store", store).Code);
+    }
+
+    [Fact]
     public void What_cannot_be_meant_is_told_before_anything_is_read()
     {
         using var study = new SmallStudy();

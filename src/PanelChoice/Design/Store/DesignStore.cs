@@ -45,12 +45,12 @@ internal sealed class DesignStore : IDisposable
     /// </summary>
     /// <param name="path">The file.</param>
     /// <param name="study">The study.</param>
-    /// <param name="bytesHeld">Bytes of blocks that may be held in memory.</param>
+    /// <param name="bytesHeld">Bytes of blocks that may be held in memory, for a design without them.</param>
     /// <returns>
     /// The store, or the problem: <c>store.unreadable</c>, <c>store.not_a_store</c>, <c>store.other_version</c>, <c>store.damaged</c>,
     /// <c>store.other_study</c>, <c>store.other_data</c>, <c>data.not_found</c>.
     /// </returns>
-    public static Checked<DesignStore> Open(string path, StudySpecification study, long bytesHeld)
+    public static Checked<DesignStore> Open(string path, StudySpecification study, Func<ChoiceDesign, long> bytesHeld)
     {
         var file = (SafeFileHandle?)null;
         try
@@ -73,7 +73,7 @@ internal sealed class DesignStore : IDisposable
     /// <inheritdoc/>
     public void Dispose() => file.Dispose();
 
-    private static Checked<DesignStore> Open(SafeFileHandle file, string path, StudySpecification study, long bytesHeld)
+    private static Checked<DesignStore> Open(SafeFileHandle file, string path, StudySpecification study, Func<ChoiceDesign, long> bytesHeld)
     {
         const string Again = "delete the store, and it is made anew";
         var damaged = () => Refuse(path, "store.damaged", "the store is damaged or was cut off", Again);
@@ -101,7 +101,7 @@ internal sealed class DesignStore : IDisposable
 
         var blocks = header.Blocks();
         if (DesignOf(file, header, header.Main, nests, blocks, bytesHeld) is not { } main) return damaged();
-        var second = header.Second is null ? null : DesignOf(file, header, header.Second, nests, blocks, 0);
+        var second = header.Second is null ? null : DesignOf(file, header, header.Second, nests, blocks, _ => 0);
         return header.Second is not null && second is null
             ? damaged()
             : Checked<DesignStore>.Good(new DesignStore(file, path, header.Sample, main, second, header.SecondNames));
@@ -126,11 +126,15 @@ internal sealed class DesignStore : IDisposable
 
     /// <summary>A design, each of whose blocks was read and found whole; null where one is not.</summary>
     private static ChoiceDesign? DesignOf(
-        SafeFileHandle file, StoreHeader header, StoredDesign stored, NestTree tree, ImmutableArray<DesignBlock> blocks, long bytesHeld)
+        SafeFileHandle file, StoreHeader header, StoredDesign stored, NestTree tree, ImmutableArray<DesignBlock> blocks, Func<ChoiceDesign, long> bytesHeld)
     {
         var held = new MemoryBlockStore(stored.Format);
+        var design = new ChoiceDesign(
+            tree, stored.Layout, stored.Columns, blocks, new FileBlockStore(stored.Format, file, stored.FirstByte, blocks, held),
+            header.PersonStart, header.PersonWeight, header.ClusterBy, header.ClusterOf, header.Clusters);
         var offset = FileBlockStore.Offsets(stored.Format, stored.FirstByte, blocks);
         if (stored.Checksums.Length != blocks.Length) return null;
+        var mostHeld = bytesHeld(design);
         var buffer = Array.Empty<byte>();
         for (var b = 0; b < blocks.Length; b++)
         {
@@ -139,12 +143,10 @@ internal sealed class DesignStore : IDisposable
             var block = buffer.AsSpan(0, bytes);
             FileBlockStore.ReadExactly(file, block, offset[b]);
             if (Checksum.Of(block) != stored.Checksums[b]) return null;
-            if (held.Count == b && held.Bytes + bytes <= bytesHeld) block.CopyTo(held.Append(blocks[b].Lanes));
+            if (held.Count == b && held.Bytes + bytes <= mostHeld) block.CopyTo(held.Append(blocks[b].Lanes));
         }
 
-        return new ChoiceDesign(
-            tree, stored.Layout, stored.Columns, blocks, new FileBlockStore(stored.Format, file, stored.FirstByte, blocks, held),
-            header.PersonStart, header.PersonWeight, header.ClusterBy, header.ClusterOf, header.Clusters);
+        return design;
     }
 
     private static Checked<DesignStore> Refuse(string path, string id, string what, string remedy) =>
