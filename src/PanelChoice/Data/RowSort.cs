@@ -62,7 +62,7 @@ internal sealed class RowSort : IDisposable
         if (freeBytes(folder) is var free && free < files * rows * rowBytes)
             throw new DiskWriteException(new IOException(string.Create(
                 CultureInfo.InvariantCulture,
-                $"the rows of {table} are not sorted by person, and sorting them takes {Megabytes(files * rows * rowBytes, Math.Ceiling)} in its folder, where {Megabytes(free, Math.Floor)} are free")));
+                $"the rows of {table} are not sorted by person, and sorting them takes {Megabytes(files * rows * rowBytes, Math.Ceiling)} in its folder, where {Megabytes(free, Math.Floor)} are free.")));
         file = RunFile.Beside(beside);
         work.Report(Step, 0, total);
     }

@@ -109,7 +109,7 @@ public sealed class UnsortedPanelTests : IDisposable
         Mix("scattered");
         using var sort = new RowSort(folder.PathOf("kept.store"), 1 << 20, WorkContext.Quiet, _ => 12_345);
         var refused = Assert.Throws<DiskWriteException>(() => TableScan.Of(study, 0, sort));
-        Assert.Equal("the rows of panel.csv are not sorted by person, and sorting them takes 0.2 MB in its folder, where 0.0 MB are free", refused.Message);
+        Assert.Equal("the rows of panel.csv are not sorted by person, and sorting them takes 0.2 MB in its folder, where 0.0 MB are free.", refused.Message);
         AssertNothingLeft();
     }
 
