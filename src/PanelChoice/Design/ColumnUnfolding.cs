@@ -47,7 +47,7 @@ internal static class ColumnUnfolding
     }
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private static Vector256<int> Whole32(Vector128<short> whole)
+    internal static Vector256<int> Whole32(Vector128<short> whole)
     {
         if (Avx2.IsSupported) return Avx2.ConvertToVector256Int32(whole);
         var (low, high) = Vector128.Widen(whole);
@@ -55,7 +55,7 @@ internal static class ColumnUnfolding
     }
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private static Vector512<double> Doubles(Vector256<int> whole)
+    internal static Vector512<double> Doubles(Vector256<int> whole)
     {
         if (Avx512F.IsSupported) return Avx512F.ConvertToVector512Double(whole);
         var (low, high) = Vector256.Widen(whole);

@@ -43,6 +43,7 @@ internal sealed class ReplicateWork
         var start = plan.Design.PersonStart;
         var end = block.FirstSituation + block.Situations;
         var weights = LaneWeights.OfPersons(personWeight);
+        strip.KeepsAll = false;
         int from = 0, to = -1;
         for (var p = plan.Design.PersonOf[block.FirstSituation]; p < personWeight.Length && start[p] < end; p++)
         {
@@ -88,11 +89,12 @@ internal sealed class ReplicateWork
         var (first, end) = (design.PersonStart[person], design.PersonStart[person + 1]);
         var block = design.Blocks[design.BlockOf[first]];
         hessian ??= new StripHessian(plan, strip, probabilities);
+        strip.KeepsAll = true;
         var tiles = (end - block.FirstSituation + Tile - 1) / Tile;
         var weights = LaneWeights.One(first, end);
         for (var lane = (first - block.FirstSituation) / Tile * Tile; lane < tiles * Tile; lane += strip.Lanes)
         {
-            strip.LoadNext(block, lane, tiles * Tile, weights);
+            strip.OpenNext(block, lane, tiles * Tile, weights);
             probabilities.Up();
             probabilities.Down();
             if (withGradient) gradient.Add();
@@ -104,7 +106,7 @@ internal sealed class ReplicateWork
     {
         for (var lane = from * Tile; lane < to * Tile; lane += strip.Lanes)
         {
-            if (!strip.LoadNext(block, lane, to * Tile, weights)) continue;
+            if (!strip.OpenNext(block, lane, to * Tile, weights)) continue;
             probabilities.Up();
             value += probabilities.LogLikelihood;
             probabilities.Down();

@@ -5,9 +5,8 @@ using PanelChoice.Design;
 namespace PanelChoice.Likelihood;
 
 /// <summary>
-/// Sums over weighted scores, strip by strip: those of each person, and the products s s' over situations. A strip's scores stand as rows, one for
-/// each parameter, lane beside lane, in the units in which columns are held; they are never written out situation by situation. Formulas of the
-/// rows: <see cref="StripGradient"/>. One instance is a work space: it is not for use by several threads at once.
+/// Sums over weighted scores, strip by strip: those of each person, and the products s s' over situations. A strip's scores stand as rows
+/// (<see cref="ScoreRows"/>); they are never written out situation by situation. One instance is a work space: it is not for use by several threads at once.
 /// </summary>
 internal sealed class ScoreWork
 {
@@ -15,7 +14,7 @@ internal sealed class ScoreWork
     private readonly StripPlan plan;
     private readonly Strip strip;
     private readonly StripProbabilities probabilities;
-    private readonly StripRows scores;
+    private readonly ScoreRows scores;
     private readonly HessianSums products;
     private readonly HessianPanel panel;
     private readonly nuint[] places;
@@ -24,9 +23,9 @@ internal sealed class ScoreWork
     public ScoreWork(StripPlan plan)
     {
         this.plan = plan;
-        strip = new Strip(plan);
+        strip = new Strip(plan) { KeepsAll = true };
         probabilities = new StripProbabilities(plan, strip);
-        scores = new StripRows(plan.K + HessianPanel.BlockRows, plan.StripLanes);
+        scores = new ScoreRows(plan, strip, HessianPanel.BlockRows);
         products = new HessianSums(plan.K);
         places = [.. Enumerable.Range(0, plan.K).Select(k => (nuint)(k * scores.Stride))];
         panel = new HessianPanel(products, [.. Enumerable.Range(0, plan.K)], [], -1);
@@ -44,10 +43,10 @@ internal sealed class ScoreWork
         var weights = LaneWeights.OfPersons(personWeight);
         for (var lane = 0; lane < block.Lanes; lane += strip.Lanes)
         {
-            if (!strip.LoadNext(block, lane, block.Lanes, weights)) continue;
+            if (!strip.OpenNext(block, lane, block.Lanes, weights)) continue;
             probabilities.Up();
             probabilities.Down();
-            SetScores();
+            scores.Set();
             products.AddProducts(panel, ref scores.Row(0), scores.Stride, ref scores.Row(0), places, strip.Lanes);
             AddPersons(block.FirstSituation + lane, Math.Min(block.Situations - lane, strip.Lanes), byPerson);
         }
@@ -55,42 +54,6 @@ internal sealed class ScoreWork
 
     /// <summary>Adds the products since the last time to a K x K matrix, in the user's units.</summary>
     public void Flush(Span<double> matrix) => products.Flush(1, plan.Units, matrix);
-
-    private void SetScores()
-    {
-        for (var k = 0; k < plan.K; k++) scores.Lanes(k, strip.Lanes).Clear();
-        for (var j = 0; j < plan.J; j++)
-        {
-            var leaf = plan.Leaves[j];
-            ref var slope = ref strip.Slope(j);
-            for (var i = 0; i < leaf.Stored.Length; i++)
-                AddProduct(ref scores.Row(leaf.Stored[i]), ref slope, ref strip.Columns.Column(leaf.Places[i]), 1);
-            foreach (var k in leaf.Constants) Add(ref scores.Row(k), ref slope);
-        }
-
-        for (var n = 0; n < plan.Nodes; n++)
-        {
-            if (plan.NodeParameter[n] is not (>= 0 and var parameter)) continue;
-            ref var row = ref scores.Row(parameter);
-            AddProduct(ref row, ref plan.IsScaled ? ref strip.Flow(n) : ref strip.Slope(plan.J + n), ref strip.Tilt(n), 1);
-            if (!plan.IsScaled) continue;
-            foreach (var c in plan.Children[n]) AddProduct(ref row, ref strip.OnPath(c), ref strip.LogConditional(c), -1 / strip.Dissimilarity[n]);
-        }
-    }
-
-    private void Add(ref double row, ref double left)
-    {
-        for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
-            (Vector512.LoadUnsafe(ref row, lane) + Vector512.LoadUnsafe(ref left, lane)).StoreUnsafe(ref row, lane);
-    }
-
-    private void AddProduct(ref double row, ref double left, ref double right, double factor)
-    {
-        var f = Vector512.Create(factor);
-        for (nuint lane = 0; lane < (nuint)strip.Lanes; lane += Tile)
-            Vector512.FusedMultiplyAdd(f * Vector512.LoadUnsafe(ref left, lane), Vector512.LoadUnsafe(ref right, lane), Vector512.LoadUnsafe(ref row, lane))
-                .StoreUnsafe(ref row, lane);
-    }
 
     /// <summary>Adds up the lanes of each person; persons share tiles, so that the first and the last tile count in part.</summary>
     private void AddPersons(int firstSituation, int situations, Span<double> byPerson)

@@ -1,19 +1,23 @@
 using System.Runtime.CompilerServices;
+using System.Runtime.InteropServices;
+using System.Runtime.Intrinsics;
 using PanelChoice.Design;
 
 namespace PanelChoice.Likelihood;
 
 /// <summary>
-/// The columns of a strip as doubles, in the units in which they are held (<see cref="StripPlan.Units"/>). A column held as doubles is read
-/// where it stands: copying it would cost as much as all that is done with it. One held as whole numbers is unfolded into a row of the strip.
+/// The columns and masks of a strip where they stand in the block's bytes; loops over a <see cref="ColumnGroup"/> turn whole numbers into doubles
+/// as they read. For what reads a column many times they can be had as doubles: those held as whole numbers are then unfolded into rows.
 /// </summary>
 internal sealed class StripColumns
 {
     private const int Tile = ChoiceDesign.TileLanes;
     private readonly StripPlan plan;
     private readonly BlockReader reader;
-    private readonly StripRows unfolded;
     private readonly int[] rowOf;
+    private readonly byte[] offeredWithWeight;
+    private StripRows? unfolded;
+    private bool hasIdleLanes;
     private int firstLane;
     private int lanes;
 
@@ -24,34 +28,63 @@ internal sealed class StripColumns
         reader = plan.Design.Store.Reader();
         var rows = 0;
         rowOf = [.. plan.Design.Store.Format.Columns.Select(c => c.Coding == ColumnCoding.AsIs ? -1 : rows++)];
-        unfolded = new StripRows(rows, plan.StripLanes);
+        offeredWithWeight = new byte[plan.StripLanes / Tile * plan.J];
     }
 
-    /// <summary>Availability masks of the strip, tile by tile.</summary>
-    public ReadOnlySpan<byte> OfferedMasks => reader.OfferedMasks.Slice(firstLane / Tile * plan.J, lanes / Tile * plan.J);
-
-    /// <summary>Choice masks of the strip, tile by tile.</summary>
-    public ReadOnlySpan<byte> ChosenMasks => reader.ChosenMasks.Slice(firstLane / Tile * plan.J, lanes / Tile * plan.J);
-
     /// <summary>Moves to a strip.</summary>
-    public void Open(DesignBlock block, int firstLaneOfStrip, int lanesOfStrip)
+    /// <param name="block">The block.</param>
+    /// <param name="firstLaneOfStrip">First lane.</param>
+    /// <param name="weight">The lanes' weights. Where one is 0 nothing counts as offered, so that not even a utility that overflows does harm.</param>
+    public void Open(DesignBlock block, int firstLaneOfStrip, ReadOnlySpan<double> weight)
     {
         reader.Open(block);
         firstLane = firstLaneOfStrip;
-        lanes = lanesOfStrip;
+        lanes = weight.Length;
+        hasIdleLanes = weight[..Math.Min(lanes, block.Situations - firstLane)].Contains(0.0);
+        if (!hasIdleLanes) return;
+        var offered = reader.OfferedMasks.Slice(firstLane / Tile * plan.J, lanes / Tile * plan.J);
+        for (var lane = 0; lane < lanes; lane += Tile)
+        {
+            var live = ~Vector512.Equals(Vector512.Create(weight[lane..]), Vector512<double>.Zero).ExtractMostSignificantBits();
+            for (var i = lane / Tile * plan.J; i < ((lane / Tile) + 1) * plan.J; i++) offeredWithWeight[i] = (byte)(offered[i] & live);
+        }
     }
 
-    /// <summary>Makes an alternative's columns ready to be read.</summary>
-    public void Prepare(LeafColumns leaf)
+    /// <summary>Availability mask of an alternative in the first tile; those of the next tiles follow at a distance of J.</summary>
+    public ref byte Offered(int alternative) =>
+        ref hasIdleLanes ? ref offeredWithWeight[alternative] : ref Mask(reader.OfferedMasks, alternative);
+
+    /// <summary>Choice mask of an alternative in the first tile; those of the next tiles follow at a distance of J.</summary>
+    public ref byte Chosen(int alternative) => ref Mask(reader.ChosenMasks, alternative);
+
+    /// <summary>First byte of the strip's lanes of a group's column; of its first column where the group has no such number.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    public ref byte Held<THeld, TCount>(ColumnGroup group, int number)
+        where THeld : struct, IHeldAs
+        where TCount : struct, IColumnCount =>
+        ref Unsafe.Add(ref reader.Column(group.Places[number < TCount.Value ? number : 0]), firstLane * THeld.Width);
+
+    /// <summary>Unfolds all columns that are held as whole numbers.</summary>
+    public void Unfold()
     {
         var columns = plan.Design.Store.Format.Columns;
-        foreach (var column in leaf.Places)
-            if (rowOf[column] >= 0) ColumnUnfolding.Unfold(reader, column, columns[column], firstLane, unfolded.Lanes(rowOf[column], lanes));
+        for (var c = 0; c < rowOf.Length; c++)
+        {
+            if (rowOf[c] < 0) continue;
+            unfolded ??= new StripRows(rowOf.Max() + 1, plan.StripLanes);
+            ColumnUnfolding.Unfold(reader, c, columns[c], firstLane, unfolded.Lanes(rowOf[c], lanes));
+        }
     }
 
-    /// <summary>The strip's lanes of a stored column. Columns do not move: their distances from each other stay the same while the strip is open.</summary>
+    /// <summary>
+    /// The strip's lanes of a stored column as doubles, where the strip is unfolded. Columns do not move: their distances from each other stay
+    /// the same while the strip is open.
+    /// </summary>
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public ref double Column(int stored) => ref rowOf[stored] >= 0
-        ? ref unfolded.Row(rowOf[stored])
+        ? ref unfolded!.Row(rowOf[stored])
         : ref Unsafe.Add(ref Unsafe.As<byte, double>(ref reader.Column(stored)), firstLane);
+
+    private ref byte Mask(ReadOnlySpan<byte> masks, int alternative) =>
+        ref Unsafe.Add(ref MemoryMarshal.GetReference(masks), (firstLane / Tile * plan.J) + alternative);
 }

@@ -7,7 +7,8 @@ namespace PanelChoice.Likelihood;
 /// <param name="Places">The stored columns, ascending.</param>
 /// <param name="Stored">Parameter of each stored column.</param>
 /// <param name="Constants">Parameters whose covariate is the constant 1.</param>
-internal sealed record LeafColumns(int[] Places, int[] Stored, int[] Constants);
+/// <param name="Groups">The stored columns by how they are held.</param>
+internal sealed record LeafColumns(int[] Places, int[] Stored, int[] Constants, ColumnGroup[] Groups);
 
 /// <summary>
 /// What the vector kernel works out once for a design: the tree and the columns as plain arrays, and how many situations make a strip.
@@ -99,8 +100,10 @@ internal sealed class StripPlan
         for (var i = 1; i < stored.Count; i++)
             if (stored[i].Storage <= stored[i - 1].Storage)
                 throw new ArgumentException("The stored columns of an alternative do not follow each other.", nameof(design));
+        int[] places = [.. stored.Select(c => c.Storage)];
+        int[] parameters = [.. stored.Select(c => c.Parameter)];
         return new LeafColumns(
-            [.. stored.Select(c => c.Storage)], [.. stored.Select(c => c.Parameter)], [.. columns.Where(c => c.Storage < 0).Select(c => c.Parameter)]);
+            places, parameters, [.. columns.Where(c => c.Storage < 0).Select(c => c.Parameter)], ColumnGroup.Of(design.Store.Format, places, parameters));
     }
 
     private int[] SupportOf(int node)

@@ -1,3 +1,4 @@
+using System.Runtime.CompilerServices;
 using System.Runtime.Intrinsics;
 using PanelChoice.Design;
 
@@ -15,6 +16,7 @@ internal sealed class StripWork
     private readonly StripProbabilities probabilities;
     private readonly StripGradient gradient;
     private StripHessian? hessian;
+    private ScoreRows? scoreRows;
     private Vector512<double> value;
 
     /// <summary>A work space for the plan's design.</summary>
@@ -28,15 +30,18 @@ internal sealed class StripWork
 
     private StripHessian Hessian => hessian ??= new StripHessian(plan, strip, probabilities);
 
+    private ScoreRows ScoreRows => scoreRows ??= new ScoreRows(plan, strip, 0);
+
     /// <summary>Takes over parameters.</summary>
     public void Begin(ReadOnlySpan<double> parameters) => strip.Begin(parameters);
 
     /// <summary>Adds a block to the sums.</summary>
     public void AddBlock(DesignBlock block, in LaneWeights weights, Derivatives derivatives)
     {
+        strip.KeepsAll = derivatives == Derivatives.Hessian;
         for (var lane = 0; lane < block.Lanes; lane += strip.Lanes)
         {
-            if (!strip.LoadNext(block, lane, block.Lanes, weights)) continue;
+            if (!strip.OpenNext(block, lane, block.Lanes, weights)) continue;
             probabilities.Up();
             value += probabilities.LogLikelihood;
             if (derivatives == Derivatives.None) continue;
@@ -58,9 +63,10 @@ internal sealed class StripWork
     /// <summary>Writes log P of a block's situations.</summary>
     public void LogProbabilities(DesignBlock block, Span<double> log)
     {
+        strip.KeepsAll = true;
         for (var lane = 0; lane < block.Situations; lane += strip.Lanes)
         {
-            strip.LoadNext(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
+            strip.OpenNext(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
             probabilities.Up();
             var count = Math.Min(strip.Lanes, block.Situations - lane);
             probabilities.WriteLogProbabilities(log.Slice(block.FirstSituation + lane, count));
@@ -70,23 +76,27 @@ internal sealed class StripWork
     /// <summary>Writes the derivatives of log P of a block's situations, the block's situations x K.</summary>
     public void Scores(DesignBlock block, Span<double> scores)
     {
+        strip.KeepsAll = true;
         for (var lane = 0; lane < block.Situations; lane += strip.Lanes)
         {
-            strip.LoadNext(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
+            strip.OpenNext(block, lane, block.Lanes, LaneWeights.One(0, int.MaxValue));
             probabilities.Up();
             probabilities.Down();
             var count = Math.Min(strip.Lanes, block.Situations - lane);
-            gradient.WriteLanes(scores.Slice(lane * plan.K, count * plan.K));
+            ScoreRows.Set();
+            for (var k = 0; k < plan.K; k++)
+                for (var i = 0; i < count; i++) scores[((lane + i) * plan.K) + k] = Unsafe.Add(ref ScoreRows.Row(k), i) / plan.Units[k];
         }
     }
 
     /// <summary>Adds minus the second derivatives of the log-likelihood of a range of situations of one block to a K x K matrix.</summary>
     public void AddInformation(DesignBlock block, int firstSituation, int endSituation, Span<double> information)
     {
+        strip.KeepsAll = true;
         var end = (endSituation - block.FirstSituation + Tile - 1) / Tile * Tile;
         for (var lane = (firstSituation - block.FirstSituation) / Tile * Tile; lane < end; lane += strip.Lanes)
         {
-            strip.LoadNext(block, lane, end, LaneWeights.One(firstSituation, endSituation));
+            strip.OpenNext(block, lane, end, LaneWeights.One(firstSituation, endSituation));
             probabilities.Up();
             probabilities.Down();
             Hessian.Add();

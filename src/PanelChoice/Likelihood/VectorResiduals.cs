@@ -5,7 +5,7 @@ using PanelChoice.Design;
 namespace PanelChoice.Likelihood;
 
 /// <summary>
-/// Residuals from the rows that the vector kernel leaves on its way up the tree (p, t and the nodes' tilts), eight situations at a time: one way down the
+/// Residuals from the rows that the vector kernel leaves on its way up the tree (values, powers and what each node makes of them), eight situations at a time: one way down the
 /// tree for each hypothetical choice i. With the letters of <see cref="StripProbabilities"/>, o^i_c being 1 where c lies on the path to i, else 0,
 /// <code>
 /// a^i_c = s o^i_c + f^i_m p_c        f^i_m = a^i_m - o^i_m / l_m | l_m a^i_m - o^i_m,  at the root -1
@@ -41,7 +41,7 @@ internal sealed class VectorResiduals : SituationResiduals
         : base(layout)
     {
         this.plan = plan;
-        strip = new Strip(plan);
+        strip = new Strip(plan) { KeepsAll = true };
         probabilities = new StripProbabilities(plan, strip);
         strip.Begin(parameters);
         coordinate = [.. Enumerable.Range(0, plan.Nodes).Select(n => Array.IndexOf(layout.Nodes, n) is >= 0 and var d ? layout.J + d : -1)];
@@ -58,7 +58,8 @@ internal sealed class VectorResiduals : SituationResiduals
 
     public override int Open(DesignBlock block, int first)
     {
-        strip.LoadNext(block, first, block.Lanes, LaneWeights.One(0, int.MaxValue));
+        strip.OpenNext(block, first, block.Lanes, LaneWeights.One(0, int.MaxValue));
+        strip.Columns.Unfold();
         probabilities.Up();
         openTile = -1;
         return Math.Min(strip.Lanes, block.Situations - first);
@@ -97,15 +98,15 @@ internal sealed class VectorResiduals : SituationResiduals
 
         share[plan.J + plan.Root] = Vector512<double>.One;
         for (var n = plan.Root; n >= 0; n--)
-            foreach (var c in plan.Children[n]) share[c] = share[plan.J + n] * Vector512.LoadUnsafe(ref strip.Conditional(c), lane);
+            foreach (var c in plan.Children[n]) share[c] = share[plan.J + n] * Conditional(n, c, lane);
 
         Array.Clear(covariance);
         Array.Clear(observed);
-        var chosen = strip.Columns.ChosenMasks.Slice(tile * plan.J, plan.J);
+        ref var chosen = ref strip.Columns.Chosen(0);
         for (var i = 0; i < plan.J; i++)
         {
             SetHypothetical(i, lane);
-            var isChosen = TileMask.Lanes(chosen[i]);
+            var isChosen = TileMask.Lanes(Unsafe.Add(ref chosen, (tile * plan.J) + i));
             var size = hypothetical.Length;
             for (int r = 0, at = 0; r < size; r++)
             {
@@ -115,6 +116,15 @@ internal sealed class VectorResiduals : SituationResiduals
             }
         }
     }
+
+    /// <summary>p of a node's child.</summary>
+    private Vector512<double> Conditional(int n, int c, nuint lane) =>
+        Vector512.LoadUnsafe(ref strip.Power(c), lane) * Vector512.LoadUnsafe(ref strip.Inverse(n), lane);
+
+    /// <summary>t = log p of a node's child (utility-scaled form).</summary>
+    private Vector512<double> LogConditional(int n, int c, nuint lane) =>
+        ((Vector512.LoadUnsafe(ref strip.Value(c), lane) - Vector512.LoadUnsafe(ref strip.Largest(n), lane)) * strip.Scale(n))
+        - Vector512.LoadUnsafe(ref strip.Mean(n), lane) - Vector512.LoadUnsafe(ref strip.Tilt(n), lane);
 
     /// <summary>f^i of eight situations.</summary>
     private void SetHypothetical(int i, nuint lane)
@@ -133,13 +143,13 @@ internal sealed class VectorResiduals : SituationResiduals
             {
                 var tilt = Vector512.LoadUnsafe(ref strip.Tilt(n), lane);
                 hypothetical[r] = !plan.IsScaled ? own * tilt
-                    : isOnPath ? (flow * tilt) - (Vector512.LoadUnsafe(ref strip.LogConditional(path[n]), lane) * scale)
+                    : isOnPath ? (flow * tilt) - (LogConditional(n, path[n], lane) * scale)
                     : flow * tilt;
             }
 
             foreach (var c in plan.Children[n])
             {
-                var down = flow * Vector512.LoadUnsafe(ref strip.Conditional(c), lane);
+                var down = flow * Conditional(n, c, lane);
                 slope[c] = path[n] == c ? down + Vector512.Create(scale) : down;
             }
         }
