@@ -88,20 +88,4 @@ internal sealed class StripWork
                 for (var i = 0; i < count; i++) scores[((lane + i) * plan.K) + k] = Unsafe.Add(ref ScoreRows.Row(k), i) / plan.Units[k];
         }
     }
-
-    /// <summary>Adds minus the second derivatives of the log-likelihood of a range of situations of one block to a K x K matrix.</summary>
-    public void AddInformation(DesignBlock block, int firstSituation, int endSituation, Span<double> information)
-    {
-        strip.KeepsAll = true;
-        var end = (endSituation - block.FirstSituation + Tile - 1) / Tile * Tile;
-        for (var lane = (firstSituation - block.FirstSituation) / Tile * Tile; lane < end; lane += strip.Lanes)
-        {
-            strip.OpenNext(block, lane, end, LaneWeights.One(firstSituation, endSituation));
-            probabilities.Up();
-            probabilities.Down();
-            Hessian.Add();
-        }
-
-        Hessian.Flush(-1, information);
-    }
 }
