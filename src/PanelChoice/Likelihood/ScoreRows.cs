@@ -15,6 +15,12 @@ internal sealed class ScoreRows
     private readonly Strip strip;
     private readonly StripRows rows;
 
+    /// <summary>For each alternative's columns, group after group, then its constants: whether it is the first to write its parameter's row.</summary>
+    private readonly bool[][] isFirst;
+
+    /// <summary>Rows that no alternative writes.</summary>
+    private readonly int[] ofDissimilarity;
+
     /// <summary>Rows for strips of the plan's design.</summary>
     /// <param name="plan">The plan.</param>
     /// <param name="strip">The strip.</param>
@@ -24,6 +30,9 @@ internal sealed class ScoreRows
         this.plan = plan;
         this.strip = strip;
         rows = new StripRows(plan.K + surplus, plan.StripLanes);
+        var written = new HashSet<int>();
+        isFirst = [.. plan.Leaves.Select(leaf => leaf.Groups.SelectMany(g => g.Parameters).Concat(leaf.Constants).Select(written.Add).ToArray())];
+        ofDissimilarity = [.. Enumerable.Range(0, plan.K).Where(k => !written.Contains(k))];
     }
 
     /// <summary>Distance between rows.</summary>
@@ -35,16 +44,18 @@ internal sealed class ScoreRows
     /// <summary>Sets the rows from what a strip's way up and down has left.</summary>
     public void Set()
     {
-        for (var k = 0; k < plan.K; k++) rows.Lanes(k, strip.Lanes).Clear();
+        foreach (var k in ofDissimilarity) rows.Lanes(k, strip.Lanes).Clear();
         for (var j = 0; j < plan.J; j++)
         {
-            foreach (var group in plan.Leaves[j].Groups)
+            var (leaf, column) = (plan.Leaves[j], 0);
+            foreach (var group in leaf.Groups)
             {
-                var loop = new ScoreLoop(plan, strip, j, rows);
+                var loop = new ScoreLoop(plan, strip, j, rows, isFirst[j].AsMemory(column, group.Places.Length));
                 group.Run(ref loop);
+                column += group.Places.Length;
             }
 
-            foreach (var k in plan.Leaves[j].Constants) AddSlopes(j, ref rows.Row(k));
+            foreach (var k in leaf.Constants) AddSlopes(j, ref rows.Row(k), isFirst[j][column++]);
         }
 
         for (var m = 0; m < plan.Root; m++)
@@ -55,7 +66,7 @@ internal sealed class ScoreRows
             }
     }
 
-    private void AddSlopes(int alternative, ref double row)
+    private void AddSlopes(int alternative, ref double row, bool starts)
     {
         ref var g = ref strip.FlowOverSum(plan.Parent[alternative]);
         ref var e = ref strip.Power(alternative);
@@ -65,7 +76,7 @@ internal sealed class ScoreRows
         var (lanes, masks) = ((nuint)strip.Lanes, (nuint)plan.J);
         nuint mask = 0;
         for (nuint lane = 0; lane < lanes; lane += Tile, mask += masks)
-            (Vector512.LoadUnsafe(ref row, lane) + Slopes.OfAlternative(ref g, ref e, ref weight, Unsafe.Add(ref chosen, mask), scale, lane)).StoreUnsafe(ref row, lane);
+            ((starts ? Vector512<double>.Zero : Vector512.LoadUnsafe(ref row, lane)) + Slopes.OfAlternative(ref g, ref e, ref weight, Unsafe.Add(ref chosen, mask), scale, lane)).StoreUnsafe(ref row, lane);
     }
 
     private void AddScaled(int m, ref double row)
@@ -92,8 +103,8 @@ internal sealed class ScoreRows
             Vector512.FusedMultiplyAdd(Slopes.OfNode(ref g, ref e, ref o, scale, lane), Vector512.LoadUnsafe(ref tilt, lane), Vector512.LoadUnsafe(ref row, lane)).StoreUnsafe(ref row, lane);
     }
 
-    /// <summary>Adds the products of an alternative's slopes with a group's columns to the rows.</summary>
-    private readonly struct ScoreLoop(StripPlan plan, Strip strip, int alternative, StripRows rows) : IColumnLoop
+    /// <summary>Adds the products of an alternative's slopes with a group's columns to the rows, three columns at a time.</summary>
+    private readonly struct ScoreLoop(StripPlan plan, Strip strip, int alternative, StripRows rows, ReadOnlyMemory<bool> isFirst) : IColumnLoop
     {
         public void Run<THeld, TCount>(ColumnGroup group)
             where THeld : struct, IHeldAs
@@ -105,22 +116,31 @@ internal sealed class ScoreRows
             ref var weight = ref strip.Weight;
             ref var chosen = ref strip.Columns.Chosen(alternative);
             var scale = Vector512.Create(strip.Scale(plan.Parent[alternative]));
-            for (var i = 0; i < TCount.Value; i += 2)
+            var (lanes, masks) = ((nuint)strip.Lanes, (nuint)plan.J);
+            for (var i = 0; i < TCount.Value; i += 3)
             {
-                var hasTwin = i + 1 < TCount.Value;
+                var count = TCount.Value - i;
+                var (second, third) = (Math.Min(i + 1, TCount.Value - 1), Math.Min(i + 2, TCount.Value - 1));
                 ref var x0 = ref columns.Held<THeld, TCount>(group, i);
-                ref var x1 = ref columns.Held<THeld, TCount>(group, i + 1);
+                ref var x1 = ref columns.Held<THeld, TCount>(group, second);
+                ref var x2 = ref columns.Held<THeld, TCount>(group, third);
                 ref var to0 = ref rows.Row(group.Parameters[i]);
-                ref var to1 = ref rows.Row(group.Parameters[hasTwin ? i + 1 : i]);
-                var (lanes, masks) = ((nuint)strip.Lanes, (nuint)plan.J);
+                ref var to1 = ref rows.Row(group.Parameters[second]);
+                ref var to2 = ref rows.Row(group.Parameters[third]);
+                var (starts0, starts1, starts2) = (isFirst.Span[i], isFirst.Span[second], isFirst.Span[third]);
                 nuint mask = 0;
                 for (nuint lane = 0; lane < lanes; lane += Tile, mask += masks)
                 {
                     var slope = Slopes.OfAlternative(ref g, ref e, ref weight, Unsafe.Add(ref chosen, mask), scale, lane);
-                    Vector512.FusedMultiplyAdd(slope, THeld.Load(ref x0, lane), Vector512.LoadUnsafe(ref to0, lane)).StoreUnsafe(ref to0, lane);
-                    if (hasTwin) Vector512.FusedMultiplyAdd(slope, THeld.Load(ref x1, lane), Vector512.LoadUnsafe(ref to1, lane)).StoreUnsafe(ref to1, lane);
+                    Add(slope * THeld.Load(ref x0, lane), ref to0, lane, starts0);
+                    if (count > 1) Add(slope * THeld.Load(ref x1, lane), ref to1, lane, starts1);
+                    if (count > 2) Add(slope * THeld.Load(ref x2, lane), ref to2, lane, starts2);
                 }
             }
         }
+
+        [MethodImpl(MethodImplOptions.AggressiveInlining)]
+        private static void Add(Vector512<double> product, ref double to, nuint lane, bool starts) =>
+            (starts ? product : product + Vector512.LoadUnsafe(ref to, lane)).StoreUnsafe(ref to, lane);
     }
 }
