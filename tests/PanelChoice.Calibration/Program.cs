@@ -10,7 +10,18 @@ CultureInfo.DefaultThreadCurrentCulture = CultureInfo.CurrentCulture = CultureIn
 if (args is ["--help"])
 {
     Console.WriteLine(Cell.Usage);
+    Console.WriteLine();
+    Console.WriteLine(IntervalOptions.Usage);
     return 0;
+}
+
+if (args is ["intervals", .. var rest])
+{
+    var (options, notRead) = IntervalOptions.Read(rest);
+    if (options is not null) return IntervalStudy.Run(options);
+    Console.Error.WriteLine(notRead);
+    Console.Error.WriteLine(IntervalOptions.Usage);
+    return 64;
 }
 
 var (read, wrong) = Cell.Read(args);

@@ -29,15 +29,18 @@ internal sealed record CommuteProcess
 
     /// <summary>Autocorrelation of that shock from date to date.</summary>
     public double DateCorrelation { get; init; }
+
+    /// <summary>Share of the persons who hold a pass.</summary>
+    public double PassShare { get; init; } = 0.5;
 }
 
 /// <summary>
 /// Seeded panels of commuters for the size and power of the independence battery. Five alternatives, nests {A, B} with dissimilarity 0.6
 /// and {C, D} with 0.7, E alone; V = constant - 0.6 cost - 0.8 time + 0.5 pass on A and B (+ habit on the last choice). Half the
 /// variance of cost and a quarter of that of time is between persons, the rest of time follows an autoregression of 0.5; pass is 0 or 1,
-/// constant within a person. Fifteen days run before the record begins. Errors are exact nested logit errors, Gumbel variables times a
-/// positive stable variable for each nest (the stable variable by Kanter's 1975 representation); serially correlated errors put a Gaussian
-/// autoregression on every underlying uniform, so that each single day is exactly the fitted model.
+/// constant within a person (half the persons hold one unless the process says otherwise). Fifteen days run before the record begins. Errors are
+/// exact nested logit errors, Gumbel variables times a positive stable variable for each nest (the stable variable by Kanter's 1975 representation);
+/// serially correlated errors put a Gaussian autoregression on every underlying uniform, so that each single day is exactly the fitted model.
 /// </summary>
 internal sealed record SimulatedCommutes(StudySpecification Study, CovariateSet Covariates, NestTree Tree, ImmutableArray<double> Truth)
 {
@@ -119,7 +122,7 @@ internal sealed record SimulatedCommutes(StudySpecification Study, CovariateSet 
             drift[j] = Draw();
         }
 
-        var holder = random.NextDouble() < 0.5 ? 1.0 : 0.0;
+        var holder = random.NextDouble() < process.PassShare ? 1.0 : 0.0;
         var errors = new NestedErrors(process.ErrorCorrelation, random);
         var last = -1;
         for (var day = 0; day < dateShock.Length; day++)
