@@ -76,7 +76,11 @@ public static class PanelAnalysis
         var model = MaximumLikelihood.Fit(likelihood, form, study.Estimate, work);
         // Sentences of later stages name clusters; from here on they know them by pseudonyms alone.
         var pseudonyms = Pseudonyms.Of(sample.Sample.Sha256, sample.Design.Clusters);
-        var evidence = InferenceInput.From(model, new ClusterRefitter(model, work.Threads), pseudonyms) with { RefitsAtOnce = sample.RefitsAtOnce };
+        var evidence = InferenceInput.From(model, new ClusterRefitter(model, work.Threads), pseudonyms) with
+        {
+            RefitsAtOnce = sample.RefitsAtOnce,
+            Second = SecondClusters.Of(study, sample.Sample, model),
+        };
         return new PanelAnalysisFit(study, sample, model, evidence);
     }
 

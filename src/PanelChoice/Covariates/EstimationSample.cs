@@ -1,5 +1,6 @@
 using System.Collections.Immutable;
 using PanelChoice.Data;
+using PanelChoice.Numerics;
 using PanelChoice.Panels;
 using PanelChoice.Study;
 
@@ -37,6 +38,12 @@ public sealed record EstimationSample(
     /// <summary>When the situations took place.</summary>
     internal SituationTimes Times { get; init; } = SituationTimes.None;
 
+    /// <summary>Code of each situation in the column of the second grouping; null where the study names no such column.</summary>
+    internal CompactNumbers? SecondCluster { get; init; }
+
+    /// <summary>Whether an occasion is the same day for everybody: as the study states it, by default for dates only.</summary>
+    internal bool SharesCalendar(StudySpecification study) => study.Panel.SharedCalendar ?? OccasionKind == OccasionKind.Date;
+
     /// <summary>The sample of covariates in memory.</summary>
     /// <param name="covariates">The covariates.</param>
     public static EstimationSample Of(CovariateSet covariates)
@@ -53,6 +60,7 @@ public sealed record EstimationSample(
     internal sealed class Builder
     {
         private readonly SituationTimes.Builder times = new();
+        private CompactNumbers.Builder? secondCluster;
         private long rows;
         private int recordedPersons;
         private int recordedOccasions;
@@ -85,6 +93,9 @@ public sealed record EstimationSample(
             }
 
             times.Add(panel, used);
+            if (panel.SecondCluster.IsEmpty) return;
+            secondCluster ??= new CompactNumbers.Builder();
+            foreach (var o in used) secondCluster.Add(panel.SecondCluster[o]);
         }
 
         /// <summary>The sample of all parts.</summary>
@@ -94,6 +105,7 @@ public sealed record EstimationSample(
             outline.Covariates, outline.LeftOut, outline.StockStarts, outline.Cautions)
         {
             Times = times.Finish(),
+            SecondCluster = secondCluster?.Finish(),
         };
     }
 }

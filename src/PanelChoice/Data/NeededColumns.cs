@@ -12,7 +12,7 @@ internal sealed record NeededColumn(string Name, string AskedBy);
 /// <summary>The columns that a study needs of its data file; all others are never looked at.</summary>
 /// <param name="All">Every needed name once, in the order in which the study names them.</param>
 /// <param name="Numbers">Those that terms read as numbers.</param>
-/// <param name="Texts">Those read as text: <c>is</c>, <c>levels</c>, and the cluster column.</param>
+/// <param name="Texts">Those read as text: <c>is</c>, <c>levels</c>, and the columns of clusters.</param>
 internal sealed record NeededColumns(ImmutableArray<NeededColumn> All, ImmutableArray<string> Numbers, ImmutableArray<string> Texts)
 {
     /// <summary>Gathers what a study needs. A column named both as number and as text is needed both ways.</summary>
@@ -36,6 +36,7 @@ internal sealed record NeededColumns(ImmutableArray<NeededColumn> All, Immutable
         }
 
         if (study.Inference.Cluster != "person") Add(study.Inference.Cluster, "[inference] cluster", texts);
+        if (SecondGrouping.Of(study) is { Column: { } second }) Add(second, "[inference] second_cluster", texts);
         return new NeededColumns([.. all], [.. numbers], [.. texts]);
 
         void Key(string? name, string key)

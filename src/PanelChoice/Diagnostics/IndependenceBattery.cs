@@ -1,6 +1,5 @@
 using System.Collections.Immutable;
 using PanelChoice.Covariates;
-using PanelChoice.Data;
 using PanelChoice.Design;
 using PanelChoice.Estimation;
 using PanelChoice.Likelihood;
@@ -103,7 +102,7 @@ public static class IndependenceBattery
 
     /// <summary>Whether an occasion is the same day for everybody: as stated, by default for dates only.</summary>
     internal static bool SharedCalendar(StudySpecification study, EstimationSample sample) =>
-        study.Panel.SharedCalendar ?? sample.OccasionKind == OccasionKind.Date;
+        sample.SharesCalendar(study);
 
     private static void AddNotes(
         List<string> notes, StudySpecification study, ChoiceDesign design, OccasionPositions positions, Detector detector, JointVerdict verdict,

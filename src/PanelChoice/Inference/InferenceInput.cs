@@ -68,6 +68,9 @@ public sealed record InferenceInput(
     /// <summary>Where outcomes of numbered refits are found and kept; null when each is made here and lives as long as the run.</summary>
     public IRefitJournal? Journal { get; init; }
 
+    /// <summary>The second grouping of two-way clustering; null where the study names none.</summary>
+    public SecondClusters? Second { get; init; }
+
     /// <summary>Most refits that may be at work at a time, where memory is short; no bit depends on it.</summary>
     internal int RefitsAtOnce { get; init; } = int.MaxValue;
 

@@ -52,6 +52,13 @@ public sealed record CovarianceEstimate(
     /// <summary>Why each of the <see cref="RefusedParameters"/> is refused, in the same order.</summary>
     public ImmutableArray<string> RefusedReasons { get; init; } = [];
 
+    /// <summary>F variances behind the standard errors, where they are not the diagonal of <see cref="Matrix"/>: those before a repair; empty otherwise.</summary>
+    public ImmutableArray<double> Variances { get; init; } = [];
+
+    /// <summary>Variance behind the standard error of a free parameter.</summary>
+    /// <param name="place">Its place among the free ones.</param>
+    internal double VarianceOf(int place) => Variances.IsEmpty ? Matrix![place, place] : Variances[place];
+
     /// <summary>A refusal.</summary>
     internal static CovarianceEstimate Refused(CovarianceKind kind, string reason) => new(kind, null, 1, null, null, [], reason, []);
 
@@ -139,6 +146,19 @@ public sealed record BootstrapSummary(
     public ImmutableArray<double> Decrement { get; init; } = [];
 }
 
+/// <summary>How clustering two ways went.</summary>
+/// <param name="Second">What the second grouping goes by.</param>
+/// <param name="Clusters">Clusters of the first grouping.</param>
+/// <param name="SecondClusters">Groups of the second.</param>
+/// <param name="Pairs">Pairs of both that hold an occasion.</param>
+/// <param name="Negative">Free parameters (by their place) whose variance came out negative before any repair.</param>
+/// <param name="Repaired">Whether negative eigenvalues of the matrix were set to 0.</param>
+public sealed record TwoWaySummary(string Second, int Clusters, int SecondClusters, int Pairs, ImmutableArray<int> Negative, bool Repaired)
+{
+    /// <summary>Free parameters (by their place) whose variance in the matrix the repair raised.</summary>
+    public ImmutableArray<int> Touched { get; init; } = [];
+}
+
 /// <summary>A person or cluster that moves a term.</summary>
 /// <param name="Cluster">Index of the cluster.</param>
 /// <param name="Parameter">Index in the layout.</param>
@@ -169,4 +189,8 @@ public sealed record ClusterSummary(
 /// <param name="Bootstrap">How the bootstrap went; null without replicates.</param>
 public sealed record InferenceResult(
     ImmutableDictionary<CovarianceKind, CovarianceEstimate> Covariances, ImmutableArray<ParameterInference> Parameters,
-    ClusterSummary Clusters, JackknifeSummary? Jackknife, BootstrapSummary? Bootstrap);
+    ClusterSummary Clusters, JackknifeSummary? Jackknife, BootstrapSummary? Bootstrap)
+{
+    /// <summary>How clustering two ways went; null where it was not asked for or refused.</summary>
+    public TwoWaySummary? TwoWay { get; init; }
+}

@@ -1,5 +1,4 @@
 using System.Collections.Immutable;
-using MathNet.Numerics.LinearAlgebra;
 using PanelChoice.Design;
 
 namespace PanelChoice.Inference;
@@ -49,7 +48,7 @@ internal sealed class ParameterFigures(
         if (covariance.Matrix is not { } v) return new KindFigures(null, null, null, covariance.Refusal);
         var at = covariance.RefusedParameters.IndexOf(place);
         if (at >= 0) return new KindFigures(null, null, null, covariance.RefusedReasons[at]);
-        var variance = v[place, place];
+        var variance = covariance.VarianceOf(place);
         if (!(variance >= 0)) return new KindFigures(null, null, null, "Its variance comes out negative or not as a number.");
         var se = Math.Sqrt(variance);
         if (se == 0) return new KindFigures(0, null, null, "Its standard error comes out as zero, so that it supports no interval and no test.");
@@ -59,7 +58,7 @@ internal sealed class ParameterFigures(
             return new KindFigures(se, null, null, "The form without the factor gives a standard error only.");
         if (covariance.Kind == CovarianceKind.Pooled && input.IsWeighted) return new KindFigures(se, null, null, WeightUnit);
         var reference = new ReferenceDistribution(covariance.DegreesOfFreedom);
-        var (p, reason) = PValue(v, place, reference);
+        var (p, reason) = PValue(covariance, place, reference);
         return new KindFigures(se, IntervalOf(place, se, Critical(covariance.Kind, reference)), p, reason);
     }
 
@@ -78,14 +77,16 @@ internal sealed class ParameterFigures(
         return new Interval(estimate / width, estimate * width);
     }
 
-    private (double? P, string? Reason) PValue(Matrix<double> v, int place, ReferenceDistribution reference)
+    private (double? P, string? Reason) PValue(CovarianceEstimate covariance, int place, ReferenceDistribution reference)
     {
+        var v = covariance.Matrix!;
+        var own = covariance.VarianceOf(place);
         var tested = input.Nulls[place];
         if (tested.Withheld is { } withheld) return (null, withheld);
         var estimate = input.Estimates[input.Free[place]];
         if (input.Kinds[input.Free[place]] == ParameterKind.Coefficient)
-            return (reference.TwoSided((estimate - tested.Value) / Math.Sqrt(v[place, place])), null);
-        var variance = v[place, place] / (estimate * estimate);
+            return (reference.TwoSided((estimate - tested.Value) / Math.Sqrt(own)), null);
+        var variance = (tested.Parameter is null ? own : v[place, place]) / (estimate * estimate);
         if (tested.Parameter is { } parent)
         {
             var at = input.Free.IndexOf(parent);

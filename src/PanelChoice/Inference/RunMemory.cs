@@ -31,8 +31,11 @@ internal sealed record RunMemory(long Fixed, long ByRefit)
     /// <param name="settings">Bootstrap and jackknife.</param>
     public static RunMemory Of(ChoiceDesign design, InferenceSettings settings)
     {
+        // Codes of a second grouping take as much as times.
+        var bySituation = BySituation;
         long persons = design.Persons, clusters = design.Clusters.Length, parameters = design.Layout.Count;
-        var sums = (persons * (ByPerson + (ByPersonAndParameter * parameters))) + (BySituation * design.Situations);
+        if (settings.SecondCluster is not null) bySituation *= 2;
+        var sums = (persons * (ByPerson + (ByPersonAndParameter * parameters))) + (bySituation * design.Situations);
         if (settings.Replicates == 0 && !ClusterJackknife.Refits(settings.Jackknife, design.Clusters.Length)) return new RunMemory(sums, 0);
         // Twice: the collector lets go of what making them left behind only later. A refit has its draw, and weights for each person while it is at work.
         return new RunMemory(sums + (2 * sizeof(double) * ClusterExpansion.Entries(clusters, design.Layout.Free.Length, ClusterExpansion.MostEntries)), sizeof(double) * (clusters + persons));

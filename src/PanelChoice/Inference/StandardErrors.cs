@@ -27,15 +27,19 @@ public static class StandardErrors
             throw new ArgumentException("The sums of scores do not fit the rest of an inference input.", nameof(input));
         var meat = scores.OuterProduct;
         var (cluster, uncorrected) = ClusterCovariance.Estimate(input, bread, scores.ByCluster.AsMemory(), work.Threads);
+        var (twoWay, ways) = TwoWayCovariance.Estimate(input, bread, scores, work.Threads);
         var (jackknife, deletions) = ClusterJackknife.Estimate(input, scores, settings.Jackknife, work);
         var (bootstrap, replicates) = ClusterBootstrap.Estimate(input, settings, work);
         return Assemble(
             input, settings,
             [
                 pooled, OuterProductCovariance.Estimate(input, meat.AsSpan()), RobustCovariance.Estimate(input, bread, meat.AsSpan()), cluster, uncorrected, jackknife,
-                CovarianceEstimate.Refused(CovarianceKind.TwoWay, "The study names no second cluster."), bootstrap,
+                twoWay, bootstrap,
             ],
-            deletions, replicates);
+            deletions, replicates) with
+        {
+            TwoWay = ways,
+        };
     }
 
     /// <summary>Why no standard error has a meaning, so that nothing is refitted; null when they have.</summary>

@@ -36,6 +36,9 @@ public sealed record ChoicePanel(
     ImmutableArray<string> Clusters,
     ImmutableArray<int> ClusterOf)
 {
+    /// <summary>Code of each occasion in the column of the second grouping; empty where the study names no such column.</summary>
+    internal ImmutableArray<int> SecondCluster { get; init; } = [];
+
     /// <summary>Number of recorded occasions over all persons.</summary>
     public int Occasions => Occasion.Length;
 

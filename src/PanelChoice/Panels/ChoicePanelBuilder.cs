@@ -19,7 +19,7 @@ public static class ChoicePanelBuilder
     /// The panel, or the problems: <c>study.unknown_alternative</c>, those of <see cref="NestTreeBuilder"/>,
     /// <c>study.previous_does_not_fit</c>, <c>data.duplicate</c>, <c>data.several_occasions</c>, <c>data.none_chosen</c>,
     /// <c>data.several_chosen</c>, <c>data.chosen_not_offered</c>, <c>data.weight_not_positive</c>, <c>data.weight_not_constant</c>,
-    /// <c>data.cluster_not_constant</c>, <c>data.too_many_alternatives</c>.
+    /// <c>data.cluster_not_constant</c>, <c>data.second_cluster_not_constant</c>, <c>data.too_many_alternatives</c>.
     /// </returns>
     public static Checked<ChoicePanel> Build(StudySpecification study, ChoiceTable table)
     {
@@ -90,6 +90,8 @@ public static class ChoicePanelBuilder
         var chosen = new int[occasions];
         var row = new int[checked(occasions * alternatives)];
         var offered = new bool[row.Length];
+        var second = SecondGrouping.Of(study) is { Column: { } column } ? table.Texts[column] : null;
+        var secondCluster = new int[second is null ? 0 : occasions];
         Array.Fill(row, -1);
         for (var p = 0; p + 1 < personStart.Length; p++)
             for (var o = personStart[p]; o < personStart[p + 1]; o++)
@@ -103,13 +105,17 @@ public static class ChoicePanelBuilder
                     row[(o * alternatives) + alternative] = r;
                     offered[(o * alternatives) + alternative] = table.Offered[r];
                     if (table.Chosen[r]) chosen[o] = alternative;
+                    if (second is not null && second.Codes[r] != CodedColumn.NoValue) secondCluster[o] = second.Codes[r];
                 }
             }
 
         var persons = personOrder.Select(p => table.Person.Levels[p]).ToImmutableArray();
         return new ChoicePanel(
             table, persons, table.Alternative.Levels, Immutable(personStart), Immutable(personOf), Immutable(occasion), Immutable(row), Immutable(offered),
-            Immutable(chosen), Weights(table, order), study.Inference.Cluster, clusters?.Names ?? persons, ClusterOf(study, table, order, clusters));
+            Immutable(chosen), Weights(table, order), study.Inference.Cluster, clusters?.Names ?? persons, ClusterOf(study, table, order, clusters))
+        {
+            SecondCluster = Immutable(secondCluster),
+        };
     }
 
     private static ImmutableArray<double> Weights(ChoiceTable table, RowOrder order)

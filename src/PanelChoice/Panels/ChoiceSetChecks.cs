@@ -7,7 +7,9 @@ namespace PanelChoice.Panels;
 /// <summary>Checks the rows of one occasion, and what must not change within a person.</summary>
 internal sealed class ChoiceSetChecks(StudySpecification study, ChoiceTable table, ProblemList problems)
 {
-    /// <summary>Checks an occasion: each alternative at most once, exactly one chosen, and that one offered.</summary>
+    private readonly string? second = SecondGrouping.Of(study)?.Column;
+
+    /// <summary>Checks an occasion: each alternative at most once, exactly one chosen, and that one offered; one group of the second grouping.</summary>
     /// <param name="rows">The occasion's rows in the order of their alternatives.</param>
     public void CheckOccasion(ReadOnlySpan<int> rows)
     {
@@ -21,6 +23,7 @@ internal sealed class ChoiceSetChecks(StudySpecification study, ChoiceTable tabl
 
         // Two occasions taken for one also show two choices; one problem is enough for them.
         if (!isTwice) CheckChoice(rows);
+        if (second is not null) CheckSecondCluster(rows, second);
     }
 
     /// <summary>Checks that the weight is positive and, like the cluster, the same on all rows of a person.</summary>
@@ -94,6 +97,23 @@ internal sealed class ChoiceSetChecks(StudySpecification study, ChoiceTable tabl
                     "data.weight_not_constant", row, column, Text(weight),
                     () => $"person '{PersonOf(row)}' has weight {Text(table.Weight[reference])} in row {RowOf(reference)}", "give each person one weight");
             }
+        }
+    }
+
+    private void CheckSecondCluster(ReadOnlySpan<int> rows, string column)
+    {
+        var cells = table.Texts[column];
+        var first = -1;
+        foreach (var row in rows)
+        {
+            if (cells.Codes[row] == CodedColumn.NoValue) continue;
+            if (first < 0) first = row;
+            var reference = first;
+            if (cells.Codes[row] == cells.Codes[reference]) continue;
+            Note(
+                "data.second_cluster_not_constant", row, column, cells.Levels[cells.Codes[row]],
+                () => $"{WhoAndWhen(row)} is in '{cells.Levels[cells.Codes[reference]]}' in row {RowOf(reference)}", "give all rows of an occasion the same value");
+            return;
         }
     }
 

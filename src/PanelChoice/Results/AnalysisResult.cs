@@ -43,6 +43,9 @@ public sealed record AnalysisResult(
     ImmutableArray<Finding> Findings,
     ReplicateTable Replicates)
 {
+    /// <summary>How clustering two ways went; null where it was not asked for or refused.</summary>
+    public TwoWayResult? TwoWay { get; init; }
+
     /// <summary>Name and version of the document's layout.</summary>
     public const string Schema = "panelchoice-result/1";
 

@@ -23,6 +23,7 @@ internal static class ResultBuilder
         var parameters = entries.Select((e, i) => ParameterEntries.Figures(e, $"parameters[{i}]", model, inference, book)).ToImmutableArray();
         var covariance = CovarianceExpansion.Over(entries, inference, book);
         var jackknife = Jackknife(inference, book);
+        var twoWay = TwoWayResult.Of(inference, [.. model.Layout.Parameters.Select(p => p.Label)], book);
         var clusters = Clusters(stages, book);
         NoteDiagnostics(diagnostics, book);
         return new AnalysisResult(
@@ -43,7 +44,10 @@ internal static class ResultBuilder
             clusters,
             diagnostics,
             findings,
-            Replicates(entries, model, inference.Bootstrap));
+            Replicates(entries, model, inference.Bootstrap))
+        {
+            TwoWay = twoWay,
+        };
     }
 
     /// <summary>Version of the program, without the revision that a build may append.</summary>

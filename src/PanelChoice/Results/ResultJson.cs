@@ -52,6 +52,7 @@ public static class ResultJson
             json.WriteArray("parameters", result.Parameters, p => WriteParameter(json, p));
             WriteBootstrap(json, result.Bootstrap);
             WriteJackknife(json, result.Jackknife);
+            TwoWayResult.Write(json, result.TwoWay);
             WriteCovariance(json, result.Covariance);
             WriteClusters(json, result.Clusters);
             json.WriteObject("diagnostics", () => DiagnosticsJson.Write(json, result.Diagnostics));

@@ -33,6 +33,7 @@ internal static class DesignFingerprint
         }
 
         Add("model", study.Estimate.Form, study.Inference.Cluster);
+        if (SecondGrouping.Of(study) is { Column: { } column }) Add("second cluster", column);
         return Convert.ToHexStringLower(SHA256.HashData(Encoding.UTF8.GetBytes(text.ToString())));
 
         // Lengths before texts keep two lists apart that would read the same when joined.

@@ -39,6 +39,7 @@ internal static class SettingsSections
     public static InferenceSettings Inference(TableReader table, TableReader bootstrap, StudyProblems problems)
     {
         var cluster = table.Text("cluster") ?? "person";
+        var second = table.Text("second_cluster");
         var confidence = table.Number("confidence", InsideUnit, BelowOne) ?? 0.95;
         var jackknife = table.Word(
             "jackknife", JackknifeKind.Auto, ("auto", JackknifeKind.Auto), ("refit", JackknifeKind.Refit), ("one_step", JackknifeKind.OneStep), ("off", JackknifeKind.Off));
@@ -51,7 +52,7 @@ internal static class SettingsSections
                 "study.not_supported", bootstrap.PlaceOf("replicates"), "replicates = \"auto\" is not supported yet", "state a number, for example replicates = 399");
         else
             replicates = bootstrap.Whole("replicates", 0, MostReplicates) ?? replicates;
-        return new InferenceSettings(cluster, confidence, jackknife, replicates, bootstrap.Seed("seed", 7));
+        return new InferenceSettings(cluster, confidence, jackknife, replicates, bootstrap.Seed("seed", 7)) { SecondCluster = second };
     }
 
     public static DiagnosticsSettings Diagnostics(TableReader table) => new(

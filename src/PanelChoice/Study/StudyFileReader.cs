@@ -87,9 +87,11 @@ public static class StudyFileReader
         ImmutableArray<NestSpecification> nestList = [.. nests.Select(n => n.Nest)];
         StudyRules.Check(terms, nestList, root.Find("panel")?.Value is TomlTable ? panelTable : null, historyTable, history, problems);
 
+        var inference = SettingsSections.Inference(inferenceTable, bootstrapTable, problems);
+        StudyRules.CheckSecondCluster(inference, panel, inferenceTable, problems);
         var study = new StudySpecification(
             title ?? "", path, text, Convert.ToHexStringLower(SHA256.HashData(bytes)), panel, history, nestList, [.. terms.Select(t => t.Term)],
-            SettingsSections.Estimate(estimateTable), SettingsSections.Inference(inferenceTable, bootstrapTable, problems), SettingsSections.Diagnostics(diagnosticsTable));
+            SettingsSections.Estimate(estimateTable), inference, SettingsSections.Diagnostics(diagnosticsTable));
         if (problems.Count == 0) return Checked<StudySpecification>.Good(study);
         var all = problems.InFileOrder();
         return Checked<StudySpecification>.Bad(

@@ -27,7 +27,7 @@ internal static class StudyKeys
             "name", .. Sources, .. Moments, "is", "levels", "omit", "alternatives", "each", "base", "times", "transform", "scale", "fixed", "start",
         ],
         ["[estimate]"] = ["form", "starts", "seed"],
-        ["[inference]"] = ["cluster", "confidence", "jackknife"],
+        ["[inference]"] = ["cluster", "second_cluster", "confidence", "jackknife"],
         ["[inference.bootstrap]"] = ["replicates", "blocks", "seed"],
         ["[diagnostics]"] = ["lags", "level", "draws", "seed"],
     }.ToFrozenDictionary();
@@ -36,7 +36,6 @@ internal static class StudyKeys
     private static readonly FrozenDictionary<(string Table, string Key), string> LaterKeys = new Dictionary<(string, string), string>
     {
         [("[panel]", "alternatives")] = "it belongs to the wide layout; bring the data into long layout, a row for each person, occasion and alternative",
-        [("[inference]", "second_cluster")] = "remove it; the clusters of [inference] cluster remain",
         [("[inference.bootstrap]", "length")] = "remove it and draw whole clusters: blocks = \"cluster\"",
     }.ToFrozenDictionary();
 

@@ -5,6 +5,21 @@ namespace PanelChoice.Study;
 /// <summary>Rules that hold between tables of the study file.</summary>
 internal static class StudyRules
 {
+    /// <summary>Notes a second grouping that is the first one again, or that goes by occasions where there are none.</summary>
+    public static void CheckSecondCluster(InferenceSettings inference, PanelSource panel, TableReader table, StudyProblems problems)
+    {
+        if (SecondGrouping.Of(inference, panel) is not { } second) return;
+        var isSame = second.Kind == SecondGroupingKind.Person ? inference.Cluster == "person" || inference.Cluster == panel.Person : second.Column == inference.Cluster;
+        if (isSame)
+            problems.Add(
+                "study.same_column", table.PlaceOf("second_cluster"), "'second_cluster' names the clusters of 'cluster' again", "name another grouping, or remove the key",
+                inference.SecondCluster!);
+        if (second.Kind == SecondGroupingKind.Occasion && panel.Occasion is null)
+            problems.Add(
+                "study.needs_key", table.PlaceOf("second_cluster"), "'second_cluster' speaks of occasions, and [panel] names no 'occasion'",
+                "name the column of the occasion or remove the key");
+    }
+
     public static void Check(
         IReadOnlyList<(TermSpecification Term, TableReader Table)> terms, ImmutableArray<NestSpecification> nests,
         TableReader? panel, TableReader history, HistorySpecification rule, StudyProblems problems)

@@ -207,7 +207,13 @@ public enum JackknifeKind
 /// <param name="Jackknife">How the jackknife is computed.</param>
 /// <param name="Replicates">Bootstrap replicates; 0 for none.</param>
 /// <param name="BootstrapSeed">Seed of the bootstrap.</param>
-public sealed record InferenceSettings(string Cluster, double Confidence, JackknifeKind Jackknife, int Replicates, long BootstrapSeed);
+public sealed record InferenceSettings(string Cluster, double Confidence, JackknifeKind Jackknife, int Replicates, long BootstrapSeed)
+{
+    /// <summary>
+    /// The second grouping of two-way clustering: "occasion", "person", or a column that is constant within a choice situation; null for clusters one way.
+    /// </summary>
+    public string? SecondCluster { get; init; }
+}
 
 /// <summary>Settings of the independence battery.</summary>
 /// <param name="Lags">Number of lags shown.</param>

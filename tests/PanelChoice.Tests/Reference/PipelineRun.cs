@@ -1,5 +1,6 @@
 using System.Collections.Concurrent;
 using System.Collections.Immutable;
+using PanelChoice.Covariates;
 using PanelChoice.Estimation;
 using PanelChoice.Inference;
 using PanelChoice.Likelihood;
@@ -47,7 +48,10 @@ internal sealed record PipelineRun(PipelineSample Sample, FittedModel Model, Inf
         var (form, settings) = (sample.Study.Estimate.Form, sample.Study.Inference);
         var likelihood = LikelihoodKernel.Create(sample.Design, form, TwoThreads.Threads);
         var model = MaximumLikelihood.Fit(likelihood, form, sample.Study.Estimate, TwoThreads);
-        var input = InferenceInput.From(model, new ClusterRefitter(model, TwoThreads.Threads));
+        var input = InferenceInput.From(model, new ClusterRefitter(model, TwoThreads.Threads)) with
+        {
+            Second = SecondClusters.Of(sample.Study, EstimationSample.Of(sample.Covariates), model),
+        };
         return new PipelineRun(
             sample, model, PanelChoice.Inference.StandardErrors.Compute(input, settings with { Replicates = replicates ?? settings.Replicates }, TwoThreads));
     }

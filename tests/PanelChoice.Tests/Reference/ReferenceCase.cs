@@ -12,7 +12,7 @@ internal sealed class ReferenceCase
     [
         (CovarianceKind.Pooled, "classical"), (CovarianceKind.OuterProduct, "opg"), (CovarianceKind.Robust, "sandwich_occasion"),
         (CovarianceKind.Cluster, "cluster_person_cv1"), (CovarianceKind.ClusterUncorrected, "cluster_person_cv0"),
-        (CovarianceKind.Jackknife, "jackknife_person_cv3"),
+        (CovarianceKind.Jackknife, "jackknife_person_cv3"), (CovarianceKind.TwoWay, "twoway_person_date_factor"),
     ];
 
     private readonly JsonElement results;
@@ -27,8 +27,11 @@ internal sealed class ReferenceCase
 
     public static TheoryData<string> Described => [.. DescribedNames];
 
-    /// <summary>The kinds of covariance that have expected values.</summary>
-    public static IEnumerable<CovarianceKind> CovarianceKinds => Kinds.Select(k => k.Kind);
+    /// <summary>The cases of several occasions that persons share, which have expected values clustered two ways.</summary>
+    public static TheoryData<string> TwoWay => [.. DescribedNames.Where(n => !n.Contains("modechoice", StringComparison.Ordinal))];
+
+    /// <summary>The kinds of covariance that every case has expected values of.</summary>
+    public static IEnumerable<CovarianceKind> CovarianceKinds => Kinds.Select(k => k.Kind).Where(k => k != CovarianceKind.TwoWay);
 
     private ReferenceCase(JsonElement root)
     {
@@ -61,6 +64,11 @@ internal sealed class ReferenceCase
 
     public double StandardError(CovarianceKind kind, string parameter) =>
         results.GetProperty("standard_errors").GetProperty(NameOf(kind)).GetProperty(parameter).GetDouble();
+
+    /// <summary>Parameters whose variance by person and date comes out negative.</summary>
+    public ImmutableArray<string> NegativeTwoWay => results.TryGetProperty("negative_variances", out var all) && all.TryGetProperty(NameOf(CovarianceKind.TwoWay), out var names)
+        ? [.. names.EnumerateArray().Select(n => n.GetString()!)]
+        : [];
 
     /// <summary>P x P.</summary>
     public double[,] Covariance(CovarianceKind kind)

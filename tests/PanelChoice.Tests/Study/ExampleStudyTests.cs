@@ -97,18 +97,10 @@ public class ExampleStudyTests
         """;
 
     [Fact]
-    public void The_documented_example_asks_only_for_two_way_clusters_beyond_what_there_is()
+    public void The_documented_example_is_good()
     {
-        var problem = Assert.Single(StudyText.Read(Example).Problems);
-        Assert.Equal("study.not_supported", problem.Id);
-        Assert.Contains("second_cluster", problem.Sentence, StringComparison.Ordinal);
-        Assert.StartsWith("second_cluster", Example.Split('\n')[problem.Line!.Value - 1], StringComparison.Ordinal);
-    }
-
-    [Fact]
-    public void Without_it_the_documented_example_is_good()
-    {
-        var study = StudyText.Good(Example.Replace("second_cluster = \"occasion\"", "# two-way: later", StringComparison.Ordinal));
+        var study = StudyText.Good(Example);
+        Assert.Equal("occasion", study.Inference.SecondCluster);
         Assert.Equal("Marrowick crossing, spring wave", study.Title);
         Assert.Equal(7, study.Terms.Length);
         Assert.Equal(PreviousRule.Workday, study.History.Previous);
@@ -125,7 +117,7 @@ public class ExampleStudyTests
     [Fact]
     public void A_nest_of_the_example_becomes_a_tree()
     {
-        var study = StudyText.Good(Example.Replace("second_cluster = \"occasion\"", "", StringComparison.Ordinal));
+        var study = StudyText.Good(Example);
         var tree = NestTreeBuilder.Build(study, ["drive", "tram", "ferry", "hydrofoil"]).Value!;
         Assert.Equal(["river", ""], tree.Nodes.Select(n => n.Name));
     }

@@ -153,7 +153,9 @@ public class StudyProblemTests
         { Small + "[estimate]\nstarts = 0\n", "study.out_of_range", 11, 10, "1 or more" },
         { Small + "[estimate]\nseed = \"x\"\n", "study.wrong_type", 11, 8, "a whole number" },
         { Small + "[inference]\ncluster = 1\n", "study.wrong_type", 11, 11, "must be text" },
-        { Small + "[inference]\nsecond_cluster = \"occasion\"\n", "study.not_supported", 11, 1, "not supported yet" },
+        { Small + "[inference]\nsecond_cluster = \"person\"\n", "study.same_column", 11, 1, "the clusters of 'cluster' again" },
+        { Small + "[inference]\ncluster = \"household\"\nsecond_cluster = \"household\"\n", "study.same_column", 12, 1, "the clusters of 'cluster' again" },
+        { Small + "[inference]\nsecond_cluster = 3\n", "study.wrong_type", 11, 18, "must be text" },
         { Small + "[inference]\nconfidence = 1\n", "study.out_of_range", 11, 14, "between 0 and 1" },
         { Small + "[inference]\nconfidence = 0.0\n", "study.out_of_range", 11, 14, "between 0 and 1" },
         { Small + "[inference]\njackknife = \"yes\"\n", "study.unknown_value", 11, 13, "\"one_step\"" },
@@ -229,7 +231,7 @@ public class StudyProblemTests
             [
                 ("study.unknown_key", 1, 1), ("study.missing_key", 2, 1), ("study.wrong_type", 4, 12), ("study.no_source", 6, 1),
                 ("study.unknown_key", 8, 1), ("study.duplicate_name", 10, 1), ("study.out_of_range", 12, 9), ("study.out_of_range", 14, 14),
-                ("study.not_supported", 15, 1), ("study.not_supported", 17, 1),
+                ("study.needs_key", 15, 1), ("study.not_supported", 17, 1),
             ],
             read.Problems.Select(p => (p.Id, p.Line!.Value, p.Position!.Value)));
     }

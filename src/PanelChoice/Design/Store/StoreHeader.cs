@@ -1,6 +1,7 @@
 using System.Collections.Immutable;
 using PanelChoice.Covariates;
 using PanelChoice.Data;
+using PanelChoice.Numerics;
 using PanelChoice.Study;
 
 namespace PanelChoice.Design.Store;
@@ -128,6 +129,8 @@ internal sealed record StoreHeader(
             to.Write(c.Sentence);
         });
         sample.Times.Write(to);
+        to.Write(sample.SecondCluster is not null);
+        sample.SecondCluster?.Write(to);
     }
 
     private static EstimationSample ReadSample(BinaryReader from) => new(
@@ -142,6 +145,7 @@ internal sealed record StoreHeader(
         from.ReadAll(() => new Caution(from.ReadString(), from.ReadString())))
     {
         Times = SituationTimes.Read(from),
+        SecondCluster = from.ReadBoolean() ? CompactNumbers.Read(from) : null,
     };
 
     private static void Write(BinaryWriter to, StoredDesign design)

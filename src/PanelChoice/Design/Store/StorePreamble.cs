@@ -16,7 +16,7 @@ internal sealed record StorePreamble(long HeaderAt, long HeaderBytes, uint Heade
     public const int Bytes = 64;
 
     /// <summary>Version of the layout, and of what is in it: a covariate that comes out otherwise than before is a new version too.</summary>
-    public const int Version = 1;
+    public const int Version = 2;
 
     private const int Checked = 32;
 
