@@ -2,7 +2,7 @@ using PanelChoice.Estimation;
 using PanelChoice.Inference;
 using PanelChoice.Numerics;
 using PanelChoice.Results;
-using PanelChoice.Results.Parts;
+using PanelChoice.Results.Refits;
 using PanelChoice.Study;
 
 namespace PanelChoice;
@@ -46,15 +46,15 @@ public static class PanelAnalysisParts
             var fit = PanelAnalysis.Fit(study, sample, work);
             var plan = RefitPlan.Of(fit.Evidence, study.Inference);
             Directory.CreateDirectory(folder);
-            var header = new PartHeader(share, SeenFrom(folder, study.File), OriginOf(fit, plan));
+            var header = RefitHeader.Of(share, folder, study.File, OriginOf(fit, plan));
             return PartJournal.Open(folder, header).Then(journal =>
             {
                 using (journal)
                 {
-                    if (!journal.WasComplete) plan.Make(fit.Evidence with { Journal = journal }, study.Inference, share, work);
+                    if (journal.Refits is { } refits) plan.Make(fit.Evidence with { Journal = refits }, study.Inference, share, work);
                     journal.Complete();
                     return Checked<PanelAnalysisPart>.Good(new PanelAnalysisPart(
-                        share, plan, journal.File, journal.Found, journal.WasComplete, journal.Replaces, fit.Model.Status == FitStatus.Converged));
+                        share, plan, journal.File, journal.Found, journal.Refits is null, journal.Replaces, fit.Model.Status == FitStatus.Converged));
                 }
             });
         });
@@ -113,11 +113,8 @@ public static class PanelAnalysisParts
         });
     }
 
-    private static RefitOrigin OriginOf(PanelAnalysisFit fit, RefitPlan plan) => RefitOrigin.Of(fit.Study, fit.Sample.Sample.Sha256, fit.Model, plan);
-
-    /// <summary>Where the study lies as seen from the folder, so that both may be moved together or mounted elsewhere.</summary>
-    private static string SeenFrom(string folder, string study) =>
-        Path.GetRelativePath(Path.GetFullPath(folder), Path.GetFullPath(study)).Replace(Path.DirectorySeparatorChar, '/');
+    /// <summary>What the refits of a fit depend on.</summary>
+    internal static RefitOrigin OriginOf(PanelAnalysisFit fit, RefitPlan plan) => RefitOrigin.Of(fit.Study, fit.Sample.Sample.Sha256, fit.Model, plan);
 }
 
 /// <summary>A part that is done.</summary>

@@ -1,7 +1,7 @@
 using PanelChoice.Cli.Report;
 using PanelChoice.Inference;
 using PanelChoice.Results;
-using PanelChoice.Results.Parts;
+using PanelChoice.Results.Refits;
 
 namespace PanelChoice.Cli.Commands;
 

@@ -22,6 +22,7 @@ internal static class DemoCommand
         {
             options.Print($"\n{new string('-', Letter.Width)}\n\n");
             codes.Add(EstimateCommand.Run(study, Path.ChangeExtension(study, null), strict, null, options));
+            if (codes[^1] == ExitCode.Interrupted) return ExitCode.Interrupted;
         }
 
         // Both panels are told in any case. Trouble goes before an estimate not to be trusted, and that before a flag.

@@ -1,5 +1,6 @@
 using PanelChoice.Cli.Report;
 using PanelChoice.Results;
+using PanelChoice.Results.Refits;
 using PanelChoice.Study;
 
 namespace PanelChoice.Cli.Commands;
@@ -16,15 +17,55 @@ internal static class EstimateCommand
     public static int Run(string study, string? folder, bool strict, KeptDesign? kept, RunOptions options)
     {
         if (!KernelChoice.IsToBeHad(options)) return ExitCode.Usage;
+        if (folder is not null) return InFolder(study, folder, strict, kept, options);
         return StudyRun.With(
             study, options,
             specification =>
             {
-                if (folder is not null) Probe(folder, specification);
                 KeptDesign.RefuseInput(kept, specification);
                 return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, KeptDesign.Read(kept, specification, work), work));
             },
-            (_, result) => Tell(result, folder, strict, options));
+            (_, result) => Tell(result, null, strict, options));
+    }
+
+    /// <summary>The same with results in a folder, where a run that was ended before is taken up again.</summary>
+    private static int InFolder(string study, string folder, bool strict, KeptDesign? kept, RunOptions options)
+    {
+        var hasBegun = false;
+        try
+        {
+            return StudyRun.With(
+                study, options,
+                specification =>
+                {
+                    Probe(folder, specification);
+                    OutputException.RefuseInput(Path.Combine(folder, ResultFiles.Journal), specification);
+                    KeptDesign.RefuseInput(kept, specification);
+                    return OutputException.Guard(folder, () => ProgressDisplay.Run(options, (work, tell) => PanelAnalysisInFolder.Run(
+                        specification, folder, () => KeptDesign.Read(kept, specification, work),
+                        found =>
+                        {
+                            hasBegun = true;
+                            Tell(found, folder, options, tell);
+                        },
+                        work)));
+                },
+                (_, result) => Tell(result, folder, strict, options));
+        }
+        catch (OperationCanceledException) when (options.Cancellation.IsCancellationRequested)
+        {
+            // Before the fit nobody knows whether what lies in the folder is of any use.
+            var left = hasBegun ? OutputException.Guard(folder, () => PanelAnalysisInFolder.Left(folder)) : null;
+            options.Terminal.Problem(KeptReport.OfInterrupted(left, folder));
+            return ExitCode.Interrupted;
+        }
+    }
+
+    /// <summary>A journal that is replaced is a problem and always told; one that is gone on with is news.</summary>
+    private static void Tell(KeptRefits found, string folder, RunOptions options, Action<string> tell)
+    {
+        if (found.Replaced is { } replaced) tell("panelchoice: " + replaced);
+        if (!options.Quiet && KeptReport.OfFound(found, folder) is { } sentence) tell("panelchoice: " + sentence);
     }
 
     /// <summary>An analysis may take long: a folder that cannot be written is told before it.</summary>
@@ -34,15 +75,11 @@ internal static class EstimateCommand
         OutputException.Guard(folder, () => ResultFiles.Probe(folder));
     }
 
-    /// <summary>Prints the report of a result, writes its files, and gives the exit code.</summary>
+    /// <summary>Prints the report of a result whose files are written, and gives the exit code.</summary>
     public static int Tell(AnalysisResult result, string? folder, bool strict, RunOptions options)
     {
         var letter = EstimateReport.Of(result);
-        if (folder is not null)
-        {
-            OutputException.Guard(folder, () => ResultFiles.Write(result, folder));
-            letter.Gap().Paragraph($"Written to {folder}: {string.Join(", ", ResultFiles.Names)}.");
-        }
+        if (folder is not null) letter.Gap().Paragraph($"Written to {folder}: {string.Join(", ", ResultFiles.Names)}.");
 
         options.Print(letter);
         return CodeOf(result, strict);

@@ -1,4 +1,5 @@
-using PanelChoice.Results.Parts;
+using PanelChoice.Results;
+using PanelChoice.Results.Refits;
 using PanelChoice.Study;
 
 namespace PanelChoice.Cli.Commands;
@@ -31,6 +32,10 @@ internal static class GatherCommand
                 return ProgressDisplay.Run(
                     options, work => PanelAnalysisParts.Conclude(specification, parts, () => KeptDesign.Read(kept, specification, work), work));
             },
-            (_, result) => EstimateCommand.Tell(result, output, strict, options));
+            (_, result) =>
+            {
+                OutputException.Guard(output, () => ResultFiles.Write(result, output));
+                return EstimateCommand.Tell(result, output, strict, options);
+            });
     }
 }

@@ -31,10 +31,11 @@ internal static class NumberedRefits
         if (input.Journal is { } journal)
             for (var i = 0; i < outcomes.Length; i++) outcomes[i] = journal.Find(series, numbers[i]);
         var missing = Enumerable.Range(0, outcomes.Length).Where(i => outcomes[i] is null).ToList();
-        var done = outcomes.Length - missing.Count;
+        var found = outcomes.Length - missing.Count;
+        var done = found;
         foreach (var batch in missing.Chunk(Batch(input, work)))
         {
-            work.Report(step, done, outcomes.Length);
+            work.Report(new WorkProgress(step, done, outcomes.Length) { Found = found });
             ImmutableArray<int> asked = [.. batch.Select(i => numbers[i])];
             var made = input.Refitter.Refit([.. asked.Select(request)], work.Cancellation);
             input.Journal?.Keep(series, asked, made);
@@ -42,7 +43,7 @@ internal static class NumberedRefits
             done += batch.Length;
         }
 
-        work.Report(step, done, outcomes.Length);
+        work.Report(new WorkProgress(step, done, outcomes.Length) { Found = found });
         return ImmutableCollectionsMarshal.AsImmutableArray(outcomes)!;
     }
 }

@@ -4,7 +4,11 @@ namespace PanelChoice.Numerics;
 /// <param name="Step">The step in plain words, for example "bootstrap replicates".</param>
 /// <param name="Done">Units done.</param>
 /// <param name="Total">Units in all.</param>
-public sealed record WorkProgress(string Step, long Done, long Total);
+public sealed record WorkProgress(string Step, long Done, long Total)
+{
+    /// <summary>How many of those done an earlier run had done already.</summary>
+    public long Found { get; init; }
+}
 
 /// <summary>How a run may use the machine; none of it changes any figure.</summary>
 /// <param name="Threads">Number of threads, 1 or more.</param>
@@ -17,9 +21,14 @@ public sealed record WorkContext(int Threads, IProgress<WorkProgress>? Progress,
 
     /// <summary>Reports progress and stops if asked to.</summary>
     /// <exception cref="OperationCanceledException">The run was cancelled.</exception>
-    public void Report(string step, long done, long total)
+    public void Report(string step, long done, long total) => Report(new WorkProgress(step, done, total));
+
+    /// <summary>Reports progress and stops if asked to.</summary>
+    /// <param name="progress">How far it has come.</param>
+    /// <exception cref="OperationCanceledException">The run was cancelled.</exception>
+    public void Report(WorkProgress progress)
     {
         Cancellation.ThrowIfCancellationRequested();
-        Progress?.Report(new WorkProgress(step, done, total));
+        Progress?.Report(progress);
     }
 }

@@ -6,6 +6,8 @@ namespace PanelChoice.Results;
 /// </summary>
 internal static class AtomicFile
 {
+    private const string Ending = ".part";
+
     /// <summary>Writes one file.</summary>
     /// <param name="path">The file to make or replace; its folder must exist.</param>
     /// <param name="write">Writes the whole content; it may leave the stream open or close it.</param>
@@ -28,17 +30,35 @@ internal static class AtomicFile
                 using (var stream = new FileStream(temporary[i], FileMode.CreateNew, FileAccess.ReadWrite, FileShare.None, 1 << 16))
                     files[i].Write(stream);
                 FlushToDisk(temporary[i]);
+                RunEvents.Log.FileWritten(files[i].Path);
             }
 
             // A folder in the way is seen now, while nothing has been replaced yet.
             if (files.FirstOrDefault(f => Directory.Exists(f.Path)) is { } blocked)
                 throw new IOException($"'{blocked.Path}' is a folder.");
-            for (var i = 0; i < files.Count; i++) File.Move(temporary[i], files[i].Path, overwrite: true);
+            for (var i = 0; i < files.Count; i++)
+            {
+                File.Move(temporary[i], files[i].Path, overwrite: true);
+                RunEvents.Log.FileNamed(files[i].Path);
+            }
         }
         finally
         {
             foreach (var name in temporary) File.Delete(name);
         }
+    }
+
+    /// <summary>Takes away temporary files that a process which was killed has left beside a file. Nobody may be writing that file.</summary>
+    /// <param name="path">The file.</param>
+    /// <exception cref="IOException">One cannot be taken away.</exception>
+    /// <exception cref="UnauthorizedAccessException">One may not be taken away.</exception>
+    public static void RemoveLeftovers(string path)
+    {
+        ArgumentException.ThrowIfNullOrEmpty(path);
+        var full = Path.GetFullPath(path);
+        var stem = $".{Path.GetFileName(full)}.";
+        foreach (var file in Directory.EnumerateFiles(Path.GetDirectoryName(full)!, stem + "*" + Ending))
+            if (Guid.TryParseExact(Path.GetFileName(file)[stem.Length..^Ending.Length], "N", out _)) File.Delete(file);
     }
 
     private static string TemporaryName(string path)
@@ -49,7 +69,7 @@ internal static class AtomicFile
         if (!Directory.Exists(folder)) throw new DirectoryNotFoundException($"The folder '{folder}' does not exist.");
         // Renaming onto a device would put a file in its place, for every program on the machine.
         if (!OperatingSystem.IsWindows() && folder == "/dev") throw new IOException("it lies among the devices; name an ordinary file.");
-        return Path.Combine(folder, $".{Path.GetFileName(full)}.{Guid.NewGuid():N}.part");
+        return Path.Combine(folder, $".{Path.GetFileName(full)}.{Guid.NewGuid():N}{Ending}");
     }
 
     // Opened anew, because a writer that owns the stream may have closed it.

@@ -18,9 +18,24 @@ internal static class CommandLineProcess
     public static Outcome Run(string folder, params string[] args) => Run(folder, new Dictionary<string, string>(), args);
 
     /// <summary>Runs the built program with both streams piped and some variables set.</summary>
-    public static Outcome Run(string folder, IReadOnlyDictionary<string, string> variables, params string[] args)
+    public static Outcome Run(string folder, IReadOnlyDictionary<string, string> variables, params string[] args) => Ended(Start(folder, variables, args));
+
+    /// <summary>Runs the built program where no file may grow beyond a number of bytes.</summary>
+    public static Outcome RunLimited(string folder, long fileBytes, params string[] args)
     {
-        using var process = Start(folder, variables, args);
+        // The signal that comes with the refusal is ignored, so that the program sees the refusal alone, as on a full disk. The runtime's own scratch
+        // files, of which it makes executable memory, are switched off: they would be refused too.
+        var start = new ProcessStartInfo("/bin/sh", ["-c", $"trap '' XFSZ; exec prlimit --fsize={fileBytes} dotnet \"$@\"", "sh", Dll, .. args])
+        {
+            WorkingDirectory = folder, RedirectStandardOutput = true, RedirectStandardError = true, RedirectStandardInput = true, UseShellExecute = false,
+        };
+        start.Environment["DOTNET_EnableWriteXorExecute"] = "0";
+        return Ended(Process.Start(start)!);
+    }
+
+    private static Outcome Ended(Process started)
+    {
+        using var process = started;
         var error = process.StandardError.ReadToEndAsync();
         var output = process.StandardOutput.ReadToEnd();
         process.WaitForExit();

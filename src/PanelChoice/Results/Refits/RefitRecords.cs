@@ -4,10 +4,10 @@ using System.Text;
 using PanelChoice.Estimation;
 using PanelChoice.Inference;
 
-namespace PanelChoice.Results.Parts;
+namespace PanelChoice.Results.Refits;
 
-/// <summary>What a record of a part file is.</summary>
-internal enum PartRecordKind : byte
+/// <summary>What a record of a file of refits is.</summary>
+internal enum RefitRecordKind : byte
 {
     /// <summary>The first: the header, as JSON.</summary>
     Header = 1,
@@ -18,17 +18,17 @@ internal enum PartRecordKind : byte
     /// <summary>A refit without one cluster.</summary>
     Jackknife = 3,
 
-    /// <summary>The last: everything is there.</summary>
+    /// <summary>The last of a part that is done: everything is there. The journal of a run never has one.</summary>
     End = 4,
 }
 
 /// <summary>
-/// The bytes of a part file: one line that names the layout, then records. A record is its length (4 bytes, of its content alone), its content
+/// The bytes of a file of refits: one line that names the layout, then records. A record is its length (4 bytes, of its content alone), its content
 /// (first byte: what it is), and a seal of 32 bytes, the SHA-256 over the seal before it and the content. A seal therefore vouches for everything
 /// up to it, and the last one for the whole file; what breaks off or was changed is seen at the first record that it touches. All numbers are
 /// little-endian, floating-point numbers are stored as their bits.
 /// </summary>
-internal static class PartRecords
+internal static class RefitRecords
 {
     /// <summary>The line that every layout begins with.</summary>
     public const string Family = "panelchoice-refits/";
@@ -69,17 +69,17 @@ internal static class PartRecords
     }
 
     /// <summary>The content of a header's record.</summary>
-    public static byte[] Of(PartHeader header) => [(byte)PartRecordKind.Header, .. header.ToJson()];
+    public static byte[] Of(RefitHeader header) => [(byte)RefitRecordKind.Header, .. header.ToJson()];
 
     /// <summary>The content of the last record.</summary>
-    public static byte[] End() => [(byte)PartRecordKind.End];
+    public static byte[] End() => [(byte)RefitRecordKind.End];
 
     /// <summary>The content of a refit's record.</summary>
     public static byte[] Of(RefitSeries series, int number, RefitOutcome outcome)
     {
         using var bytes = new MemoryStream();
         using var writer = new BinaryWriter(bytes, Encoding.UTF8);
-        writer.Write((byte)(series == RefitSeries.Bootstrap ? PartRecordKind.Bootstrap : PartRecordKind.Jackknife));
+        writer.Write((byte)(series == RefitSeries.Bootstrap ? RefitRecordKind.Bootstrap : RefitRecordKind.Jackknife));
         writer.Write(number);
         writer.Write((byte)outcome.Status);
         writer.Write(outcome.Retried);
@@ -104,7 +104,7 @@ internal static class PartRecords
         using var reader = new BinaryReader(new MemoryStream(content), Encoding.UTF8);
         try
         {
-            var series = (PartRecordKind)reader.ReadByte() == PartRecordKind.Bootstrap ? RefitSeries.Bootstrap : RefitSeries.Jackknife;
+            var series = (RefitRecordKind)reader.ReadByte() == RefitRecordKind.Bootstrap ? RefitSeries.Bootstrap : RefitSeries.Jackknife;
             var number = reader.ReadInt32();
             var status = (FitStatus)reader.ReadByte();
             var retried = reader.ReadBoolean();

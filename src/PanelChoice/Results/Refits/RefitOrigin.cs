@@ -8,7 +8,7 @@ using PanelChoice.Inference;
 using PanelChoice.Likelihood;
 using PanelChoice.Study;
 
-namespace PanelChoice.Results.Parts;
+namespace PanelChoice.Results.Refits;
 
 /// <summary>Everything that the bits of a refit depend on besides its series and number. Refits of equal origin may stand side by side.</summary>
 /// <param name="Study">SHA-256 of the study file.</param>

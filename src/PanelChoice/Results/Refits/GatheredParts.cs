@@ -3,7 +3,7 @@ using PanelChoice.Estimation;
 using PanelChoice.Inference;
 using PanelChoice.Study;
 
-namespace PanelChoice.Results.Parts;
+namespace PanelChoice.Results.Refits;
 
 /// <summary>All parts of one analysis: each whole, all of one origin, none missing. A journal of every numbered refit that it needs.</summary>
 public sealed class GatheredParts : IRefitJournal
@@ -30,7 +30,7 @@ public sealed class GatheredParts : IRefitJournal
     public static IReadOnlyList<string> NamesOf(RefitShare share)
     {
         ArgumentNullException.ThrowIfNull(share);
-        return [PartFile.NameOf(share, PartFile.Unfinished), PartFile.NameOf(share, PartFile.Done)];
+        return [RefitFile.NameOf(share, RefitFile.Unfinished), RefitFile.NameOf(share, RefitFile.Done)];
     }
 
     /// <summary>Reads the parts in a folder and checks them against each other.</summary>

@@ -1,14 +1,30 @@
 using System.Text.Json;
 using PanelChoice.Inference;
 
-namespace PanelChoice.Results.Parts;
+namespace PanelChoice.Results.Refits;
 
-/// <summary>What a part file says of itself before its refits.</summary>
-/// <param name="Share">Which part it is.</param>
-/// <param name="StudyFile">The study file as seen from the folder of the parts, with forward slashes.</param>
+/// <summary>What a file of refits says of itself before them.</summary>
+/// <param name="Share">Which part it is; the whole in the journal of a run.</param>
+/// <param name="StudyFile">The study file as seen from the folder of the file, with forward slashes.</param>
 /// <param name="Origin">What its refits depend on.</param>
-internal sealed record PartHeader(RefitShare Share, string StudyFile, RefitOrigin Origin)
+internal sealed record RefitHeader(RefitShare Share, string StudyFile, RefitOrigin Origin)
 {
+    /// <summary>The header of a file in a folder.</summary>
+    /// <param name="share">Which part.</param>
+    /// <param name="folder">The folder.</param>
+    /// <param name="study">The study file.</param>
+    /// <param name="origin">What its refits depend on.</param>
+    public static RefitHeader Of(RefitShare share, string folder, string study, RefitOrigin origin) =>
+        // Seen from the folder both may be moved together or mounted elsewhere.
+        new(share, Path.GetRelativePath(Path.GetFullPath(folder), Path.GetFullPath(study)).Replace(Path.DirectorySeparatorChar, '/'), origin);
+
+    /// <summary>In what a file's header differs from this one in as far as its refits are others, as the middle of a sentence; null when in nothing, or when there is no header.</summary>
+    public string? Against(RefitHeader? there) =>
+        there is null ? null
+        : Origin.Against(there.Origin) is { } difference ? $"it was made from something else and differs in {difference.Words}"
+        : there.Share != Share ? $"it holds part {there.Share.Part} of {there.Share.Parts}"
+        : null;
+
     /// <summary>Replicates in the part.</summary>
     public int Replicates => Share.Count(Origin.Replicates);
 
@@ -51,7 +67,7 @@ internal sealed record PartHeader(RefitShare Share, string StudyFile, RefitOrigi
     }
 
     /// <summary>The header from its JSON; null where it makes no sense.</summary>
-    public static PartHeader? FromJson(ReadOnlyMemory<byte> bytes)
+    public static RefitHeader? FromJson(ReadOnlyMemory<byte> bytes)
     {
         try
         {
@@ -61,7 +77,7 @@ internal sealed record PartHeader(RefitShare Share, string StudyFile, RefitOrigi
             int Count(string name, int least, int most) =>
                 root.GetProperty(name).GetInt32() is var n && n >= least && n <= most ? n : throw new FormatException(name);
             var parts = Count("parts", 1, RefitShare.MostParts);
-            var header = new PartHeader(
+            var header = new RefitHeader(
                 new RefitShare(Count("part", 1, parts), parts), Text("study_file"),
                 new RefitOrigin(
                     Text("study_sha256"), Text("data_sha256"), root.GetProperty("estimate_seed").GetInt64(), root.GetProperty("bootstrap_seed").GetInt64(),

@@ -1,17 +1,17 @@
 using System.Collections.Immutable;
 using PanelChoice.Estimation;
 using PanelChoice.Inference;
-using PanelChoice.Results.Parts;
+using PanelChoice.Results.Refits;
 using PanelChoice.Tests.Support;
 using Xunit;
 
 namespace PanelChoice.Tests.Results;
 
 /// <summary>The bytes of a part: what comes back, what is noticed, what is gone on with.</summary>
-public sealed class PartFileTests : IDisposable
+public sealed class RefitFileTests : IDisposable
 {
     private static readonly RefitOrigin Origin = new("aa11", "bb22", 7, -8, "vector512", "0.1.0", ".NET on X64", "cc33", 3, 5, 4);
-    private static readonly PartHeader Header = new(new RefitShare(2, 2), "../study.toml", Origin);
+    private static readonly RefitHeader Header = new(new RefitShare(2, 2), "../study.toml", Origin);
 
     private static readonly ImmutableArray<(RefitSeries Series, int Number, RefitOutcome Outcome)> Refits =
     [
@@ -31,7 +31,7 @@ public sealed class PartFileTests : IDisposable
     [Fact]
     public void Every_bit_of_every_refit_comes_back()
     {
-        var file = PartFile.Read(Write());
+        var file = RefitFile.Read(Write());
         Assert.True(file is { IsComplete: true, Damage: null, Foreign: null });
         Assert.Equal(Header, file.Header);
         Assert.Equal(Refits.Length, file.Outcomes.Count);
@@ -60,7 +60,7 @@ public sealed class PartFileTests : IDisposable
         var found = new SortedSet<int>();
         for (var length = 0; length < whole.Length; length++)
         {
-            var cut = PartFile.Read("cut", new MemoryStream(whole[..length]));
+            var cut = RefitFile.Read("cut", new MemoryStream(whole[..length]));
             Assert.False(cut.IsComplete);
             Assert.Null(cut.Foreign);
             // Going on costs several flushes to the disk; it is tried behind every record and at some places inside.
@@ -83,7 +83,7 @@ public sealed class PartFileTests : IDisposable
         {
             var changed = (byte[])whole.Clone();
             changed[i] ^= 0x10;
-            var file = PartFile.Read("changed", new MemoryStream(changed));
+            var file = RefitFile.Read("changed", new MemoryStream(changed));
             Assert.True(file.Damage is not null || file.Foreign is not null, $"byte {i}");
         }
     }
@@ -91,33 +91,33 @@ public sealed class PartFileTests : IDisposable
     [Fact]
     public void Records_left_out_told_twice_or_put_after_the_end_are_noticed()
     {
-        PartFile Of(params byte[][] contents)
+        RefitFile Of(params byte[][] contents)
         {
             using var stream = new MemoryStream();
-            stream.Write(PartRecords.Layout);
-            var seal = PartRecords.FirstSeal();
-            foreach (var content in contents) seal = PartRecords.Write(stream, seal, content);
+            stream.Write(RefitRecords.Layout);
+            var seal = RefitRecords.FirstSeal();
+            foreach (var content in contents) seal = RefitRecords.Write(stream, seal, content);
             stream.Position = 0;
-            return PartFile.Read("made", stream);
+            return RefitFile.Read("made", stream);
         }
 
-        var header = PartRecords.Of(Header);
-        byte[][] refits = [.. Refits.Select(r => PartRecords.Of(r.Series, r.Number, r.Outcome))];
-        Assert.True(Of([header, .. refits, PartRecords.End()]).IsComplete);
-        Assert.NotNull(Of([header, .. refits[1..], PartRecords.End()]).Damage);
+        var header = RefitRecords.Of(Header);
+        byte[][] refits = [.. Refits.Select(r => RefitRecords.Of(r.Series, r.Number, r.Outcome))];
+        Assert.True(Of([header, .. refits, RefitRecords.End()]).IsComplete);
+        Assert.NotNull(Of([header, .. refits[1..], RefitRecords.End()]).Damage);
         Assert.NotNull(Of([header, refits[0], .. refits]).Damage);
-        Assert.NotNull(Of([header, .. refits, PartRecords.End(), PartRecords.End()]).Damage);
+        Assert.NotNull(Of([header, .. refits, RefitRecords.End(), RefitRecords.End()]).Damage);
         Assert.NotNull(Of([.. refits]).Damage);
         Assert.NotNull(Of([header, header]).Damage);
         // A replicate of the other part, a parameter too many, a content that goes on, a kind and a status that do not exist.
-        Assert.NotNull(Of([header, PartRecords.Of(RefitSeries.Bootstrap, 1, Refits[0].Outcome)]).Damage);
-        Assert.NotNull(Of([header, PartRecords.Of(RefitSeries.Bootstrap, 2, Refits[0].Outcome with { Parameters = [1, 2, 3, 4] })]).Damage);
-        Assert.NotNull(Of([header, PartRecords.Of(RefitSeries.Bootstrap, 2, Refits[0].Outcome with { Parameters = [] })]).Damage);
+        Assert.NotNull(Of([header, RefitRecords.Of(RefitSeries.Bootstrap, 1, Refits[0].Outcome)]).Damage);
+        Assert.NotNull(Of([header, RefitRecords.Of(RefitSeries.Bootstrap, 2, Refits[0].Outcome with { Parameters = [1, 2, 3, 4] })]).Damage);
+        Assert.NotNull(Of([header, RefitRecords.Of(RefitSeries.Bootstrap, 2, Refits[0].Outcome with { Parameters = [] })]).Damage);
         Assert.NotNull(Of([header, [.. refits[0], 0]]).Damage);
         Assert.NotNull(Of([header, [9, .. refits[0][1..]]]).Damage);
-        Assert.NotNull(Of([header, PartRecords.Of(RefitSeries.Bootstrap, 2, Refits[0].Outcome with { Status = (FitStatus)77 })]).Damage);
-        Assert.NotNull(Of([[(byte)PartRecordKind.Header, .. "{}"u8]]).Damage);
-        Assert.NotNull(Of([[(byte)PartRecordKind.Header, .. "no JSON"u8]]).Damage);
+        Assert.NotNull(Of([header, RefitRecords.Of(RefitSeries.Bootstrap, 2, Refits[0].Outcome with { Status = (FitStatus)77 })]).Damage);
+        Assert.NotNull(Of([[(byte)RefitRecordKind.Header, .. "{}"u8]]).Damage);
+        Assert.NotNull(Of([[(byte)RefitRecordKind.Header, .. "no JSON"u8]]).Damage);
     }
 
     [Fact]
@@ -132,7 +132,7 @@ public sealed class PartFileTests : IDisposable
             var first = Task.Run(() =>
             {
                 using var journal = PartJournal.Open(Folder, Header).Value!;
-                foreach (var (series, number, outcome) in Refits) journal.Keep(series, [number], [outcome]);
+                foreach (var (series, number, outcome) in Refits) journal.Refits!.Keep(series, [number], [outcome]);
                 begun.Set();
                 journal.Complete();
             });
@@ -142,7 +142,7 @@ public sealed class PartFileTests : IDisposable
                 try
                 {
                     using var second = PartJournal.Open(Folder, Header).Value!;
-                    Assert.True(second.WasComplete, $"round {round}: the second run takes the part for unfinished");
+                    Assert.True(second.Refits is null, $"round {round}: the second run takes the part for unfinished");
                     break;
                 }
                 catch (IOException busy)
@@ -152,7 +152,7 @@ public sealed class PartFileTests : IDisposable
             }
 
             await first;
-            Assert.True(PartFile.Read(done).IsComplete);
+            Assert.True(RefitFile.Read(done).IsComplete);
             Assert.Equal(["part-2-of-2.refits"], Directory.GetFiles(Folder).Select(f => Path.GetFileName(f)!));
         }
     }
@@ -160,7 +160,7 @@ public sealed class PartFileTests : IDisposable
     [Fact]
     public void A_layout_of_a_later_version_is_called_so()
     {
-        var later = PartFile.Read("later", new MemoryStream([.. "panelchoice-refits/2\n"u8, 1, 2, 3]));
+        var later = RefitFile.Read("later", new MemoryStream([.. "panelchoice-refits/2\n"u8, 1, 2, 3]));
         Assert.Contains("layout panelchoice-refits/2", later.Foreign, StringComparison.Ordinal);
     }
 
@@ -186,7 +186,7 @@ public sealed class PartFileTests : IDisposable
 
     [Fact]
     public void Part_names_sort_in_the_order_of_the_parts() =>
-        Assert.Equal(["part-003-of-120.refits", "part-120-of-120.refits"], [PartFile.NameOf(new(3, 120), ".refits"), PartFile.NameOf(new(120, 120), ".refits")]);
+        Assert.Equal(["part-003-of-120.refits", "part-120-of-120.refits"], [RefitFile.NameOf(new(3, 120), ".refits"), RefitFile.NameOf(new(120, 120), ".refits")]);
 
     private string Write()
     {
@@ -200,7 +200,7 @@ public sealed class PartFileTests : IDisposable
         using var journal = PartJournal.Open(Folder, Header).Value!;
         Assert.Equal(found, journal.Found);
         foreach (var (series, number, outcome) in Refits)
-            if (journal.Find(series, number) is null) journal.Keep(series, [number], [outcome]);
+            if (journal.Refits!.Find(series, number) is null) journal.Refits!.Keep(series, [number], [outcome]);
         journal.Complete();
         return journal.Found;
     }

@@ -3,7 +3,7 @@ using PanelChoice.Estimation;
 using PanelChoice.Inference;
 using PanelChoice.Study;
 
-namespace PanelChoice.Results.Parts;
+namespace PanelChoice.Results.Refits;
 
 /// <summary>A folder in which parts are gathered: reads all of them, says of each what is wrong with it, and which are missing.</summary>
 /// <param name="folder">The folder as the user named it.</param>
@@ -31,7 +31,7 @@ internal sealed partial class PartFolder(string folder)
         var read = files.Select(f => (Name: f, File: TryRead(f))).ToList();
         var headers = read.Where(r => r.File?.Header is not null).Select(r => r.File!).ToList();
         var study = headers.Count == 0 ? null : StudyFile(headers[0].Header!);
-        var done = headers.Where(f => f is { IsComplete: true, Damage: null } && f.Path.EndsWith(PartFile.Done, StringComparison.Ordinal))
+        var done = headers.Where(f => f is { IsComplete: true, Damage: null } && f.Path.EndsWith(RefitFile.Done, StringComparison.Ordinal))
             .OrderBy(f => f.Header!.Share.Part).ToList();
         var strange = TellSplit(headers);
         foreach (var (name, file) in read)
@@ -48,14 +48,14 @@ internal sealed partial class PartFolder(string folder)
 
     private List<string> Files() => !Directory.Exists(folder)
         ? []
-        : [.. Directory.EnumerateFiles(folder).Where(f => f.EndsWith(PartFile.Done, StringComparison.Ordinal) || f.EndsWith(PartFile.Unfinished, StringComparison.Ordinal))
+        : [.. Directory.EnumerateFiles(folder).Where(f => f.EndsWith(RefitFile.Done, StringComparison.Ordinal) || f.EndsWith(RefitFile.Unfinished, StringComparison.Ordinal))
             .Order(StringComparer.Ordinal)];
 
-    private PartFile? TryRead(string path)
+    private RefitFile? TryRead(string path)
     {
         try
         {
-            return PartFile.Read(path);
+            return RefitFile.Read(path);
         }
         catch (IOException busy) when (FileLocks.IsTaken(busy))
         {
@@ -70,7 +70,7 @@ internal sealed partial class PartFolder(string folder)
     }
 
     /// <summary>Says what is wrong with a file that is no complete part.</summary>
-    private void TellUnusable(string name, PartFile file, string? study, List<PartFile> done)
+    private void TellUnusable(string name, RefitFile file, string? study, List<RefitFile> done)
     {
         var share = file.Header?.Share ?? ShareOf(name);
         if (file.Foreign is { } reason)
@@ -80,7 +80,7 @@ internal sealed partial class PartFolder(string folder)
         }
 
         var again = share is null ? "make its part again" : $"run {Command(share, study)}";
-        if (name.EndsWith(PartFile.Done, StringComparison.Ordinal))
+        if (name.EndsWith(RefitFile.Done, StringComparison.Ordinal))
         {
             Tell("parts.damaged", name, share, $"the file is damaged: {file.Damage ?? "it has no end"}", $"delete it and {again}");
             return;
@@ -94,7 +94,7 @@ internal sealed partial class PartFolder(string folder)
     }
 
     /// <summary>Says where parts, finished or not, come from divisions into different numbers, and gives those of another division than most.</summary>
-    private List<PartFile> TellSplit(List<PartFile> files)
+    private List<RefitFile> TellSplit(List<RefitFile> files)
     {
         if (files.Count == 0) return [];
         var first = files.GroupBy(f => f.Header!.Share.Parts).OrderByDescending(g => g.Count()).First().First();
@@ -108,7 +108,7 @@ internal sealed partial class PartFolder(string folder)
     }
 
     /// <summary>Compares complete parts with the first one.</summary>
-    private void Compare(List<PartFile> done)
+    private void Compare(List<RefitFile> done)
     {
         if (done.Count == 0) return;
         var (first, name) = (done[0].Header!, Path.GetFileName(done[0].Path));
@@ -126,7 +126,7 @@ internal sealed partial class PartFolder(string folder)
         }
     }
 
-    private void TellMissing(int parts, List<PartFile> done, string? study)
+    private void TellMissing(int parts, List<RefitFile> done, string? study)
     {
         var there = done.Select(f => f.Header!.Share.Part).Concat(told).ToHashSet();
         var missing = Enumerable.Range(1, parts).Where(p => !there.Contains(p)).ToList();
@@ -145,7 +145,7 @@ internal sealed partial class PartFolder(string folder)
     }
 
     /// <summary>The study file of a part, as a path that a command in the present folder understands.</summary>
-    private string StudyFile(PartHeader header)
+    private string StudyFile(RefitHeader header)
     {
         var full = Path.GetFullPath(Path.Combine(Path.GetFullPath(folder), header.StudyFile));
         return Path.IsPathRooted(folder) ? full : Path.GetRelativePath(".", full);
