@@ -1,5 +1,8 @@
 using System.Collections.Immutable;
+using PanelChoice.Covariates;
+using PanelChoice.Diagnostics;
 using PanelChoice.Estimation;
+using PanelChoice.Findings;
 using PanelChoice.Inference;
 using PanelChoice.Numerics;
 using PanelChoice.Study;
@@ -25,13 +28,23 @@ internal sealed record IntervalOutcome(string Status, ImmutableSortedDictionary<
         var made = scenario.Panel(persons, options.Seed, index);
         var model = IntervalScenario.Fit(made);
         if (model.Status != FitStatus.Converged) return new IntervalOutcome(model.Status.ToString(), ImmutableSortedDictionary<string, string>.Empty);
-        var settings = made.Study.Inference with { Confidence = Confidence, Jackknife = JackknifeKind.Refit, Replicates = options.Replicates, BootstrapSeed = index };
-        var inference = StandardErrors.Compute(InferenceInput.From(model, new ClusterRefitter(model, 1)), settings, WorkContext.Quiet);
+        var study = made.Study with
+        {
+            Inference = made.Study.Inference with
+            {
+                Confidence = Confidence, Jackknife = JackknifeKind.Refit, Replicates = options.Replicates, BootstrapSeed = index, SecondCluster = "occasion",
+            },
+        };
+        var evidence = InferenceInput.From(model, new ClusterRefitter(model, 1)) with { Second = SecondClusters.Of(study, EstimationSample.Of(made.Covariates), model) };
+        var inference = StandardErrors.Compute(evidence, study.Inference, WorkContext.Quiet);
         var places = Terms.Select(t => model.Layout.Parameters.Select((p, k) => (p.Name, k)).First(x => x.Name == t).k).ToArray();
         var terms = places.Select(k => inference.Parameters.First(p => p.Parameter == k)).ToArray();
         var verdicts = ImmutableSortedDictionary.CreateBuilder<string, string>(StringComparer.Ordinal);
         foreach (var kind in Enum.GetValues<CovarianceKind>()) Add(kind.ToString(), p => p.ByKind.GetValueOrDefault(kind)?.Interval);
         Add("Percentile", p => p.BootstrapPercentile);
+        var diagnostics = IndependenceBattery.Run(study, made.Covariates, model, WorkContext.Quiet);
+        var recommended = new FindingsInput(study, EstimationSample.Of(made.Covariates), model, inference, diagnostics).Recommendations.ToDictionary(r => r.Parameter);
+        Add("recommended", p => recommended[p.Parameter].Interval);
         return new IntervalOutcome("Converged", verdicts.ToImmutable());
 
         void Add(string kind, Func<ParameterInference, Interval?> interval)

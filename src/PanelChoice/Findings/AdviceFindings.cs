@@ -21,7 +21,7 @@ internal static class AdviceFindings
             yield break;
         }
 
-        yield return WhatToReport(input, inference);
+        foreach (var finding in WhatToReport(input, inference)) yield return finding;
         if (input.IsCrossSection) yield break;
         if (input.Diagnostics.CommonDays == true)
             yield return new Finding(
@@ -41,40 +41,65 @@ internal static class AdviceFindings
                 [new FindingFigure("failed", bootstrap.Requested - bootstrap.Done)]);
     }
 
-    private static Finding WhatToReport(FindingsInput input, InferenceResult inference)
+    private static IEnumerable<Finding> WhatToReport(FindingsInput input, InferenceResult inference)
     {
         var clusters = inference.Clusters;
-        var by = clusters.By == "person" ? "persons" : $"groups of '{clusters.By}'";
-        var confidence = PlainNumber.PercentInWords(input.Study.Inference.Confidence);
         if (input.IsCrossSection)
-            return new Finding(
+        {
+            yield return new Finding(
                 "advice.cross_section", FindingTopic.Advice, FindingSeverity.Information,
                 "Every person has one occasion, so occasions are the independent units: report the robust standard error, which stays right when the "
                 + "probabilities are not exactly those of the model (Huber 1967, White 1982); the clustered one differs from it by the factor G/(G - 1) alone.", []);
-        if (clusters.Count >= FindingsInput.FewClusters)
-            return new Finding(
-                "advice.cluster", FindingTopic.Advice, FindingSeverity.Information,
-                $"Report the clustered standard errors and their {confidence} intervals, from the t distribution with {clusters.DegreesOfFreedom} "
-                + $"degrees of freedom. They rest on {PlainNumber.Count(clusters.Count)} {by} and hold whatever ties the occasions inside one together "
-                + "(Liang and Zeger 1986; Cameron and Miller 2015); the pooled ones hold only where nothing does.",
-                [new FindingFigure("clusters", clusters.Count)]);
+            yield break;
+        }
+
         if (clusters.Count < 2)
-            return new Finding(
+        {
+            yield return new Finding(
                 "advice.one_cluster", FindingTopic.Advice, FindingSeverity.Warning,
                 $"All occasions belong to one {(clusters.By == "person" ? "person" : $"group of '{clusters.By}'")}, so nothing here can say how far its occasions hang together, and every "
                 + "standard error takes them for independent. The figures speak of that one alone.",
                 [new FindingFigure("clusters", clusters.Count)]);
-        var few = $"There are only {clusters.Count} {by}: with fewer than {FindingsInput.FewClusters} the clustered standard error tends to be too small.";
-        return inference.Covariances.GetValueOrDefault(CovarianceKind.Jackknife)?.Matrix is null
-            ? new Finding(
-                "advice.few_no_jackknife", FindingTopic.Advice, FindingSeverity.Warning,
-                $"{few} The jackknife would be the one to report, but there is none here: call the clustered intervals a lower bound for the uncertainty.",
-                [new FindingFigure("clusters", clusters.Count)])
-            : new Finding(
-                "advice.jackknife", FindingTopic.Advice, FindingSeverity.Notice,
-                $"{few} Report the jackknife standard errors with the t distribution with {clusters.DegreesOfFreedom} degrees of freedom "
-                + "(MacKinnon, Nielsen and Webb 2023).",
+            yield break;
+        }
+
+        var groups = input.Recommendations.GroupBy(r => (r.Kind, r.Rule, r.Why)).ToList();
+        foreach (var group in groups)
+        {
+            var terms = groups.Count == 1 ? "" : $" of {Named(input, [.. group.Select(r => r.Parameter)])}";
+            if (group.Key.Kind is not { } kind)
+            {
+                yield return new Finding("advice.no_error", FindingTopic.Advice, FindingSeverity.Warning, $"There is no standard error{terms} to report. {group.Key.Why}", []);
+                continue;
+            }
+
+            // Where the rules would have had another and there is none, the clustered one with few clusters bounds the uncertainty from below.
+            var isBound = kind == CovarianceKind.Cluster && clusters.Count < RecommendationRules.SomeClusters;
+            yield return new Finding(
+                isBound ? "advice.lower_bound" : "advice." + PrecisionFindings.IdOf(kind), FindingTopic.Advice,
+                isBound ? FindingSeverity.Warning : kind == CovarianceKind.Cluster ? FindingSeverity.Information : FindingSeverity.Notice,
+                $"Report the {PrecisionFindings.InWords(kind)} standard error{(groups.Count == 1 ? "s" : terms)} with {Distribution(group)}. {group.Key.Why}"
+                + (isBound ? " Call its interval a lower bound for the uncertainty." : ""),
                 [new FindingFigure("clusters", clusters.Count)]);
+        }
+    }
+
+    /// <summary>The terms of a group, the first few by name.</summary>
+    private static string Named(FindingsInput input, IReadOnlyList<int> parameters)
+    {
+        const int Most = 4;
+        var names = parameters.Take(Most).Select(k => $"'{input.Layout.Parameters[k].Label}'").ToList();
+        return parameters.Count > Most ? $"{string.Join(", ", names)} and {parameters.Count - Most} more"
+            : names.Count == 1 ? names[0]
+            : $"{string.Join(", ", names[..^1])} and {names[^1]}";
+    }
+
+    private static string Distribution(IEnumerable<Recommendation> group)
+    {
+        var distinct = group.Select(r => r.DegreesOfFreedom).Distinct().ToList();
+        return distinct.Count > 1 ? "t distributions, each with its own degrees of freedom"
+            : distinct[0] is { } df ? $"the t distribution with {PlainNumber.Count(df)} degrees of freedom"
+            : "the normal distribution";
     }
 
     private static IEnumerable<Finding> NotRepaired(FindingsInput input)

@@ -17,17 +17,14 @@ namespace PanelChoice.Findings;
 public sealed record FindingsInput(
     StudySpecification Study, EstimationSample Sample, FittedModel Model, InferenceResult Inference, DiagnosticsResult Diagnostics)
 {
-    /// <summary>
-    /// Below this many clusters the clustered standard error with t(G - 1) rejects too often (8 percent at 40, 12 at 20, 19 at 10 against
-    /// a nominal 5, in simulations made for this project) and the jackknife is the one to report (MacKinnon, Nielsen and Webb 2023).
-    /// </summary>
-    internal const int FewClusters = 40;
+    /// <summary>What to report of each free parameter, in layout order.</summary>
+    internal ImmutableArray<Recommendation> Recommendations => RecommendationRules.Of(this);
 
     internal ParameterLayout Layout => Model.Layout;
 
-    /// <summary>The kind of standard error that the sentences quote: clustered, or the jackknife with few clusters.</summary>
+    /// <summary>The kind of standard error that the sentences quote: clustered, or the jackknife where clusters are not many.</summary>
     internal CovarianceKind Quoted =>
-        Inference.Clusters.Count < FewClusters && Inference.Covariances.GetValueOrDefault(CovarianceKind.Jackknife)?.Matrix is not null
+        Inference.Clusters.Count < RecommendationRules.SomeClusters && Inference.Covariances.GetValueOrDefault(CovarianceKind.Jackknife)?.Matrix is not null
             ? CovarianceKind.Jackknife
             : CovarianceKind.Cluster;
 

@@ -99,6 +99,12 @@ internal static class PrecisionFindings
         _ => kind.ToString().ToLowerInvariant(),
     };
 
+    internal static string IdOf(CovarianceKind kind) => kind switch
+    {
+        CovarianceKind.TwoWay => "two_way",
+        _ => kind.ToString().ToLowerInvariant(),
+    };
+
     internal static double Median(IEnumerable<double> values)
     {
         var sorted = values.Order().ToImmutableArray();

@@ -43,6 +43,9 @@ public sealed record AnalysisResult(
     ImmutableArray<Finding> Findings,
     ReplicateTable Replicates)
 {
+    /// <summary>What to report of each free parameter, and why.</summary>
+    public ImmutableArray<RecommendationResult> Recommendations { get; init; } = [];
+
     /// <summary>How clustering two ways went; null where it was not asked for or refused.</summary>
     public TwoWayResult? TwoWay { get; init; }
 

@@ -47,6 +47,7 @@ internal static class ResultBuilder
             Replicates(entries, model, inference.Bootstrap))
         {
             TwoWay = twoWay,
+            Recommendations = RecommendationResult.Of(stages.Recommendations, model.Layout),
         };
     }
 

@@ -53,6 +53,7 @@ public static class ResultJson
             WriteBootstrap(json, result.Bootstrap);
             WriteJackknife(json, result.Jackknife);
             TwoWayResult.Write(json, result.TwoWay);
+            RecommendationResult.Write(json, result.Recommendations);
             WriteCovariance(json, result.Covariance);
             WriteClusters(json, result.Clusters);
             json.WriteObject("diagnostics", () => DiagnosticsJson.Write(json, result.Diagnostics));

@@ -16,11 +16,11 @@ namespace PanelChoice.Tests.Results;
 /// <summary>The result document keeps its contract: names, nesting, order, nulls with reasons, full matrices, every bit of a number.</summary>
 public class ResultJsonTests
 {
-    private static readonly AnalysisResult Result = HandMadeStages.Result(HandMadeStages.Fifty);
+    private static readonly AnalysisResult Result = HandMadeStages.Result(HandMadeStages.Many);
     private static readonly JsonElement Document = Parse(Result);
 
     [Theory]
-    [InlineData("", "schema title tool inputs settings reasons warnings sample fit parameters bootstrap jackknife two_way covariance clusters diagnostics findings")]
+    [InlineData("", "schema title tool inputs settings reasons warnings sample fit parameters bootstrap jackknife two_way recommendations covariance clusters diagnostics findings")]
     [InlineData("tool", "version runtime kernel")]
     [InlineData("inputs", "study data")]
     [InlineData("inputs.study", "file sha256")]
@@ -58,7 +58,7 @@ public class ResultJsonTests
     [Fact]
     public void Every_missing_figure_has_its_reason()
     {
-        var stages = HandMadeStages.Fifty;
+        var stages = HandMadeStages.Many;
         var poor = HandMadeStages.Result(stages with
         {
             Diagnostics = HandMadeStages.Quiet with { DateScore = null, CommonDays = null, VarianceInflation = null, Lags = [new LagDependence(3, double.NaN, double.NaN, 0)] },
@@ -121,11 +121,11 @@ public class ResultJsonTests
     {
         var made = SyntheticPanel.Make(3, 20, 6, 4, [SyntheticPanel.Nest("outer", "A", "inner"), SyntheticPanel.Nest("inner", "B")], [0.6, 1]);
         var (model, refitter) = NewtonRefitter.Fit(made.Design(), made.Truth);
-        var settings = HandMadeStages.Fifty.Study.Inference with { Replicates = 0, Jackknife = PanelChoice.Study.JackknifeKind.Off };
+        var settings = HandMadeStages.Many.Study.Inference with { Replicates = 0, Jackknife = PanelChoice.Study.JackknifeKind.Off };
         var inference = StandardErrors.Compute(InferenceInput.From(model, refitter), settings, WorkContext.Quiet);
-        var result = HandMadeStages.Result(HandMadeStages.Fifty with
+        var result = HandMadeStages.Result(HandMadeStages.Many with
         {
-            Study = HandMadeStages.Fifty.Study with { Nests = made.Nests, Terms = HandMadeStages.Fifty.Study.Terms[..3], Inference = settings }, Sample = EstimationSample.Of(made.Covariates), Model = model, Inference = inference,
+            Study = HandMadeStages.Many.Study with { Nests = made.Nests, Terms = HandMadeStages.Many.Study.Terms[..3], Inference = settings }, Sample = EstimationSample.Of(made.Covariates), Model = model, Inference = inference,
         });
         var (outer, inner) = (result.Parameters[^2], result.Parameters[^1]);
         Assert.Equal(("outer", "free"), (outer.Name, outer.Status));
@@ -159,7 +159,7 @@ public class ResultJsonTests
     [Fact]
     public void An_estimate_that_is_not_to_be_trusted_has_no_standard_errors_and_says_why()
     {
-        var stages = HandMadeStages.Fifty;
+        var stages = HandMadeStages.Many;
         var model = stages.Model with { Status = FitStatus.Boundary, Findings = [new FitFinding("fit.boundary", "A dissimilarity runs to 0.", [6])] };
         var refused = StandardErrors.Compute(InferenceInput.From(model, new ScriptedRefitter(_ => throw new InvalidOperationException())), stages.Study.Inference, WorkContext.Quiet);
         var diagnostics = HandMadeStages.Taste with { Verdict = Verdict.NotApplicable, Reason = "The estimate is no maximum.", Cause = null, Detector = null, DateScore = null, Lags = [], ByAlternative = [], ByNest = [], VarianceInflation = null, HitRate = null };

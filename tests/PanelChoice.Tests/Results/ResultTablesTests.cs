@@ -10,7 +10,7 @@ namespace PanelChoice.Tests.Results;
 /// <summary>The tables beside the result document hold the same numbers.</summary>
 public class ResultTablesTests
 {
-    private static readonly AnalysisResult Result = HandMadeStages.Result(HandMadeStages.Fifty);
+    private static readonly AnalysisResult Result = HandMadeStages.Result(HandMadeStages.Many);
 
     [Fact]
     public void Coefficients_have_a_row_per_parameter_and_read_back_to_the_same_bits()

@@ -29,10 +29,10 @@ internal static class HandMadeStages
     };
 
     private static readonly Lazy<FindingsInput> FourteenPersons = new(() => Make(14));
-    private static readonly Lazy<FindingsInput> FiftyPersons = new(() => Make(50));
+    private static readonly Lazy<FindingsInput> ManyPersons = new(() => Make(120));
 
-    /// <summary>50 persons x 8 occasions; dependence by taste.</summary>
-    public static FindingsInput Fifty => FiftyPersons.Value;
+    /// <summary>120 persons x 8 occasions; dependence by taste.</summary>
+    public static FindingsInput Many => ManyPersons.Value;
 
     /// <summary>14 persons x 8 occasions: fewer clusters than a clustered standard error wants.</summary>
     public static FindingsInput Fourteen => FourteenPersons.Value;
