@@ -94,8 +94,11 @@ public static class PanelAnalysis
         ArgumentNullException.ThrowIfNull(work);
         var (study, sample, model, evidence) = fit;
         var inference = StandardErrors.Compute(evidence, study.Inference, work);
+        var tests = TermTests.Run(
+            evidence, TermTestPlan.Of(study, sample.Sample.Covariates, model.Layout, evidence, study.Inference), inference,
+            new RestrictedRefitter(model, work.Cancellation), study.Inference, work);
         var diagnostics = IndependenceBattery.Run(study, sample.Sample, model, sample.Static, work);
-        var stages = new FindingsInput(study, sample.Sample, model, inference, diagnostics);
+        var stages = new FindingsInput(study, sample.Sample, model, inference, diagnostics) { Tests = tests };
         return ResultBuilder.Build(stages, FindingList.Of(stages));
     }
 }

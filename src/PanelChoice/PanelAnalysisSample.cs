@@ -60,7 +60,7 @@ public sealed class PanelAnalysisSample : IDisposable
         ArgumentNullException.ThrowIfNull(study);
         ArgumentNullException.ThrowIfNull(work);
         return Parts(study, bytesKept, rowsOfPart, null, work, (_, designs) =>
-            designs.Main(format => new MemoryBlockStore(format)).Then(made => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
+            designs.Main(format => new MemoryBlockStore(format)).Then(made => WithTests(study, new PanelAnalysisSample(
                 made.Sample, made.Design,
                 () => StaticDesign.Of(study, made.Sample, made.Design, terms => designs.Other(terms, f => new MemoryBlockStore(f)).Value, f => new MemoryBlockStore(f)), null))));
     }
@@ -98,7 +98,7 @@ public sealed class PanelAnalysisSample : IDisposable
         {
             memory = RunMemory.Of(design, study.Inference);
             return Math.Min(memoryBytes / ShareHeld, memory.Left(memoryBytes, work.Threads));
-        }).Then(kept => Checked<PanelAnalysisSample>.Good(new PanelAnalysisSample(
+        }).Then(kept => WithTests(study, new PanelAnalysisSample(
             kept.Sample, kept.Main, () => kept.Second is null ? null : new StaticDesign(kept.Second, kept.SecondNames), kept)
             {
                 RefitsAtOnce = memory!.RefitsAtOnce(memoryBytes),
@@ -116,6 +116,15 @@ public sealed class PanelAnalysisSample : IDisposable
     /// <summary>Runs an estimation on the sample; a budget that cannot hold what it takes, and a store that cannot be read any more, become problems.</summary>
     internal Checked<T> Estimate<T>(Func<Checked<T>> use)
         where T : class => littleMemory is { } problem ? Checked<T>.Bad([problem]) : StoreReadException.Guard(store?.File, use);
+
+    /// <summary>A sample, or what is wrong with the study's tests that only the data could tell.</summary>
+    private static Checked<PanelAnalysisSample> WithTests(StudySpecification study, PanelAnalysisSample sample)
+    {
+        var problems = TermTestPlan.Problems(study, sample.Sample.Covariates, sample.Design.Layout);
+        if (problems.IsEmpty) return Checked<PanelAnalysisSample>.Good(sample);
+        sample.Dispose();
+        return Checked<PanelAnalysisSample>.Bad(problems);
+    }
 
     /// <summary>Lets go of the store's file, where there is one.</summary>
     public void Dispose() => store?.Dispose();

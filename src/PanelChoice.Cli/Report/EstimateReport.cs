@@ -19,6 +19,7 @@ internal static class EstimateReport
         letter.Heading("The fit");
         FitSection.AddTo(letter, result);
         TermsSection.AddTo(letter, result);
+        TestsSection.AddTo(letter, result);
         letter.Heading("What the past does");
         Say(letter, result, FindingTopic.Past);
         letter.Heading("Which alternatives replace which");

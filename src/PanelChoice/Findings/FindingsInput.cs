@@ -20,6 +20,9 @@ public sealed record FindingsInput(
     /// <summary>What to report of each free parameter, in layout order.</summary>
     internal ImmutableArray<Recommendation> Recommendations => RecommendationRules.Of(this);
 
+    /// <summary>Tests of terms.</summary>
+    public ImmutableArray<TermTestResult> Tests { get; init; } = [];
+
     internal ParameterLayout Layout => Model.Layout;
 
     /// <summary>The kind of standard error that the sentences quote: clustered, or the jackknife where clusters are not many.</summary>

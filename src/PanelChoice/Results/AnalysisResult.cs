@@ -2,6 +2,7 @@ using System.Collections.Immutable;
 using PanelChoice.Covariates;
 using PanelChoice.Diagnostics;
 using PanelChoice.Findings;
+using PanelChoice.Inference;
 
 namespace PanelChoice.Results;
 
@@ -51,6 +52,9 @@ public sealed record AnalysisResult(
 
     /// <summary>Name and version of the document's layout.</summary>
     public const string Schema = "panelchoice-result/1";
+
+    /// <summary>Tests of terms.</summary>
+    public ImmutableArray<TermTestResult> Tests { get; init; } = [];
 
     /// <summary>Whether the estimate may be trusted: it converged at an interior maximum with every parameter identified.</summary>
     public bool IsTrusted => Fit.Status == FitSummary.Converged;

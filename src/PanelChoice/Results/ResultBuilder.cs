@@ -25,6 +25,7 @@ internal static class ResultBuilder
         var jackknife = Jackknife(inference, book);
         var twoWay = TwoWayResult.Of(inference, [.. model.Layout.Parameters.Select(p => p.Label)], book);
         var clusters = Clusters(stages, book);
+        TestsJson.NoteReasons(stages.Tests, book);
         NoteDiagnostics(diagnostics, book);
         return new AnalysisResult(
             study.Title,
@@ -48,6 +49,7 @@ internal static class ResultBuilder
         {
             TwoWay = twoWay,
             Recommendations = RecommendationResult.Of(stages.Recommendations, model.Layout),
+            Tests = stages.Tests,
         };
     }
 

@@ -56,6 +56,7 @@ public static class ResultJson
             RecommendationResult.Write(json, result.Recommendations);
             WriteCovariance(json, result.Covariance);
             WriteClusters(json, result.Clusters);
+            json.WriteArray("tests", result.Tests, t => json.WriteObject(() => TestsJson.Write(json, t)));
             json.WriteObject("diagnostics", () => DiagnosticsJson.Write(json, result.Diagnostics));
             json.WriteArray("findings", result.Findings, f => json.WriteObject(() =>
             {

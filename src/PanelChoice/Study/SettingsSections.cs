@@ -52,7 +52,11 @@ internal static class SettingsSections
                 "study.not_supported", bootstrap.PlaceOf("replicates"), "replicates = \"auto\" is not supported yet", "state a number, for example replicates = 399");
         else
             replicates = bootstrap.Whole("replicates", 0, MostReplicates) ?? replicates;
-        return new InferenceSettings(cluster, confidence, jackknife, replicates, bootstrap.Seed("seed", 7)) { SecondCluster = second };
+        return new InferenceSettings(cluster, confidence, jackknife, replicates, bootstrap.Seed("seed", 7))
+        {
+            SecondCluster = second,
+            ScoreDraws = table.Whole("score_draws", 0, MostDraws),
+        };
     }
 
     public static DiagnosticsSettings Diagnostics(TableReader table) => new(

@@ -74,7 +74,7 @@ public static class StudyFileReader
         var inferenceTable = Table(root, "inference", "[inference]", ["bootstrap"], problems);
         var bootstrapTable = Table(root.Find("inference")?.Value as TomlTable, "bootstrap", "[inference.bootstrap]", [], problems);
         var diagnosticsTable = Table(root, "diagnostics", "[diagnostics]", [], problems);
-        StudyKeys.Check(root, StudyKeys.Head, ["panel", "history", "nest", "term", "estimate", "inference", "diagnostics"], problems);
+        StudyKeys.Check(root, StudyKeys.Head, ["panel", "history", "nest", "term", "test", "estimate", "inference", "diagnostics"], problems);
 
         var title = new TableReader(root, "the head of the file", problems).Text("title");
         var panel = PanelSection.Read(panelTable, path, problems);
@@ -89,9 +89,13 @@ public static class StudyFileReader
 
         var inference = SettingsSections.Inference(inferenceTable, bootstrapTable, problems);
         StudyRules.CheckSecondCluster(inference, panel, inferenceTable, problems);
+        var tests = TestSection.Read(Tables(root, "test", problems), [.. terms.Select(t => t.Term)], nestList, problems);
         var study = new StudySpecification(
             title ?? "", path, text, Convert.ToHexStringLower(SHA256.HashData(bytes)), panel, history, nestList, [.. terms.Select(t => t.Term)],
-            SettingsSections.Estimate(estimateTable), inference, SettingsSections.Diagnostics(diagnosticsTable));
+            SettingsSections.Estimate(estimateTable), inference, SettingsSections.Diagnostics(diagnosticsTable))
+        {
+            Tests = tests,
+        };
         if (problems.Count == 0) return Checked<StudySpecification>.Good(study);
         var all = problems.InFileOrder();
         return Checked<StudySpecification>.Bad(

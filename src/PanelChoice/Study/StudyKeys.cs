@@ -26,8 +26,9 @@ internal static class StudyKeys
         [
             "name", .. Sources, .. Moments, "is", "levels", "omit", "alternatives", "each", "base", "times", "transform", "scale", "fixed", "start",
         ],
+        ["[[test]]"] = ["name", "terms", "values", "equal"],
         ["[estimate]"] = ["form", "starts", "seed"],
-        ["[inference]"] = ["cluster", "second_cluster", "confidence", "jackknife"],
+        ["[inference]"] = ["cluster", "second_cluster", "confidence", "jackknife", "score_draws"],
         ["[inference.bootstrap]"] = ["replicates", "blocks", "seed"],
         ["[diagnostics]"] = ["lags", "level", "draws", "seed"],
     }.ToFrozenDictionary();
@@ -39,7 +40,7 @@ internal static class StudyKeys
         [("[inference.bootstrap]", "length")] = "remove it and draw whole clusters: blocks = \"cluster\"",
     }.ToFrozenDictionary();
 
-    private static readonly string[] LaterTables = ["[[test]]", "[[taste]]", "[initial]"];
+    private static readonly string[] LaterTables = ["[[taste]]", "[initial]"];
 
     /// <summary>Reports every key of a table that the table does not have.</summary>
     /// <param name="table">The table.</param>

@@ -25,7 +25,11 @@ public sealed record StudySpecification(
     ImmutableArray<TermSpecification> Terms,
     EstimateSettings Estimate,
     InferenceSettings Inference,
-    DiagnosticsSettings Diagnostics);
+    DiagnosticsSettings Diagnostics)
+{
+    /// <summary>The tests of terms, in the order of the file.</summary>
+    public ImmutableArray<TestSpecification> Tests { get; init; } = [];
+}
 
 /// <summary>The data file and the columns that identify its rows (long layout: a row per person, occasion and alternative).</summary>
 /// <param name="File">Data file as the study file writes it.</param>
@@ -213,6 +217,9 @@ public sealed record InferenceSettings(string Cluster, double Confidence, Jackkn
     /// The second grouping of two-way clustering: "occasion", "person", or a column that is constant within a choice situation; null for clusters one way.
     /// </summary>
     public string? SecondCluster { get; init; }
+
+    /// <summary>Draws of the score bootstrap; 0 for none; null leaves it to the number of clusters.</summary>
+    public int? ScoreDraws { get; init; }
 }
 
 /// <summary>Settings of the independence battery.</summary>

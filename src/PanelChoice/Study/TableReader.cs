@@ -142,6 +142,40 @@ internal sealed class TableReader(TomlTable table, string name, StudyProblems pr
         return [.. texts];
     }
 
+    /// <summary>A list of texts, each with its place; empty when absent.</summary>
+    public ImmutableArray<(string Text, Place Place)> PlacedTexts(string key)
+    {
+        var texts = Texts(key);
+        return table.Find(key)?.Value is TomlList list
+            ? [.. texts.Select(t => (t, list.Items.OfType<TomlText>().First(i => i.Value == t).Place))]
+            : [];
+    }
+
+    /// <summary>A list of finite numbers, each with its place; empty when absent.</summary>
+    public ImmutableArray<(double Value, Place Place)> Numbers(string key)
+    {
+        var remedy = $"write {key} = [0.5, 1]";
+        var numbers = ImmutableArray.CreateBuilder<(double, Place)>();
+        foreach (var item in Items(key, "a list of numbers", remedy))
+            switch (item)
+            {
+                case TomlWhole whole:
+                    numbers.Add((whole.Value, item.Place));
+                    break;
+                case TomlNumber number when double.IsFinite(number.Value):
+                    numbers.Add((number.Value, item.Place));
+                    break;
+                case TomlNumber:
+                    OutOfRange(key, item, "a list of finite numbers");
+                    break;
+                default:
+                    WrongType(key, item, "a list of numbers", remedy);
+                    break;
+            }
+
+        return numbers.ToImmutable();
+    }
+
     /// <summary>A list of dates, as ISO 8601 text or as TOML dates; empty when absent.</summary>
     public ImmutableArray<DateOnly> Dates(string key)
     {

@@ -56,9 +56,16 @@ internal static class HandMadeStages
         {
             Title = "Hand-made panel", Nests = made.Nests,
             Inference = new InferenceSettings("person", 0.95, JackknifeKind.Refit, 19, 7),
+            Tests = [new TestSpecification("attributes cancel", [new TestedTerm("attribute 1", 1, 1), new TestedTerm("attribute 2", 1, 1)], [-0.5, 0.5], false, 1)],
         };
         var sample = EstimationSample.Of(made.Covariates) with { LeftOut = [new LeftOut("first recorded occasion", 3), new LeftOut("never happened", 0)] };
         var evidence = InferenceInput.From(model, refitter) with { Clusters = Pseudonyms.Of(sample.Sha256, model.Design.Clusters) };
-        return new FindingsInput(study, sample, model, StandardErrors.Compute(evidence, study.Inference, WorkContext.Quiet), Taste);
+        var inference = StandardErrors.Compute(evidence, study.Inference, WorkContext.Quiet);
+        return new FindingsInput(study, sample, model, inference, Taste)
+        {
+            Tests = TermTests.Run(
+                evidence, TermTestPlan.Of(study, sample.Covariates, model.Layout, evidence, study.Inference), inference,
+                new RestrictedRefitter(model, CancellationToken.None), study.Inference, WorkContext.Quiet),
+        };
     }
 }
