@@ -25,6 +25,10 @@ internal static class TermTests
     {
         var results = ImmutableArray.CreateBuilder<TermTestResult>();
         var obstacle = StandardErrors.Obstacle(input);
+        var bootstrap = new ScoreBootstrap(input, refitter, settings, work);
+        var noScores = ScoreBootstrap.DrawsOf(input, settings) > 0 ? null
+            : settings.ScoreDraws == 0 ? "The study asks for none."
+            : $"With {input.Clusters.Length} clusters it is made only where [inference] score_draws asks for it.";
         foreach (var test in tests)
         {
             work.Report("tests of terms", results.Count, tests.Length);
@@ -33,7 +37,10 @@ internal static class TermTests
             var reason = obstacle ?? test.Withheld;
             var restricted = reason is null ? refitter.Fit(test.Restriction) : null;
             reason ??= restricted!.Failure;
-            results.Add(new TermTestResult(test, wald, Ratio(input, test, restricted, refitter, reason), null, "It is not made by this version."));
+            var scores = reason is null && noScores is null
+                ? bootstrap.Of(test, restricted!, inference.Covariances.GetValueOrDefault(CovarianceKind.Cluster))
+                : null;
+            results.Add(new TermTestResult(test, wald, Ratio(input, test, restricted, refitter, reason), scores, scores is null ? noScores ?? reason : scores.Reason));
         }
 
         if (tests.Length > 0) work.Report("tests of terms", tests.Length, tests.Length);
