@@ -98,7 +98,7 @@ public static class PanelAnalysis
             evidence, TermTestPlan.Of(study, sample.Sample.Covariates, model.Layout, evidence, study.Inference), inference,
             new RestrictedRefitter(model, work.Cancellation), study.Inference, work);
         var diagnostics = IndependenceBattery.Run(study, sample.Sample, model, sample.Static, work);
-        var stages = new FindingsInput(study, sample.Sample, model, inference, diagnostics) { Tests = tests };
+        var stages = new FindingsInput(study, sample.Sample, model, inference, diagnostics) { Tests = tests, UtilityMaximisation = UtilityRange.Of(model, work) };
         return ResultBuilder.Build(stages, FindingList.Of(stages));
     }
 }

@@ -10,7 +10,7 @@ internal static class TestsSection
     private static readonly (CovarianceKind Kind, string Word)[] Kinds =
     [
         (CovarianceKind.Robust, "robust"), (CovarianceKind.Cluster, "clustered"), (CovarianceKind.TwoWay, "two-way"),
-        (CovarianceKind.Jackknife, "jackknife"), (CovarianceKind.Bootstrap, "bootstrap"),
+        (CovarianceKind.Jackknife, "jackknife"),
     ];
 
     public static void AddTo(Letter letter, AnalysisResult result)
@@ -27,15 +27,23 @@ internal static class TestsSection
             // Single choices are robust where each person has one; clusters say more everywhere else.
             if (kind != CovarianceKind.Robust == !isCrossSection && result.Tests.Any(t => t.Wald.GetValueOrDefault(kind)?.PValue is not null))
                 columns.Add((new TableColumnPlan(word), t => P(t.Wald.GetValueOrDefault(kind)?.PValue)));
-        if (result.Tests.Any(t => t.ScoreBootstrap?.PValue is not null)) columns.Add((new TableColumnPlan("score bootstrap"), t => P(t.ScoreBootstrap?.PValue)));
-        if (result.Tests.Any(t => t.LikelihoodRatio.PValue is not null)) columns.Add((new TableColumnPlan("likelihood ratio"), t => P(t.LikelihoodRatio.PValue)));
+        if (result.Tests.Any(t => t.ScoreBootstrap?.PValue is not null)) columns.Add((new TableColumnPlan("score"), t => P(t.ScoreBootstrap?.PValue)));
+        if (result.Tests.Any(t => t.LikelihoodRatio.PValue is not null)) columns.Add((new TableColumnPlan("ratio"), t => P(t.LikelihoodRatio.PValue)));
         letter.Table([.. columns.Select(c => c.Plan)], result.Tests.Select(t => (IReadOnlyList<string>)[.. columns.Select(c => c.Cell(t))]));
         letter.Gap();
         letter.Paragraph(
             "Figures are p-values: of Wald tests with each covariance"
-            + (result.Tests.Any(t => t.ScoreBootstrap?.PValue is not null) ? ", of the score bootstrap, which estimates with the claim in force," : "")
-            + " and of the likelihood ratio, which takes every occasion for independent evidence and is valid only where they are.");
+            + (result.Tests.Any(t => t.ScoreBootstrap?.PValue is not null)
+                ? $"; score: of the score bootstrap, which estimates with the claim in force and {Draws(result)}"
+                : "")
+            + "; ratio: of the likelihood ratio, which takes every occasion for independent evidence and is valid only where they are.");
         Intervals(letter, result);
+    }
+
+    private static string Draws(AnalysisResult result)
+    {
+        var score = result.Tests.First(t => t.ScoreBootstrap?.PValue is not null).ScoreBootstrap!;
+        return score.Enumerated ? $"goes through all {PlainNumber.Count(score.Draws)} sets of signs" : $"rests on {PlainNumber.Count(score.Draws)} draws";
     }
 
     private static void Intervals(Letter letter, AnalysisResult result)

@@ -81,7 +81,7 @@ internal static class LinearIndex
     }
 
     /// <summary>Calls back with each situation's choice, index, its largest single term and availability until the callback says false.</summary>
-    private static bool Walk(ChoiceDesign design, double[] v, int firstBlock, int endBlock, double[]? personWeight, Func<int, double[], double, bool[], bool> each)
+    internal static bool Walk(ChoiceDesign design, double[] v, int firstBlock, int endBlock, double[]? personWeight, Func<int, double[], double, bool[], bool> each)
     {
         var J = design.Alternatives;
         var used = design.Columns.Where(c => v[c.Parameter] != 0).ToArray();

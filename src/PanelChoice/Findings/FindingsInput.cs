@@ -23,6 +23,9 @@ public sealed record FindingsInput(
     /// <summary>Tests of terms.</summary>
     public ImmutableArray<TermTestResult> Tests { get; init; } = [];
 
+    /// <summary>Nests against utility maximisation.</summary>
+    public ImmutableArray<NestConsistency> UtilityMaximisation { get; init; } = [];
+
     internal ParameterLayout Layout => Model.Layout;
 
     /// <summary>The kind of standard error that the sentences quote: clustered, or the jackknife where clusters are not many.</summary>

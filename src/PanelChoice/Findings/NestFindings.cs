@@ -22,7 +22,12 @@ internal static class NestFindings
             yield break;
         }
 
-        foreach (var nest in input.Layout.Nests) yield return Describe(input, nest);
+        foreach (var nest in input.Layout.Nests)
+        {
+            yield return Describe(input, nest);
+            if (input.UtilityMaximisation.FirstOrDefault(n => n.Nest == nest.Name) is { Globally: false, Locally: { } locally }) yield return Nearby(nest, locally);
+        }
+
         if (input.Model.Form == NestedLogitForm.Unscaled)
             yield return new Finding(
                 "nests.unscaled", FindingTopic.Nests, FindingSeverity.Notice,
@@ -100,6 +105,19 @@ internal static class NestFindings
             + (tested ? $"; dissimilarity = {PlainNumber.Rounded(parent, null)} in the study file fixes it at the limit." : "."),
             figures);
     }
+
+    /// <summary>What lies outside the range for all data may still be within bounds near the data at hand.</summary>
+    private static Finding Nearby(NestPlace nest, LocalConsistency locally) => new(
+        "nests.local", FindingTopic.Nests, FindingSeverity.Notice,
+        $"'{nest.Name}' may still be consistent near the data at hand: on {PlainNumber.Percent(locally.Share)} of the {PlainNumber.Counted(locally.Occasions, "occasion")} that offer "
+        + "two or more of its members, its dissimilarity keeps the first- and second-order bounds of local consistency (Boersch-Supan 1990; Herriges and Kling 1996)"
+        + (locally.Share switch
+        {
+            >= 1 => ": small changes of utility are answered as utility maximisers would.",
+            <= 0 => ": nowhere are small changes of utility answered as utility maximisers would.",
+            _ => ": on the others even small changes of utility are answered as no utility maximiser would.",
+        }),
+        [new(nest.Name + ", share within local bounds", locally.Share), new(nest.Name + ", occasions", locally.Occasions)]);
 
     private static double ParentValue(FindingsInput input, NestPlace nest, out string name)
     {

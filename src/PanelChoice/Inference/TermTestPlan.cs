@@ -21,7 +21,7 @@ internal static class TermTestPlan
         return problems.ToImmutable();
     }
 
-    /// <summary>The tests: habit terms first, then the study's own.</summary>
+    /// <summary>The tests: habit terms, all nests against plain logit, then the study's own.</summary>
     /// <param name="study">The study, without problems in its tests.</param>
     /// <param name="covariates">One for each coefficient.</param>
     /// <param name="layout">The parameters.</param>
@@ -35,6 +35,8 @@ internal static class TermTestPlan
         if (habit.Length > 1) tests.Add(Build("all habit terms together", true, habit, [], false, layout, input));
         if (habit.Length == 1 || ScoreBootstrap.DrawsOf(input, settings) > 0)
             foreach (var k in habit) tests.Add(Build($"habit: {layout.Parameters[k].Label}", true, [k], [], false, layout, input));
+        ImmutableArray<int> nests = [.. layout.Free.Where(k => layout.Parameters[k].Kind == ParameterKind.Dissimilarity)];
+        if (!nests.IsEmpty) tests.Add(Build(nests.Length == 1 ? $"nest: {layout.Parameters[nests[0]].Label}" : "all nests at their limits", true, nests, [], false, layout, input));
         var none = ImmutableArray.CreateBuilder<Problem>();
         foreach (var test in study.Tests)
             tests.Add(Build(test.Name, false, Resolve(test, study, covariates, layout, none), test.Values, test.Equal, layout, input));

@@ -38,12 +38,15 @@ internal static class WaldTests
             return Refuse($"{q} restrictions are more than the {bootstrap.Done - 1} that {bootstrap.Done} replicates can test together.");
 
         var slope = used.ToDictionary(c => c, c => input.Kinds[input.Free[c]] == ParameterKind.Dissimilarity ? 1 / input.Estimates[input.Free[c]] : 1.0);
+        // A single term's own variance stands even where the matrix around it had to be repaired.
+        var single = used.Length == 1 && !covariance.Variances.IsDefaultOrEmpty;
+        double Covariance(int a, int b) => single ? covariance.Variances[a] : v[a, b];
         var spread = new double[q * q];
         var gap = Gap(input, test);
         for (var i = 0; i < q; i++)
             for (var j = 0; j < q; j++)
                 foreach (var a in used)
-                    foreach (var b in used) spread[(i * q) + j] += r[(i * f) + a] * slope[a] * v[a, b] * slope[b] * r[(j * f) + b];
+                    foreach (var b in used) spread[(i * q) + j] += r[(i * f) + a] * slope[a] * Covariance(a, b) * slope[b] * r[(j * f) + b];
         if (ScaledCholesky.Factor(spread, q, out var failed) is not { } factor)
             return Refuse(
                 q == 1

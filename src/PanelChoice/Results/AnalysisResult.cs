@@ -1,6 +1,7 @@
 using System.Collections.Immutable;
 using PanelChoice.Covariates;
 using PanelChoice.Diagnostics;
+using PanelChoice.Estimation;
 using PanelChoice.Findings;
 using PanelChoice.Inference;
 
@@ -55,6 +56,9 @@ public sealed record AnalysisResult(
 
     /// <summary>Tests of terms.</summary>
     public ImmutableArray<TermTestResult> Tests { get; init; } = [];
+
+    /// <summary>Nests against utility maximisation.</summary>
+    public ImmutableArray<NestConsistency> UtilityMaximisation { get; init; } = [];
 
     /// <summary>Whether the estimate may be trusted: it converged at an interior maximum with every parameter identified.</summary>
     public bool IsTrusted => Fit.Status == FitSummary.Converged;

@@ -26,6 +26,7 @@ internal static class ResultBuilder
         var twoWay = TwoWayResult.Of(inference, [.. model.Layout.Parameters.Select(p => p.Label)], book);
         var clusters = Clusters(stages, book);
         TestsJson.NoteReasons(stages.Tests, book);
+        UtilityJson.NoteReasons(stages.UtilityMaximisation, book);
         NoteDiagnostics(diagnostics, book);
         return new AnalysisResult(
             study.Title,
@@ -50,6 +51,7 @@ internal static class ResultBuilder
             TwoWay = twoWay,
             Recommendations = RecommendationResult.Of(stages.Recommendations, model.Layout),
             Tests = stages.Tests,
+            UtilityMaximisation = stages.UtilityMaximisation,
         };
     }
 

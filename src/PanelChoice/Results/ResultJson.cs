@@ -57,6 +57,7 @@ public static class ResultJson
             WriteCovariance(json, result.Covariance);
             WriteClusters(json, result.Clusters);
             json.WriteArray("tests", result.Tests, t => json.WriteObject(() => TestsJson.Write(json, t)));
+            json.WriteArray("utility_maximisation", result.UtilityMaximisation, n => json.WriteObject(() => UtilityJson.Write(json, n)));
             json.WriteObject("diagnostics", () => DiagnosticsJson.Write(json, result.Diagnostics));
             json.WriteArray("findings", result.Findings, f => json.WriteObject(() =>
             {

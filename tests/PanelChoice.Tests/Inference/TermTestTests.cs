@@ -103,10 +103,10 @@ public class TermTestTests
     public void A_term_with_each_is_all_its_coefficients_and_habit_is_tested_by_default()
     {
         var plan = Thirty.Value.Plan(TestedModel.Test("constants", ["constant"]), TestedModel.Test("one", ["constant: C", "land"]));
-        Assert.Equal(["habit: same as last time", "constants", "one"], plan.Select(t => t.Name));
-        Assert.Equal([true, false, false], plan.Select(t => t.IsDefault));
-        Assert.Equal(["constant [B]", "constant [C]", "constant [D]"], plan[1].Terms.Select(t => t.Label));
-        Assert.Equal([0.0, 1.0], plan[2].Null!.Value.AsEnumerable());
+        Assert.Equal(["habit: same as last time", "all nests at their limits", "constants", "one"], plan.Select(t => t.Name));
+        Assert.Equal([true, true, false, false], plan.Select(t => t.IsDefault));
+        Assert.Equal(["constant [B]", "constant [C]", "constant [D]"], plan[2].Terms.Select(t => t.Label));
+        Assert.Equal([0.0, 1.0], plan[3].Null!.Value.AsEnumerable());
     }
 
     [Fact]

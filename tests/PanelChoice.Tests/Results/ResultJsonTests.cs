@@ -20,7 +20,7 @@ public class ResultJsonTests
     private static readonly JsonElement Document = Parse(Result);
 
     [Theory]
-    [InlineData("", "schema title tool inputs settings reasons warnings sample fit parameters bootstrap jackknife two_way recommendations covariance clusters tests diagnostics findings")]
+    [InlineData("", "schema title tool inputs settings reasons warnings sample fit parameters bootstrap jackknife two_way recommendations covariance clusters tests utility_maximisation diagnostics findings")]
     [InlineData("tool", "version runtime kernel")]
     [InlineData("inputs", "study data")]
     [InlineData("inputs.study", "file sha256")]

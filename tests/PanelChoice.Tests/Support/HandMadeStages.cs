@@ -63,6 +63,7 @@ internal static class HandMadeStages
         var inference = StandardErrors.Compute(evidence, study.Inference, WorkContext.Quiet);
         return new FindingsInput(study, sample, model, inference, Taste)
         {
+            UtilityMaximisation = UtilityRange.Of(model, WorkContext.Quiet),
             Tests = TermTests.Run(
                 evidence, TermTestPlan.Of(study, sample.Covariates, model.Layout, evidence, study.Inference), inference,
                 new RestrictedRefitter(model, CancellationToken.None), study.Inference, WorkContext.Quiet),
