@@ -27,6 +27,7 @@ internal static class BenchmarkCommand
     [
         ("whole", cases => WholeRunRows.Run(OneOf(cases))), ("loading", cases => LoadingRows.Run(OneOf(cases))), ("growth", _ => GrowthRows.Run()),
         ("narrow", NarrowRows.Run), ("store", cases => StoreRows.Run(CommuteShape.Of(cases[^1]))), ("parts", cases => PartRows.Run(OneOf(cases))),
+        ("journal", _ => JournalRows.Run()),
     ];
 
     private static readonly string[] Rows = ["elementary", .. ByCase.Select(r => r.Name), .. Others.Select(r => r.Name)];

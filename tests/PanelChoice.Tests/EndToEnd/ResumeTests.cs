@@ -128,7 +128,7 @@ public class ResumeTests
     {
         using var study = Bootstrap();
         Killed(study, "rough", "RefitsKept 60", 60);
-        File.WriteAllText(study.StudyFile, File.ReadAllText(study.StudyFile).Replace("starts = 2", "starts = 2\nseed = 77", StringComparison.Ordinal));
+        File.WriteAllText(study.StudyFile, File.ReadAllText(study.StudyFile).Replace("starts = 1", "starts = 1\nseed = 77", StringComparison.Ordinal));
         Estimate(study, "calm");
         var last = Estimate(study, "rough", "--quiet");
         Assert.Matches(
@@ -220,7 +220,8 @@ public class ResumeTests
 
     /// <summary>A bootstrap alone, of so many replicates that it is kept in ten batches.</summary>
     private static SmallStudy Bootstrap() => new(text => text.Replace("replicates = 19", $"replicates = {Replicates}", StringComparison.Ordinal)
-        .Replace("jackknife = \"refit\"", "jackknife = \"off\"", StringComparison.Ordinal));
+        .Replace("jackknife = \"refit\"", "jackknife = \"off\"", StringComparison.Ordinal).Replace("starts = 2", "starts = 1", StringComparison.Ordinal)
+        .Replace("draws = 499", "draws = 99", StringComparison.Ordinal));
 
     /// <summary>80 persons, so that the jackknife is kept in three batches.</summary>
     private static SmallStudy ManyPersons() => new(data: text =>

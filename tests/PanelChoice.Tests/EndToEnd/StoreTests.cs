@@ -44,6 +44,19 @@ public class StoreTests
     }
 
     [Fact]
+    public void What_a_run_that_was_killed_has_left_of_a_store_is_taken_away_when_the_store_is_made()
+    {
+        using var study = new SmallStudy();
+        var stem = study.PathOf(".kept.store.");
+        var (left, young, open, other) = (stem + new string('a', 32) + ".part", stem + new string('b', 32) + ".part", stem + new string('c', 32) + ".part", stem + "mine.part");
+        foreach (var file in new[] { left, young, open, other }) File.WriteAllText(file, "half a store");
+        foreach (var file in new[] { left, open, other }) File.SetLastWriteTimeUtc(file, DateTime.UtcNow.AddHours(-1));
+        using (new FileStream(open, FileMode.Open, FileAccess.Read, FileShare.Read))
+            Assert.Equal(0, CommandLineProcess.InProcess("build", study.StudyFile, "--store", study.PathOf("kept.store")).Code);
+        Assert.Equal([false, true, true, true], new[] { left, young, open, other }.Select(File.Exists));
+    }
+
+    [Fact]
     public void Rows_in_any_order_give_the_bytes_of_memory_and_leave_nothing_but_the_store()
     {
         // So many rows that they are not kept: each has a number without meaning besides.

@@ -1,4 +1,6 @@
 using System.Globalization;
+using PanelChoice.Cli;
+using PanelChoice.Numerics;
 using Xunit;
 
 namespace PanelChoice.Tests.EndToEnd;
@@ -87,5 +89,29 @@ public class TerminalTests
         foreach (var name in new[] { "result.json", "coefficients.csv", "replicates.parquet" })
             Assert.Equal(File.ReadAllBytes(Path.Combine(study.PathOf("point"), name)), File.ReadAllBytes(Path.Combine(study.PathOf("comma"), name)));
         Assert.DoesNotContain((byte)'\r', File.ReadAllBytes(Path.Combine(study.PathOf("point"), "result.json")));
+    }
+
+    [Fact]
+    public void Progress_says_how_many_were_found_and_lines_are_told_beside_it()
+    {
+        using var error = new StringWriter();
+        var seen = TextWriter.Synchronized(error);
+        var options = new RunOptions(1, false, true, new Terminal(TextWriter.Null, seen, false, true, false), CancellationToken.None);
+        var deadline = DateTime.UtcNow.AddSeconds(60);
+        ProgressDisplay.Run(options, (work, tell) =>
+        {
+            tell("what was found");
+            work.Report(new WorkProgress("bootstrap replicates", 137, 300) { Found = 137 });
+            // The display draws when it comes to it.
+            while (!Text().Contains("137 of 300, 137 found", StringComparison.Ordinal) && DateTime.UtcNow < deadline) Thread.Sleep(10);
+            return true;
+        });
+        Assert.Contains("137 of 300, 137 found", Text(), StringComparison.Ordinal);
+        Assert.Contains("what was found", Text(), StringComparison.Ordinal);
+
+        string Text()
+        {
+            lock (seen) return error.ToString();
+        }
     }
 }

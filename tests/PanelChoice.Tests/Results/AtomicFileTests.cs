@@ -82,4 +82,15 @@ public sealed class AtomicFileTests : IDisposable
     [Fact]
     public void A_missing_folder_is_an_io_error() =>
         Assert.ThrowsAny<IOException>(() => AtomicFile.Write(Path.Combine(folder, "nowhere", "a.csv"), _ => { }));
+
+    [Fact]
+    public void Leftovers_of_a_process_that_was_killed_are_taken_away_and_nothing_else_is()
+    {
+        var path = Path.Combine(folder, "result.json");
+        string[] stay = ["result.json", ".result.json.part", ".result.json.mine.part", ".other.json.0123456789abcdef0123456789abcdef.part"];
+        foreach (var name in stay) File.WriteAllText(Path.Combine(folder, name), "x");
+        File.WriteAllText(Path.Combine(folder, ".result.json.0123456789abcdef0123456789abcdef.part"), "half");
+        AtomicFile.RemoveLeftovers(path);
+        Assert.Equal(stay.Order(StringComparer.Ordinal), Directory.GetFiles(folder).Select(f => Path.GetFileName(f)!).Order(StringComparer.Ordinal));
+    }
 }

@@ -10,6 +10,11 @@ namespace PanelChoice.Design.Store;
 /// </summary>
 internal sealed class StoreWriter : IDisposable
 {
+    private const string Ending = ".part";
+
+    /// <summary>A file that nobody has open and nobody has written to for so long was left by a process that was killed.</summary>
+    private static readonly TimeSpan LeastAge = TimeSpan.FromMinutes(1);
+
     private readonly string path;
     private readonly string temporary;
     private readonly FileStream file;
@@ -22,7 +27,9 @@ internal sealed class StoreWriter : IDisposable
     {
         this.path = Path.GetFullPath(path);
         var folder = Path.GetDirectoryName(this.path) ?? throw new IOException($"'{path}' is not a file name.");
-        temporary = Path.Combine(folder, $".{Path.GetFileName(this.path)}.{Guid.NewGuid():N}.part");
+        var stem = $".{Path.GetFileName(this.path)}.";
+        RemoveLeftovers(folder, stem);
+        temporary = Path.Combine(folder, $"{stem}{Guid.NewGuid():N}{Ending}");
         file = new FileStream(temporary, FileMode.CreateNew, FileAccess.ReadWrite, FileShare.Read, 1 << 16);
         file.Write(new byte[StorePreamble.Bytes]);
     }
@@ -53,6 +60,23 @@ internal sealed class StoreWriter : IDisposable
     {
         file.Dispose();
         File.Delete(temporary);
+    }
+
+    /// <summary>Takes away what processes that were killed have left: as large as a store, and of no use to anybody.</summary>
+    private static void RemoveLeftovers(string folder, string stem)
+    {
+        foreach (var file in Directory.EnumerateFiles(folder, stem + "*" + Ending))
+        {
+            if (!Guid.TryParseExact(Path.GetFileName(file)[stem.Length..^Ending.Length], "N", out _) || DateTime.UtcNow - File.GetLastWriteTimeUtc(file) < LeastAge) continue;
+            try
+            {
+                using (new FileStream(file, FileMode.Open, FileAccess.ReadWrite, FileShare.None, 1, FileOptions.DeleteOnClose)) { }
+            }
+            catch (Exception refused) when (refused is IOException or UnauthorizedAccessException)
+            {
+                // Another run is writing it, or it is somebody else's: then it is theirs to take away.
+            }
+        }
     }
 
     /// <summary>The blocks of one design on their way into the file.</summary>

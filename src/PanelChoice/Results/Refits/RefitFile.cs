@@ -54,8 +54,8 @@ internal sealed record RefitFile(
         var layout = new byte[RefitRecords.Layout.Length];
         var read = stream.ReadAtLeast(layout, layout.Length, throwOnEndOfStream: false);
         // Zeros are what a machine that failed may leave where it had no time to write.
-        if (read < layout.Length ? RefitRecords.Layout[..read].SequenceEqual(layout.AsSpan(0, read)) : !layout.AsSpan().ContainsAnyExcept((byte)0))
-            return file with { Damage = "it breaks off in its first line" };
+        var start = layout.AsSpan(0, read).TrimEnd((byte)0);
+        if (start.Length < layout.Length && RefitRecords.Layout.StartsWith(start)) return file with { Damage = "it breaks off in its first line" };
         if (!RefitRecords.Layout.SequenceEqual(layout)) return Stranger(file, System.Text.Encoding.Latin1.GetString(layout, 0, read));
 
         file = file with { ValidLength = read, Seal = RefitRecords.FirstSeal() };
