@@ -80,6 +80,8 @@ public static class PanelAnalysis
         {
             RefitsAtOnce = sample.RefitsAtOnce,
             Second = SecondClusters.Of(study, sample.Sample, model),
+            Blocks = BlockBootstrap.Of(
+                model, study.Inference, IndependenceBattery.SharedCalendar(study, sample.Sample) ? sample.Sample.Times.Occasion : null, work.Threads),
         };
         return new PanelAnalysisFit(study, sample, model, evidence);
     }

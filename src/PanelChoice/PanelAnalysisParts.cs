@@ -40,6 +40,14 @@ public static class PanelAnalysisParts
         ArgumentException.ThrowIfNullOrWhiteSpace(folder);
         ArgumentNullException.ThrowIfNull(read);
         ArgumentNullException.ThrowIfNull(work);
+        if (study.Inference.Target is not null)
+            return Checked<PanelAnalysisPart>.Bad(
+            [
+                new Problem(
+                    "parts.replicates", study.File,
+                    "replicates = \"auto\" finds its number from the replicates themselves, so that the parts cannot be divided beforehand",
+                    "write a number of replicates, for example the one that an earlier result has found"),
+            ]);
         if (Finished(study, share, folder) is { } finished) return Checked<PanelAnalysisPart>.Good(finished);
         return With(read(), sample =>
         {

@@ -87,6 +87,13 @@ public sealed class PanelAnalysisSample : IDisposable
         ArgumentNullException.ThrowIfNull(study);
         ArgumentException.ThrowIfNullOrEmpty(store);
         ArgumentNullException.ThrowIfNull(work);
+        if (study.Inference is { Blocks: not BootstrapBlocks.Cluster, Replicates: > 0 })
+            return Checked<PanelAnalysisSample>.Bad(
+            [
+                new Problem(
+                    "store.blocks", study.File, "blocks of occasions or days need sums for each of them in memory, which the budget of a store does not count",
+                    "run without a store, or draw whole clusters: blocks = \"cluster\""),
+            ]);
         if (!File.Exists(store))
         {
             var problems = Make(study, store, memoryBytes, bytesKept, rowsOfPart, work);

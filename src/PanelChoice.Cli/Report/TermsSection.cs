@@ -26,6 +26,7 @@ internal static class TermsSection
         EstimateReport.Say(letter, result, FindingTopic.Precision, gapFirst: true);
         letter.Heading($"Intervals ({PlainNumber.PercentInWords(result.Settings.Confidence)}) and tests");
         Intervals(letter, result);
+        BootstrapSection.AddTo(letter, result);
     }
 
     private static void StandardErrors(Letter letter, AnalysisResult result)
@@ -91,15 +92,15 @@ internal static class TermsSection
 
     private static bool IsCrossSection(AnalysisResult result) => result.Clusters.Largest == 1;
 
-    private static string Label(ParameterResult p) => p.Kind == ParameterResult.Dissimilarity ? $"{p.Name} (nest)" : p.Label;
+    public static string Label(ParameterResult p) => p.Kind == ParameterResult.Dissimilarity ? $"{p.Name} (nest)" : p.Label;
 
-    private static int DecimalsOf(ParameterResult p) =>
+    public static int DecimalsOf(ParameterResult p) =>
         PlainNumber.Decimals(p.Estimate ?? 0, p.StandardErrors.Cluster ?? p.StandardErrors.Jackknife ?? p.StandardErrors.Pooled);
 
     private static string Error(ParameterResult p, double? error, int decimals) =>
         error is { } se ? PlainNumber.Text(se, decimals) : p.IsFree ? "none" : p.SameAs is null ? "fixed" : "";
 
-    private static string Range(ParameterResult p, Interval? interval)
+    public static string Range(ParameterResult p, Interval? interval)
     {
         if (interval is null) return p.IsFree ? "none" : "fixed";
         var decimals = DecimalsOf(p);

@@ -15,6 +15,11 @@ internal sealed class ExactRefit
     /// <summary>Below this decrement the last Newton step is taken without another evaluation: its error is of the order of 1e-10 standard errors.</summary>
     private static readonly MinimisationSettings Warm = new(UncheckedLastStep: 1e-5, MaxIterations: 100);
 
+    /// <summary>Jittered starts after a failure, and common dissimilarities from which coefficients are found first (1 is plain logit).</summary>
+    private const int Jitters = 2;
+
+    private static readonly double[] DissimilarityGrid = [1.0, 0.75, 0.5, 0.35, 0.2];
+
     private readonly FittedModel model;
     private readonly IChoiceLikelihood likelihood;
     private readonly ColumnSurvey survey;
@@ -54,7 +59,7 @@ internal sealed class ExactRefit
         var retried = false;
         if (best.Kind is SearchEndKind.Boundary or SearchEndKind.Stopped)
         {
-            foreach (var from in OtherStarts(start, active, search))
+            foreach (var from in OtherStarts(refit, search))
             {
                 var end = search.Run(from, active, Warm, []);
                 iterations += end.Iterations;
@@ -99,9 +104,11 @@ internal sealed class ExactRefit
         return oneSided.IsEmpty ? null : (FitStatus.Separated, oneSided);
     }
 
-    /// <summary>The estimate of the whole sample, a jittered start, plain logit, and half the dissimilarities.</summary>
-    private IEnumerable<double[]> OtherStarts(double[] start, ImmutableArray<int> active, LocalSearch search)
+    /// <summary>The estimate of the whole sample, jittered starts from the request's own stream, plain logit, and a grid of common dissimilarities.</summary>
+    private IEnumerable<double[]> OtherStarts(PreparedRefit refit, LocalSearch search)
     {
+        var (start, active) = (refit.Start, refit.Active);
+
         double[] Hold(double[] at)
         {
             var held = (double[])start.Clone();
@@ -111,9 +118,10 @@ internal sealed class ExactRefit
 
         var full = Hold([.. model.Parameters]);
         if (!full.AsSpan().SequenceEqual(start)) yield return full;
-        yield return Hold(Jittered(start, active));
+        var random = new CounterRandom(refit.Request.Number, "refit jitter", 0);
+        for (var i = 0; i < Jitters; i++) yield return Hold(Jittered(start, active, random));
         ImmutableArray<int> coefficients = [.. active.Where(k => k < model.Layout.Coefficients)];
-        foreach (var common in new[] { 1.0, 0.5, 0.2 })
+        foreach (var common in DissimilarityGrid)
         {
             if (common < 1 && points.Free.IsEmpty) yield break;
             var from = Hold(points.With(start, [.. points.Free.Select(_ => common)]));
@@ -122,9 +130,8 @@ internal sealed class ExactRefit
         }
     }
 
-    private double[] Jittered(double[] start, ImmutableArray<int> active)
+    private double[] Jittered(double[] start, ImmutableArray<int> active, CounterRandom random)
     {
-        var random = new CounterRandom(0, "refit jitter", 0);
         var at = (double[])start.Clone();
         foreach (var k in active)
         {

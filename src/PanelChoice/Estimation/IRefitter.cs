@@ -6,7 +6,11 @@ namespace PanelChoice.Estimation;
 /// <param name="ClusterWeight">Factor for each cluster, 0 or more; it multiplies sampling weights.</param>
 /// <param name="Start">All K parameters to start from.</param>
 /// <param name="Held">Parameters held at the value in <paramref name="Start"/>, besides the fixed ones.</param>
-public sealed record RefitRequest(ImmutableArray<double> ClusterWeight, ImmutableArray<double> Start, ImmutableArray<int> Held);
+public sealed record RefitRequest(ImmutableArray<double> ClusterWeight, ImmutableArray<double> Start, ImmutableArray<int> Held)
+{
+    /// <summary>Number of the refit in its series: starts that are tried after a failure are drawn from its stream.</summary>
+    public int Number { get; init; }
+}
 
 /// <summary>What a refit came to.</summary>
 /// <param name="Status">How it ended.</param>

@@ -1,6 +1,7 @@
 using PanelChoice.Covariates;
 using PanelChoice.Diagnostics;
 using PanelChoice.Inference;
+using PanelChoice.Study;
 
 namespace PanelChoice.Findings;
 
@@ -31,6 +32,12 @@ internal static class AdviceFindings
                 "Clusters of persons do not see what everybody meets on the same day. The constants suffer most: read their intervals as too "
                 + "narrow, or add terms for the days themselves.", []);
         foreach (var finding in NotRepaired(input)) yield return finding;
+        if (inference.Bootstrap is { Blocks: BootstrapBlocks.Moving } && input.Diagnostics.Cause is DependenceCause.Taste or DependenceCause.HabitAndTaste)
+            yield return new Finding(
+                "advice.moving_blocks", FindingTopic.Advice, FindingSeverity.Warning,
+                // Simulated for this project, 40 persons with 42 occasions and a lasting taste of standard deviation 1: the share of the true spread.
+                "Lasting taste was found, and blocks inside persons do not see it: their standard errors are too small. In simulations they came to 0.80 of the true spread for "
+                + "an attribute, 0.65 for the last choice and 0.33 for a person's own attribute. Read the clustered ones, or draw whole persons.", []);
         // Where the covariance is refused for its failures, that is told with the other refusals, and there are no figures to speak of.
         if (inference.Bootstrap is { } bootstrap && bootstrap.Done < bootstrap.Requested
             && inference.Covariances.GetValueOrDefault(CovarianceKind.Bootstrap)?.Matrix is not null)

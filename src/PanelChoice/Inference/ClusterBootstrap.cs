@@ -20,6 +20,7 @@ internal static class ClusterBootstrap
     /// <summary>Why no replicate is made; null when they are.</summary>
     public static string? Obstacle(InferenceInput input, InferenceSettings settings) =>
         settings.Replicates <= 0 ? "No bootstrap replicates were asked for."
+        : settings.Blocks != BootstrapBlocks.Cluster ? BlocksObstacle(input)
         : input.Clusters.Length < 2 ? "There is one cluster only: every draw with replacement is the sample itself."
         : null;
 
@@ -28,18 +29,46 @@ internal static class ClusterBootstrap
         InferenceInput input, InferenceSettings settings, WorkContext work)
     {
         if (Obstacle(input, settings) is { } reason) return (Refuse(reason), null);
-        var summary = Summarise(input, Replicates(input, settings.BootstrapSeed, 0, settings.Replicates, work));
-        return (Covariance(input, summary, settings.Confidence, work.Threads), summary);
+        var first = settings.Target is { } target ? ReplicateNumber.First(target) : settings.Replicates;
+        var outcomes = Replicates(input, settings, 0, first, work);
+        var summary = Summarise(input, settings, outcomes);
+        var isOutOfReach = false;
+        if (settings.Target is { } wanted && !IsRefused(summary))
+        {
+            var kurtosis = LargestKurtosis(input, summary);
+            isOutOfReach = ReplicateNumber.IsOutOfReach(wanted, kurtosis);
+            if (ReplicateNumber.Needed(wanted, kurtosis) - first is > 0 and var more)
+                summary = Summarise(input, settings, outcomes.AddRange(Replicates(input, settings, first, more, work)));
+        }
+
+        var covariance = Covariance(input, summary, settings, work.Threads);
+        if (isOutOfReach)
+            covariance = covariance with
+            {
+                Cautions = covariance.Cautions.Add(
+                    $"The replicates' tails are so heavy that the target of replicates = \"auto\" asks for more than {ReplicateNumber.Most}; it was not reached."),
+            };
+        if ((covariance.Refusal ?? ReplicateErrors.Obstacle(input, settings, summary)) is { } none) return (covariance, summary with { ClusterErrorsReason = none });
+        return (covariance, summary with { ClusterErrors = ReplicateErrors.Of(input, r => Weights(input, settings, r), summary, work) });
     }
 
     /// <summary>Refits of a stretch of replicates. Replicate r is the same whatever stretch it is made in.</summary>
-    public static ImmutableArray<RefitOutcome> Replicates(InferenceInput input, long seed, int first, int count, WorkContext work) =>
+    public static ImmutableArray<RefitOutcome> Replicates(InferenceInput input, InferenceSettings settings, int first, int count, WorkContext work) =>
         NumberedRefits.Make(
-            input, RefitSeries.Bootstrap, [.. Enumerable.Range(first, count)],
-            r => new RefitRequest(ClusterDraw.Weights(seed, r, input.Clusters.Length), input.Estimates, []), work);
+            settings.Blocks == BootstrapBlocks.Cluster ? input : input with { Refitter = input.Blocks!.Refitter! },
+            RefitSeries.Bootstrap, [.. Enumerable.Range(first, count)],
+            r => new RefitRequest(Weights(input, settings, r), input.Estimates, []) { Number = r }, work);
+
+    private static ImmutableArray<double> Weights(InferenceInput input, InferenceSettings settings, int replicate) =>
+        settings.Blocks == BootstrapBlocks.Cluster
+            ? ClusterDraw.Weights(settings.Draw, settings.BootstrapSeed, replicate, input.Clusters.Length)
+            : input.Blocks!.Weights!(replicate);
+
+    private static string? BlocksObstacle(InferenceInput input) =>
+        input.Blocks is { } blocks ? blocks.Obstacle : "This likelihood has no blocks of occasions to draw.";
 
     /// <summary>Counts what became of the replicates and lays their estimates out.</summary>
-    public static BootstrapSummary Summarise(InferenceInput input, ImmutableArray<RefitOutcome> outcomes)
+    public static BootstrapSummary Summarise(InferenceInput input, InferenceSettings settings, ImmutableArray<RefitOutcome> outcomes)
     {
         var k = input.Estimates.Length;
         var estimates = new double[outcomes.Length * k];
@@ -51,7 +80,7 @@ internal static class ClusterBootstrap
         var status = new string[outcomes.Length];
         for (var r = 0; r < outcomes.Length; r++)
         {
-            if (HasConverged(outcomes[r], input))
+            if (FailedReplicates.HasConverged(outcomes[r], input))
             {
                 status[r] = "converged";
                 logLikelihood[r] = outcomes[r].LogLikelihood;
@@ -64,7 +93,7 @@ internal static class ClusterBootstrap
             }
         }
 
-        var failures = Enumerable.Range(0, outcomes.Length).Where(r => !HasConverged(outcomes[r], input))
+        var failures = Enumerable.Range(0, outcomes.Length).Where(r => !FailedReplicates.HasConverged(outcomes[r], input))
             .GroupBy(r => status[r], StringComparer.Ordinal)
             .OrderByDescending(g => g.Count()).ThenBy(g => g.Key, StringComparer.Ordinal)
             .Select(g => new ReplicateFailures(g.Key, g.Count(), [.. g])
@@ -79,17 +108,24 @@ internal static class ClusterBootstrap
             ImmutableCollectionsMarshal.AsImmutableArray(status))
         {
             Decrement = ImmutableCollectionsMarshal.AsImmutableArray(decrement),
+            Draw = settings.Draw,
+            Blocks = settings.Blocks,
+            BlockLength = settings.Blocks == BootstrapBlocks.Cluster ? null : input.Blocks?.Length,
+            IsLengthAutomatic = settings.Blocks != BootstrapBlocks.Cluster && input.Blocks is { IsAutomatic: true },
+            Target = settings.Target,
+            Failed = FailedReplicates.List(input, outcomes),
+            ErrorsWithFailures = FailedReplicates.StandardErrors(input, outcomes, ClusterDraw.Factor(settings.Draw, input.Clusters.Length)),
         };
     }
 
     /// <summary>Covariance of the replicates around their mean, or a refusal.</summary>
-    public static CovarianceEstimate Covariance(InferenceInput input, BootstrapSummary summary, double confidence, int threads)
+    private static CovarianceEstimate Covariance(InferenceInput input, BootstrapSummary summary, InferenceSettings settings, int threads)
     {
         var failed = summary.Requested - summary.Done;
         if (failed > MostFailures * summary.Requested)
             return Refuse(
                 $"{failed} of {summary.Requested} replicates failed ({Describe(input, summary)}), more than 5 percent. Failures are not a random "
-                + "sample of the draws, so the spread of the others would mislead; read the jackknife instead.");
+                + $"sample of the draws, so the spread of the others would mislead; {Alternative(settings)}.");
         if (summary.Done < 2) return Refuse($"{summary.Done} of {summary.Requested} replicates converged; a spread needs two.");
 
         var f = input.Free.Length;
@@ -112,9 +148,25 @@ internal static class ClusterBootstrap
 
         for (var i = 0; i < rows.Length; i++) rows[i] -= mean[i % f] / summary.Done;
         var covariance = Sandwich.OuterSum(rows, f, threads);
-        for (var i = 0; i < covariance.Length; i++) covariance[i] /= summary.Done - 1;
-        return CovarianceEstimate.Of(CovarianceKind.Bootstrap, covariance, f, 1, input.Clusters.Length, Cautions(input, summary, confidence, rows));
+        var factor = ClusterDraw.Factor(settings.Draw, input.Clusters.Length);
+        for (var i = 0; i < covariance.Length; i++) covariance[i] *= factor / (summary.Done - 1);
+        var units = settings.Blocks == BootstrapBlocks.Cluster ? input.Clusters.Length : input.Blocks!.Blocks;
+        return CovarianceEstimate.Of(CovarianceKind.Bootstrap, covariance, f, factor, units, Cautions(input, summary, settings.Confidence, rows));
     }
+
+    private static bool IsRefused(BootstrapSummary summary) => summary.Done < 2 || summary.Requested - summary.Done > MostFailures * summary.Requested;
+
+    /// <summary>What to do where too many replicates fail.</summary>
+    private static string Alternative(InferenceSettings settings) =>
+        settings is { Blocks: BootstrapBlocks.Cluster, Draw: BootstrapDraw.Counts }
+            ? "exponential weights lose no cluster (draw = \"exponential\"), or read the jackknife"
+            : "read the jackknife instead";
+
+    /// <summary>The largest kurtosis of the replicates over the free parameters; that of a normal distribution where none varies.</summary>
+    private static double LargestKurtosis(InferenceInput input, BootstrapSummary summary) =>
+        input.Free.Select(k => MonteCarloErrors.Kurtosis(
+            [.. Enumerable.Range(0, summary.Requested).Select(r => summary.Estimates[(r * input.Estimates.Length) + k] - input.Estimates[k]).Where(double.IsFinite)]))
+            .Where(double.IsFinite).DefaultIfEmpty(3).Max();
 
     /// <summary>The failures by kind, with the terms they name.</summary>
     private static string Describe(InferenceInput input, BootstrapSummary summary) =>
@@ -153,9 +205,6 @@ internal static class ClusterBootstrap
         var middle = MathNet.Numerics.Statistics.SortedArrayStatistics.InterquartileRange(values) / 1.349;
         return MathNet.Numerics.Statistics.ArrayStatistics.StandardDeviation(values) > 2 * middle;
     }
-
-    private static bool HasConverged(RefitOutcome outcome, InferenceInput input) =>
-        outcome.Status == FitStatus.Converged && input.Free.All(k => double.IsFinite(outcome.Parameters[k])) && double.IsFinite(outcome.LogLikelihood);
 
     private static CovarianceEstimate Refuse(string reason) => CovarianceEstimate.Refused(CovarianceKind.Bootstrap, reason);
 }

@@ -71,6 +71,15 @@ public sealed record InferenceInput(
     /// <summary>The second grouping of two-way clustering; null where the study names none.</summary>
     public SecondClusters? Second { get; init; }
 
+    /// <summary>
+    /// Scores by cluster and information at other parameters (K) and cluster weights (G), for standard errors inside replicates; null where the likelihood
+    /// has none. It is called from several threads at once.
+    /// </summary>
+    public Func<ImmutableArray<double>, ImmutableArray<double>, ReplicateEvidence>? Evidence { get; init; }
+
+    /// <summary>What replicates that draw blocks of occasions are made from; null where whole clusters are drawn.</summary>
+    internal BlockDraws? Blocks { get; init; }
+
     /// <summary>Most refits that may be at work at a time, where memory is short; no bit depends on it.</summary>
     internal int RefitsAtOnce { get; init; } = int.MaxValue;
 
@@ -111,7 +120,10 @@ public sealed record InferenceInput(
             weighted,
             weighted ? MeanOverSituations(design) : 1,
             model.Status == FitStatus.Converged ? null : Unsettled(model.Status),
-            refitter);
+            refitter)
+        {
+            Evidence = (parameters, clusterWeight) => ReplicateErrors.At(model, parameters, clusterWeight),
+        };
     }
 
     /// <summary>The mean weight over situations, summed in their order.</summary>

@@ -99,12 +99,34 @@ public sealed record ParameterInference(
     /// <summary>Why there is no percentile interval; null when there is one.</summary>
     public string? PercentileReason { get; init; }
 
+    /// <summary>Bias-corrected and accelerated percentile interval; null where there is none.</summary>
+    public Interval? BootstrapAccelerated { get; init; }
+
+    /// <summary>Why there is no accelerated interval; null when there is one.</summary>
+    public string? AcceleratedReason { get; init; }
+
+    /// <summary>Bootstrap-t interval; null where there is none.</summary>
+    public Interval? BootstrapStudentised { get; init; }
+
+    /// <summary>Why there is no bootstrap-t interval; null when there is one.</summary>
+    public string? StudentisedReason { get; init; }
+
+    /// <summary>Monte-Carlo errors of the bootstrap's figures; null without bootstrap.</summary>
+    public BootstrapErrors? BootstrapErrors { get; init; }
+
     /// <summary>Why there is no ratio and no equivalent number of occasions; null when there are.</summary>
     public string? RatioReason { get; init; }
 
     /// <summary>How the ratio was made when sampling weights are in it; null without weights.</summary>
     public string? RatioLabel { get; init; }
 }
+
+/// <summary>Monte-Carlo errors: how far bootstrap figures would move under another seed.</summary>
+/// <param name="StandardError">Of the standard error, by the replicates' own kurtosis.</param>
+/// <param name="Percentile">Of the two ends of the percentile interval; null where there is none.</param>
+/// <param name="Accelerated">Of the ends of the accelerated interval; null where there is none.</param>
+/// <param name="Studentised">Of the ends of the bootstrap-t interval; null where there is none.</param>
+public sealed record BootstrapErrors(double? StandardError, Interval? Percentile, Interval? Accelerated, Interval? Studentised);
 
 /// <summary>How the jackknife went.</summary>
 /// <param name="Kind">Full refits or one step.</param>
@@ -130,6 +152,12 @@ public sealed record ReplicateFailures(string Kind, int Count, ImmutableArray<in
     public ImmutableArray<int> Parameters { get; init; } = [];
 }
 
+/// <summary>A replicate that failed.</summary>
+/// <param name="Replicate">Its number, from 0.</param>
+/// <param name="Kind">Kind in plain words.</param>
+/// <param name="Parameters">Parameters (indices in the layout) it is about; may be empty.</param>
+public sealed record FailedReplicate(int Replicate, string Kind, ImmutableArray<int> Parameters);
+
 /// <summary>How the bootstrap went. Nothing is dropped or drawn again: requested = done + failures.</summary>
 /// <param name="Requested">Replicates asked for.</param>
 /// <param name="Done">Replicates that converged.</param>
@@ -144,6 +172,36 @@ public sealed record BootstrapSummary(
 {
     /// <summary>Certificate of each replicate (<see cref="RefitOutcome.Decrement"/>): how far its maximum may still be, in its pooled standard errors; NaN where it failed.</summary>
     public ImmutableArray<double> Decrement { get; init; } = [];
+
+    /// <summary>What is drawn.</summary>
+    public BootstrapBlocks Blocks { get; init; }
+
+    /// <summary>Occasions or days in a block; null where whole clusters are drawn.</summary>
+    public int? BlockLength { get; init; }
+
+    /// <summary>Whether that length was found from the data.</summary>
+    public bool IsLengthAutomatic { get; init; }
+
+    /// <summary>Relative distance that the number of replicates was found for; null where the study states the number.</summary>
+    public double? Target { get; init; }
+
+    /// <summary>The replicates that failed, by number.</summary>
+    public ImmutableArray<FailedReplicate> Failed { get; init; } = [];
+
+    /// <summary>
+    /// F standard errors with the failed replicates in, at their last iterate or, for what their failure names, at the farthest replicate that converged;
+    /// empty where fewer than two converged.
+    /// </summary>
+    public ImmutableArray<double> ErrorsWithFailures { get; init; } = [];
+
+    /// <summary>How the replicates were drawn.</summary>
+    public BootstrapDraw Draw { get; init; }
+
+    /// <summary>Requested x F clustered standard errors inside the replicates, row by row; NaN where one does not exist; empty where none was made.</summary>
+    public ImmutableArray<double> ClusterErrors { get; init; } = [];
+
+    /// <summary>Why there are no standard errors inside the replicates; null when there are.</summary>
+    public string? ClusterErrorsReason { get; init; }
 }
 
 /// <summary>How clustering two ways went.</summary>

@@ -95,7 +95,7 @@ internal sealed record JackknifeRefits(
             var weights = new double[input.Clusters.Length];
             Array.Fill(weights, 1);
             weights[Cluster] = 0;
-            return new RefitRequest(ImmutableCollectionsMarshal.AsImmutableArray(weights), input.Estimates, Held);
+            return new RefitRequest(ImmutableCollectionsMarshal.AsImmutableArray(weights), input.Estimates, Held) { Number = Cluster };
         }
 
         /// <summary>The same deletion with failed terms held; null when that cannot help.</summary>

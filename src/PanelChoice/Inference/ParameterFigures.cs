@@ -10,7 +10,7 @@ namespace PanelChoice.Inference;
 /// the parent's is estimated as well.
 /// </summary>
 internal sealed class ParameterFigures(
-    InferenceInput input, ImmutableDictionary<CovarianceKind, CovarianceEstimate> covariances, BootstrapSummary? bootstrap, double confidence)
+    InferenceInput input, ImmutableDictionary<CovarianceKind, CovarianceEstimate> covariances, BootstrapSummary? bootstrap, JackknifeSummary? jackknife, double confidence)
 {
     private const string WeightUnit = "It depends on the unit of the sampling weights, so no interval or p-value is made from it.";
 
@@ -22,7 +22,7 @@ internal sealed class ParameterFigures(
     public ParameterInference Of(int place)
     {
         var figures = covariances.Values.ToImmutableDictionary(c => c.Kind, c => Figures(c, place));
-        var (percentile, percentileReason) = Percentile(place);
+        var intervals = Intervals(place, figures);
         var pooled = figures[CovarianceKind.Pooled].StandardError;
         var clustered = figures[CovarianceKind.Cluster].StandardError;
         // Weights of mean 1 give the pooled figure the scale of as many occasions as there are; the clustered one does not depend on their unit.
@@ -30,12 +30,17 @@ internal sealed class ParameterFigures(
         var ratio = clustered is > 0 && scaled is > 0 ? clustered / scaled : null;
         var jackknife = input.Clusters.Length < ClusterCovariance.FewClusters ? figures[CovarianceKind.Jackknife].StandardError : null;
         return new ParameterInference(
-            input.Free[place], figures, percentile,
+            input.Free[place], figures, intervals.Percentile,
             figures[CovarianceKind.Bootstrap].StandardError / Math.Sqrt(2.0 * (bootstrap?.Done ?? 0)),
             ratio, input.Occasions / (ratio * ratio))
         {
             JackknifeSeRatio = jackknife is > 0 && scaled is > 0 ? jackknife / scaled : null,
-            PercentileReason = percentileReason,
+            PercentileReason = intervals.PercentileReason,
+            BootstrapAccelerated = intervals.Accelerated,
+            AcceleratedReason = intervals.AcceleratedReason,
+            BootstrapStudentised = intervals.Studentised,
+            StudentisedReason = intervals.StudentisedReason,
+            BootstrapErrors = intervals.Errors,
             RatioReason = ratio is null
                 ? figures[CovarianceKind.Pooled].Reason is { } p && pooled is null ? p : figures[CovarianceKind.Cluster].Reason
                 : null,
@@ -98,11 +103,13 @@ internal sealed class ParameterFigures(
         return (reference.TwoSided(Math.Log(estimate / tested.Value) / Math.Sqrt(variance)), null);
     }
 
-    private (Interval? Interval, string? Reason) Percentile(int place)
+    private BootstrapIntervals Intervals(int place, ImmutableDictionary<CovarianceKind, KindFigures> figures)
     {
         var covariance = covariances[CovarianceKind.Bootstrap];
-        if (bootstrap is null || covariance.Matrix is null) return (null, covariance.Refusal);
-        return Percentiles.Of(replicates[place], bootstrap.Requested - bootstrap.Done, confidence);
+        return bootstrap is null || covariance.Matrix is null
+            ? BootstrapIntervals.None(covariance.Refusal)
+            : BootstrapIntervals.Of(
+                input, bootstrap, jackknife, place, replicates[place], figures[CovarianceKind.Bootstrap].StandardError, figures[CovarianceKind.Cluster], confidence);
     }
 
     /// <summary>Values of each free parameter over the replicates that converged, ascending.</summary>

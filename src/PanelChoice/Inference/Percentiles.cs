@@ -25,18 +25,26 @@ internal static class Percentiles
         var requested = values.Length + failed;
         var position = Position(requested, confidence);
         if (position < 1) return (null, $"{requested} replicates are too few for percentiles at this confidence.");
-        var whole = (int)position;
-        if (whole <= failed)
+        if ((int)position <= failed)
             return (null, $"{failed} of {requested} replicates failed, as many as lie beyond an end of the interval, so that the end could be anywhere.");
-        var part = position - whole;
-        var low = values[whole - 1 - failed];
-        var high = values[^(whole - failed)];
-        if (part > 0)
-        {
-            low += part * (values[whole - failed] - low);
-            high += part * (values[^(whole + 1 - failed)] - high);
-        }
+        return (new Interval(At(values, position - failed), At(values, values.Length + 1 - (position - failed))), null);
+    }
 
-        return (new Interval(low, high), null);
+    /// <summary>Monte-Carlo errors of the two ends of an interval that exists.</summary>
+    /// <param name="values">Values of the replicates that converged, ascending.</param>
+    /// <param name="failed">Number of failed replicates.</param>
+    /// <param name="confidence">Confidence level.</param>
+    public static (double Low, double High) Errors(double[] values, int failed, double confidence)
+    {
+        var place = Position(values.Length + failed, confidence) - failed;
+        return (MonteCarloErrors.OfQuantile(values, place), MonteCarloErrors.OfQuantile(values, values.Length + 1 - place));
+    }
+
+    /// <summary>The value at a place from 1; a fraction lies between two.</summary>
+    public static double At(double[] values, double place)
+    {
+        var whole = (int)place;
+        var part = place - whole;
+        return part > 0 ? values[whole - 1] + (part * (values[whole] - values[whole - 1])) : values[whole - 1];
     }
 }

@@ -4,7 +4,7 @@ using PanelChoice.Study;
 namespace PanelChoice.Inference;
 
 /// <summary>The numbered refits that the standard errors of a fit rest on: what can be divided among machines.</summary>
-/// <param name="Replicates">Bootstrap replicates.</param>
+/// <param name="Replicates">Bootstrap replicates; where their number is found on the way, the most that it can be.</param>
 /// <param name="Deletions">Refits without one cluster each; 0 where the jackknife is off or of one step.</param>
 /// <param name="Obstacle">Why the fit cannot be refitted at all, so that both are 0; null when it can.</param>
 public sealed record RefitPlan(int Replicates, int Deletions, string? Obstacle)
@@ -18,7 +18,9 @@ public sealed record RefitPlan(int Replicates, int Deletions, string? Obstacle)
         ArgumentNullException.ThrowIfNull(settings);
         if (StandardErrors.Obstacle(input) is { } reason) return new RefitPlan(0, 0, reason);
         return new RefitPlan(
-            ClusterBootstrap.Obstacle(input, settings) is null ? settings.Replicates : 0,
+            ClusterBootstrap.Obstacle(input, settings) is not null ? 0
+                : settings.Target is null ? settings.Replicates
+                : ReplicateNumber.Most,
             ClusterJackknife.Refits(settings.Jackknife, input.Clusters.Length) ? input.Clusters.Length : 0,
             null);
     }
@@ -35,7 +37,7 @@ public sealed record RefitPlan(int Replicates, int Deletions, string? Obstacle)
         ArgumentNullException.ThrowIfNull(settings);
         ArgumentNullException.ThrowIfNull(share);
         ArgumentNullException.ThrowIfNull(work);
-        ClusterBootstrap.Replicates(input, settings.BootstrapSeed, share.First(Replicates), share.Count(Replicates), work);
+        ClusterBootstrap.Replicates(input, settings, share.First(Replicates), share.Count(Replicates), work);
         NumberedRefits.Make(
             input, RefitSeries.Jackknife, [.. Enumerable.Range(share.First(Deletions), share.Count(Deletions))],
             g => JackknifeRefits.Without(input, g), work);

@@ -54,7 +54,7 @@ public static class StandardErrors
         BootstrapSummary? bootstrap)
     {
         var covariances = estimates.ToImmutableDictionary(c => c.Kind);
-        var figures = new ParameterFigures(input, covariances, bootstrap, settings.Confidence);
+        var figures = new ParameterFigures(input, covariances, bootstrap, jackknife, settings.Confidence);
         return new InferenceResult(
             covariances,
             [.. Enumerable.Range(0, input.Free.Length).Select(figures.Of)],

@@ -175,7 +175,35 @@ public sealed record FitWarning(string Id, string Sentence, ImmutableArray<strin
 /// <param name="Done">Replicates that converged.</param>
 /// <param name="Retried">Replicates that needed another start.</param>
 /// <param name="Failed">Failures by kind.</param>
-public sealed record BootstrapCounts(int Requested, int Done, int Retried, ImmutableArray<FailureCount> Failed);
+public sealed record BootstrapCounts(int Requested, int Done, int Retried, ImmutableArray<FailureCount> Failed)
+{
+    /// <summary>What is drawn: "clusters", "clusters_exponential", "moving" or "calendar"; null without replicates.</summary>
+    public string? Scheme { get; init; }
+
+    /// <summary>Occasions or days in a block; null where whole clusters are drawn.</summary>
+    public int? BlockLength { get; init; }
+
+    /// <summary>Whether that length was found from the data; null where whole clusters are drawn.</summary>
+    public bool? IsLengthAutomatic { get; init; }
+
+    /// <summary>Relative distance for which the number of replicates was found; null where the study states the number.</summary>
+    public double? Target { get; init; }
+
+    /// <summary>Probability with which standard errors are as near as the target says; null without a target.</summary>
+    public double? TargetCoverage { get; init; }
+
+    /// <summary>The replicates that failed, by number.</summary>
+    public ImmutableArray<FailedReplicateResult> Failures { get; init; } = [];
+
+    /// <summary>Standard errors with the failed replicates in, in the order of the parameters; null where one does not exist.</summary>
+    public ImmutableArray<double?>? ErrorsWithFailures { get; init; }
+}
+
+/// <summary>A replicate that failed.</summary>
+/// <param name="Replicate">Its number, from 0.</param>
+/// <param name="Kind">Kind in plain words.</param>
+/// <param name="Parameters">Labels of the parameters it is about; may be empty.</param>
+public sealed record FailedReplicateResult(int Replicate, string Kind, ImmutableArray<string> Parameters);
 
 /// <summary>Failures of one kind.</summary>
 /// <param name="Kind">Kind in plain words.</param>

@@ -60,13 +60,26 @@ internal static class ParameterEntries
             new IntervalsByKind(
                 Range("pooled", CovarianceKind.Pooled), Range("robust", CovarianceKind.Robust), Range("cluster", CovarianceKind.Cluster),
                 Range("jackknife", CovarianceKind.Jackknife), Range("two_way", CovarianceKind.TwoWay), Range("bootstrap", CovarianceKind.Bootstrap),
-                book.Interval($"{path}.interval.bootstrap_percentile", figures?.BootstrapPercentile, figures?.PercentileReason ?? Missing(CovarianceKind.Bootstrap))),
+                book.Interval($"{path}.interval.bootstrap_percentile", figures?.BootstrapPercentile, figures?.PercentileReason ?? Missing(CovarianceKind.Bootstrap)))
+            {
+                BootstrapAccelerated = book.Interval(
+                    $"{path}.interval.bootstrap_bca", figures?.BootstrapAccelerated, figures?.AcceleratedReason ?? Missing(CovarianceKind.Bootstrap)),
+                BootstrapStudentised = book.Interval(
+                    $"{path}.interval.bootstrap_t", figures?.BootstrapStudentised, figures?.StudentisedReason ?? Missing(CovarianceKind.Bootstrap)),
+            },
             new PValuesByKind(
                 PValue("pooled", CovarianceKind.Pooled), PValue("robust", CovarianceKind.Robust), PValue("cluster", CovarianceKind.Cluster),
                 PValue("jackknife", CovarianceKind.Jackknife), PValue("two_way", CovarianceKind.TwoWay), PValue("bootstrap", CovarianceKind.Bootstrap)),
             book.Number($"{path}.bootstrap_error", figures?.BootstrapError, Missing(CovarianceKind.Bootstrap)),
             book.Number($"{path}.se_ratio", figures?.SeRatio, figures?.RatioReason ?? Missing(CovarianceKind.Cluster)),
-            book.Number($"{path}.equivalent_occasions", figures?.EquivalentOccasions, figures?.RatioReason ?? Missing(CovarianceKind.Cluster)));
+            book.Number($"{path}.equivalent_occasions", figures?.EquivalentOccasions, figures?.RatioReason ?? Missing(CovarianceKind.Cluster)))
+        {
+            BootstrapErrors = new BootstrapErrors(
+                book.Number($"{path}.bootstrap_errors.se", figures?.BootstrapErrors?.StandardError, Missing(CovarianceKind.Bootstrap)),
+                book.Interval($"{path}.bootstrap_errors.percentile", figures?.BootstrapErrors?.Percentile, figures?.PercentileReason ?? Missing(CovarianceKind.Bootstrap)),
+                book.Interval($"{path}.bootstrap_errors.bca", figures?.BootstrapErrors?.Accelerated, figures?.AcceleratedReason ?? Missing(CovarianceKind.Bootstrap)),
+                book.Interval($"{path}.bootstrap_errors.t", figures?.BootstrapErrors?.Studentised, figures?.StudentisedReason ?? Missing(CovarianceKind.Bootstrap))),
+        };
 
         double? Error(string name, CovarianceKind kind) => book.Number($"{path}.se.{name}", Of(kind)?.StandardError, Missing(kind));
         Interval? Range(string name, CovarianceKind kind) => book.Interval($"{path}.interval.{name}", Of(kind)?.Interval, Missing(kind));

@@ -21,6 +21,9 @@ public sealed record ParameterResult(
     string Name, string? Alternative, string Kind, string Status, string? SameAs, string? Role, double? Estimate,
     StandardErrorsByKind StandardErrors, IntervalsByKind Intervals, PValuesByKind PValues, double? BootstrapError, double? SeRatio, double? EquivalentOccasions)
 {
+    /// <summary>Monte-Carlo errors of the bootstrap's figures.</summary>
+    public BootstrapErrors BootstrapErrors { get; init; } = new(null, null, null, null);
+
     /// <summary>The kind of a utility coefficient.</summary>
     public const string Coefficient = "coefficient";
 
@@ -54,7 +57,14 @@ public sealed record StandardErrorsByKind(
 /// <param name="Bootstrap">t(G - 1) with the bootstrap standard error.</param>
 /// <param name="BootstrapPercentile">Percentiles of the replicates.</param>
 public sealed record IntervalsByKind(
-    Interval? Pooled, Interval? Robust, Interval? Cluster, Interval? Jackknife, Interval? TwoWay, Interval? Bootstrap, Interval? BootstrapPercentile);
+    Interval? Pooled, Interval? Robust, Interval? Cluster, Interval? Jackknife, Interval? TwoWay, Interval? Bootstrap, Interval? BootstrapPercentile)
+{
+    /// <summary>Bias-corrected and accelerated percentiles of the replicates.</summary>
+    public Interval? BootstrapAccelerated { get; init; }
+
+    /// <summary>Bootstrap-t.</summary>
+    public Interval? BootstrapStudentised { get; init; }
+}
 
 /// <summary>Two-sided p-values of one parameter; null where one does not exist.</summary>
 /// <param name="Pooled">Normal.</param>
@@ -104,4 +114,7 @@ public sealed record ReplicateTable(
     /// errors; NaN where the replicate failed.
     /// </summary>
     public ImmutableArray<double> Decrement { get; init; } = [];
+
+    /// <summary>Labels of what each replicate's failure is about, separated by semicolons; empty where it converged or nothing is named.</summary>
+    public ImmutableArray<string> FailedParameters { get; init; } = [];
 }

@@ -22,6 +22,7 @@ internal static class ResultBuilder
         var fit = Fit(model, book);
         var parameters = entries.Select((e, i) => ParameterEntries.Figures(e, $"parameters[{i}]", model, inference, book)).ToImmutableArray();
         var covariance = CovarianceExpansion.Over(entries, inference, book);
+        var bootstrap = BootstrapEntries.Of(entries, study.Inference, model.Layout, inference, book);
         var jackknife = Jackknife(inference, book);
         var twoWay = TwoWayResult.Of(inference, [.. model.Layout.Parameters.Select(p => p.Label)], book);
         var clusters = Clusters(stages, book);
@@ -38,9 +39,7 @@ internal static class ResultBuilder
             Sample(sample, model.Design),
             fit,
             parameters,
-            inference.Bootstrap is { } b
-                ? new BootstrapCounts(b.Requested, b.Done, b.Retried, [.. b.Failures.Select(f => new FailureCount(f.Kind, f.Count))])
-                : new BootstrapCounts(study.Inference.Replicates, 0, 0, []),
+            bootstrap,
             jackknife,
             covariance,
             clusters,
@@ -156,6 +155,7 @@ internal static class ResultBuilder
         return new ReplicateTable(labels, bootstrap.Status, bootstrap.LogLikelihood, ImmutableCollectionsMarshal.AsImmutableArray(estimates))
         {
             Decrement = bootstrap.Decrement,
+            FailedParameters = BootstrapEntries.FailedByReplicate(bootstrap, model.Layout),
         };
     }
 }

@@ -50,7 +50,7 @@ public static class ResultJson
             WriteSample(json, result.Sample);
             WriteFit(json, result.Fit);
             json.WriteArray("parameters", result.Parameters, p => WriteParameter(json, p));
-            WriteBootstrap(json, result.Bootstrap);
+            json.WriteObject("bootstrap", () => BootstrapJson.Write(json, result.Bootstrap));
             WriteJackknife(json, result.Jackknife);
             TwoWayResult.Write(json, result.TwoWay);
             RecommendationResult.Write(json, result.Recommendations);
@@ -187,6 +187,8 @@ public static class ResultJson
             WriteInterval(json, "two_way", p.Intervals.TwoWay);
             WriteInterval(json, "bootstrap", p.Intervals.Bootstrap);
             WriteInterval(json, "bootstrap_percentile", p.Intervals.BootstrapPercentile);
+            WriteInterval(json, "bootstrap_bca", p.Intervals.BootstrapAccelerated);
+            WriteInterval(json, "bootstrap_t", p.Intervals.BootstrapStudentised);
         });
         json.WriteObject("p_value", () =>
         {
@@ -198,28 +200,17 @@ public static class ResultJson
             json.WriteFigure("bootstrap", p.PValues.Bootstrap);
         });
         json.WriteFigure("bootstrap_error", p.BootstrapError);
+        BootstrapJson.WriteErrors(json, p.BootstrapErrors);
         json.WriteFigure("se_ratio", p.SeRatio);
         json.WriteFigure("equivalent_occasions", p.EquivalentOccasions);
     });
 
-    private static void WriteInterval(Utf8JsonWriter json, string name, Interval? interval)
+    internal static void WriteInterval(Utf8JsonWriter json, string name, Interval? interval)
     {
         json.WritePropertyName(name);
         if (interval is null) json.WriteNullValue();
         else json.WriteRow([interval.Low, interval.High]);
     }
-
-    private static void WriteBootstrap(Utf8JsonWriter json, BootstrapCounts bootstrap) => json.WriteObject("bootstrap", () =>
-    {
-        json.WriteNumber("requested", bootstrap.Requested);
-        json.WriteNumber("done", bootstrap.Done);
-        json.WriteNumber("retried", bootstrap.Retried);
-        json.WriteArray("failed", bootstrap.Failed, f => json.WriteObject(() =>
-        {
-            json.WriteString("kind", f.Kind);
-            json.WriteNumber("count", f.Count);
-        }));
-    });
 
     private static void WriteJackknife(Utf8JsonWriter json, JackknifeCounts? jackknife)
     {

@@ -5,7 +5,6 @@ internal static class SettingsSections
 {
     // Beyond these a figure gains no digit; the run only never ends, or asks for memory without end.
     private const int MostStarts = 100_000;
-    private const int MostReplicates = 1_000_000;
     private const int MostLags = 1_000;
     private const int MostDraws = 10_000_000;
 
@@ -43,19 +42,16 @@ internal static class SettingsSections
         var confidence = table.Number("confidence", InsideUnit, BelowOne) ?? 0.95;
         var jackknife = table.Word(
             "jackknife", JackknifeKind.Auto, ("auto", JackknifeKind.Auto), ("refit", JackknifeKind.Refit), ("one_step", JackknifeKind.OneStep), ("off", JackknifeKind.Off));
-        if (bootstrap.Word("blocks", false, ("cluster", false), ("moving", true)))
-            problems.Add(
-                "study.not_supported", bootstrap.PlaceOf("blocks"), "moving blocks are not supported yet", "draw whole clusters: blocks = \"cluster\"");
-        var replicates = 399;
-        if (bootstrap.Peek("replicates") == "auto")
-            problems.Add(
-                "study.not_supported", bootstrap.PlaceOf("replicates"), "replicates = \"auto\" is not supported yet", "state a number, for example replicates = 399");
-        else
-            replicates = bootstrap.Whole("replicates", 0, MostReplicates) ?? replicates;
-        return new InferenceSettings(cluster, confidence, jackknife, replicates, bootstrap.Seed("seed", 7))
+        var sampling = BootstrapSection.Read(bootstrap, problems);
+        return new InferenceSettings(cluster, confidence, jackknife, sampling.Replicates, bootstrap.Seed("seed", 7))
         {
             SecondCluster = second,
             ScoreDraws = table.Whole("score_draws", 0, MostDraws),
+            Draw = sampling.Draw,
+            Blocks = sampling.Blocks,
+            BlockLength = sampling.Length,
+            Target = sampling.Target,
+            Studentised = bootstrap.OptionalFlag("studentised"),
         };
     }
 

@@ -29,7 +29,7 @@ internal static class StudyKeys
         ["[[test]]"] = ["name", "terms", "values", "equal"],
         ["[estimate]"] = ["form", "starts", "seed"],
         ["[inference]"] = ["cluster", "second_cluster", "confidence", "jackknife", "score_draws"],
-        ["[inference.bootstrap]"] = ["replicates", "blocks", "seed"],
+        ["[inference.bootstrap]"] = ["replicates", "blocks", "length", "draw", "target", "studentised", "seed"],
         ["[diagnostics]"] = ["lags", "level", "draws", "seed"],
     }.ToFrozenDictionary();
 
@@ -37,7 +37,6 @@ internal static class StudyKeys
     private static readonly FrozenDictionary<(string Table, string Key), string> LaterKeys = new Dictionary<(string, string), string>
     {
         [("[panel]", "alternatives")] = "it belongs to the wide layout; bring the data into long layout, a row for each person, occasion and alternative",
-        [("[inference.bootstrap]", "length")] = "remove it and draw whole clusters: blocks = \"cluster\"",
     }.ToFrozenDictionary();
 
     private static readonly string[] LaterTables = ["[[taste]]", "[initial]"];

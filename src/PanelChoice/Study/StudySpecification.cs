@@ -205,11 +205,34 @@ public enum JackknifeKind
     Off,
 }
 
+/// <summary>How a bootstrap replicate weighs the clusters.</summary>
+public enum BootstrapDraw
+{
+    /// <summary>As many clusters as there are, drawn with replacement.</summary>
+    Counts,
+
+    /// <summary>Exponential weights of mean 1: no cluster ever leaves the sample.</summary>
+    Exponential,
+}
+
+/// <summary>What a bootstrap replicate draws.</summary>
+public enum BootstrapBlocks
+{
+    /// <summary>Whole clusters.</summary>
+    Cluster,
+
+    /// <summary>Runs of consecutive occasions inside each person.</summary>
+    Moving,
+
+    /// <summary>Runs of consecutive days, for all persons together.</summary>
+    Calendar,
+}
+
 /// <summary>Inference settings.</summary>
 /// <param name="Cluster">"person", or a column that is constant within a person.</param>
 /// <param name="Confidence">Confidence level of intervals, inside (0, 1).</param>
 /// <param name="Jackknife">How the jackknife is computed.</param>
-/// <param name="Replicates">Bootstrap replicates; 0 for none.</param>
+/// <param name="Replicates">Bootstrap replicates; 0 for none; without meaning where <see cref="Target"/> finds their number.</param>
 /// <param name="BootstrapSeed">Seed of the bootstrap.</param>
 public sealed record InferenceSettings(string Cluster, double Confidence, JackknifeKind Jackknife, int Replicates, long BootstrapSeed)
 {
@@ -220,6 +243,23 @@ public sealed record InferenceSettings(string Cluster, double Confidence, Jackkn
 
     /// <summary>Draws of the score bootstrap; 0 for none; null leaves it to the number of clusters.</summary>
     public int? ScoreDraws { get; init; }
+
+    /// <summary>How a replicate weighs the clusters.</summary>
+    public BootstrapDraw Draw { get; init; }
+
+    /// <summary>What a replicate draws.</summary>
+    public BootstrapBlocks Blocks { get; init; }
+
+    /// <summary>Occasions or days in a block; null: found from the data.</summary>
+    public int? BlockLength { get; init; }
+
+    /// <summary>
+    /// Relative distance of standard errors from those of infinitely many replicates, for which their number is found; null where the study states the number.
+    /// </summary>
+    public double? Target { get; init; }
+
+    /// <summary>Whether bootstrap-t intervals are made; null: where they cost little.</summary>
+    public bool? Studentised { get; init; }
 }
 
 /// <summary>Settings of the independence battery.</summary>

@@ -44,9 +44,9 @@ public class ClusterBootstrapTests
         Assert.Equal(a.Parameters.Select(p => p.BootstrapPercentile), b.Parameters.Select(p => p.BootstrapPercentile));
 
         var input = InferenceInput.From(model, one);
-        var halves = ClusterBootstrap.Replicates(input, 7, 0, 13, WorkContext.Quiet)
-            .AddRange(ClusterBootstrap.Replicates(input, 7, 13, 11, WorkContext.Quiet));
-        Assert.Equal(a.Bootstrap.Estimates.ToArray(), ClusterBootstrap.Summarise(input, halves).Estimates.ToArray());
+        var halves = ClusterBootstrap.Replicates(input, Settings(replicates: 24), 0, 13, WorkContext.Quiet)
+            .AddRange(ClusterBootstrap.Replicates(input, Settings(replicates: 24), 13, 11, WorkContext.Quiet));
+        Assert.Equal(a.Bootstrap.Estimates.ToArray(), ClusterBootstrap.Summarise(input, Settings(replicates: 24), halves).Estimates.ToArray());
     }
 
     [Fact]

@@ -60,14 +60,14 @@ public class ResultTablesTests
         stream.Position = 0;
         await using var reader = await ParquetReader.CreateAsync(stream);
         Assert.Equal(
-            ["replicate", "status", "log_likelihood", "newton_decrement", "constant [B]", "constant [C]", "constant [D]", "attribute 1", "attribute 2", "same as last time", "land", "water"],
+            ["replicate", "status", "log_likelihood", "newton_decrement", "failed_parameters", "constant [B]", "constant [C]", "constant [D]", "attribute 1", "attribute 2", "same as last time", "land", "water"],
             reader.Schema.GetDataFields().Select(f => f.Name));
         using var group = reader.OpenRowGroupReader(0);
         var fields = reader.Schema.GetDataFields();
         var likelihood = new double?[19];
         await group.ReadAsync<double>(fields[2], likelihood);
         var habit = new double?[19];
-        await group.ReadAsync<double>(fields[9], habit);
+        await group.ReadAsync<double>(fields[10], habit);
         var decrement = new double?[19];
         await group.ReadAsync<double>(fields[3], decrement);
         for (var r = 0; r < 19; r++)
@@ -86,7 +86,7 @@ public class ResultTablesTests
         stream.Position = 0;
         await using var reader = await ParquetReader.CreateAsync(stream);
         Assert.Equal(0, reader.RowGroupCount);
-        Assert.Equal(12, reader.Schema.GetDataFields().Length);
+        Assert.Equal(13, reader.Schema.GetDataFields().Length);
     }
 
     [Fact]

@@ -161,11 +161,13 @@ public class StudyProblemTests
         { Small + "[inference]\njackknife = \"yes\"\n", "study.unknown_value", 11, 13, "\"one_step\"" },
         { Small + "[inference]\nbootstrap = 3\n", "study.wrong_type", 11, 1, "write [inference.bootstrap] once" },
         { Small + "[inference.bootstrap]\nreplicates = -1\n", "study.out_of_range", 11, 14, "0 or more" },
-        { Small + "[inference.bootstrap]\nreplicates = \"auto\"\n", "study.not_supported", 11, 1, "not supported yet" },
+        { Small + "[inference.bootstrap]\ntarget = 0.05\n", "study.needs_key", 11, 1, "replicates = \"auto\"" },
+        { Small + "[inference.bootstrap]\nreplicates = \"auto\"\ntarget = 0.001\n", "study.out_of_range", 12, 10, "0.02 to 0.25" },
         { Small + "[inference.bootstrap]\nreplicates = \"many\"\n", "study.wrong_type", 11, 14, "a whole number" },
-        { Small + "[inference.bootstrap]\nblocks = \"moving\"\n", "study.not_supported", 11, 1, "moving blocks are not supported yet" },
+        { Small + "[inference.bootstrap]\nblocks = \"moving\"\ndraw = \"exponential\"\n", "study.excluded_key", 12, 1, "cannot weigh blocks" },
+        { Small + "[inference.bootstrap]\ndraw = \"count\"\n", "study.unknown_value", 11, 8, "did you mean \"counts\"?" },
         { Small + "[inference.bootstrap]\nblocks = \"clusters\"\n", "study.unknown_value", 11, 10, "did you mean \"cluster\"?" },
-        { Small + "[inference.bootstrap]\nlength = 5\n", "study.not_supported", 11, 1, "not supported yet" },
+        { Small + "[inference.bootstrap]\nlength = 5\n", "study.needs_key", 11, 1, "blocks = \"moving\"" },
         { Small + "[inference.bootstrap]\nseed = 1.5\n", "study.wrong_type", 11, 8, "a whole number" },
         { Small + "[diagnostics]\nlags = 0\n", "study.out_of_range", 11, 8, "1 or more" },
         { Small + "[diagnostics]\nlevel = 1.0\n", "study.out_of_range", 11, 9, "between 0 and 1" },
@@ -244,13 +246,13 @@ public class StudyProblemTests
             confidence = 95
             second_cluster = "occasion"
             [inference.bootstrap]
-            replicates = "auto"
+            target = 0.1
             """);
         Assert.Equal(
             [
                 ("study.unknown_key", 1, 1), ("study.missing_key", 2, 1), ("study.wrong_type", 4, 12), ("study.no_source", 6, 1),
                 ("study.unknown_key", 8, 1), ("study.duplicate_name", 10, 1), ("study.out_of_range", 12, 9), ("study.out_of_range", 14, 14),
-                ("study.needs_key", 15, 1), ("study.not_supported", 17, 1),
+                ("study.needs_key", 15, 1), ("study.needs_key", 17, 1),
             ],
             read.Problems.Select(p => (p.Id, p.Line!.Value, p.Position!.Value)));
     }
