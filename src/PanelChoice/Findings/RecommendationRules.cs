@@ -28,6 +28,11 @@ internal static class RecommendationRules
                 return new Recommendation(parameter.Parameter, rule.Kind, se, critical, df, interval, figures.PValue, rule.Id, missed + rule.Why);
             }
 
+            if (rule.Kind == CovarianceKind.Jackknife && IsLost(input, parameter))
+                return new Recommendation(
+                    parameter.Parameter, null, null, null, null, null, null, "rests_on_one_cluster",
+                    $"{Figures(parameter, CovarianceKind.Jackknife)!.Reason} What rests on one {(input.Inference.Clusters.By == "person" ? "person" : "group")} alone "
+                    + "has no standard error from how they differ: the clustered one missed the value in about half of such simulated panels.");
             missed += $"There is no {PrecisionFindings.InWords(rule.Kind)} one: {Figures(parameter, rule.Kind)?.Reason ?? "it was not asked for."} ";
         }
 
@@ -55,6 +60,11 @@ internal static class RecommendationRules
             $"It rests on {counted} and holds whatever ties the occasions inside one together (Liang and Zeger 1986; Cameron and Miller 2015); the pooled one holds only "
             + "where nothing does.");
     }
+
+    /// <summary>Whether the term alone has no jackknife: without some cluster it cannot be estimated.</summary>
+    private static bool IsLost(FindingsInput input, ParameterInference parameter) =>
+        input.Inference.Covariances.GetValueOrDefault(CovarianceKind.Jackknife) is { Matrix: not null } jackknife
+        && jackknife.RefusedParameters.Contains(input.Layout.Free.IndexOf(parameter.Parameter));
 
     /// <summary>Whether one kind's interval is the wider, or the other does not exist. With few persons or few days the two-way one can be far too narrow.</summary>
     private static bool IsWider(ParameterInference parameter, CovarianceKind kind, CovarianceKind than) =>

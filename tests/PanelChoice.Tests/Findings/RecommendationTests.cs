@@ -63,6 +63,29 @@ public class RecommendationTests
     }
 
     [Fact]
+    public void A_term_that_is_lost_without_one_person_is_told_to_have_no_standard_error()
+    {
+        var stages = HandMadeStages.Fourteen;
+        var first = stages.Inference.Parameters[0];
+        var lost = stages with
+        {
+            Inference = stages.Inference with
+            {
+                Parameters = stages.Inference.Parameters.SetItem(
+                    0, first with { ByKind = first.ByKind.SetItem(CovarianceKind.Jackknife, new KindFigures(null, null, null, "Without person P3 it cannot be estimated.")) }),
+                Covariances = stages.Inference.Covariances.SetItem(
+                    CovarianceKind.Jackknife, stages.Inference.Covariances[CovarianceKind.Jackknife] with { RefusedParameters = [0], RefusedReasons = ["Without person P3 it cannot be estimated."] }),
+            },
+        };
+        var recommended = lost.Recommendations[0];
+        Assert.Equal("rests_on_one_cluster", recommended.Rule);
+        Assert.Null(recommended.Kind);
+        Assert.StartsWith("Without person P3 it cannot be estimated.", recommended.Why, StringComparison.Ordinal);
+        Assert.Contains(FindingList.Of(lost), f => f.Id == "advice.no_error" && f.Sentence.Contains("no standard error", StringComparison.Ordinal));
+        Assert.Equal("some_clusters", lost.Recommendations[1].Rule);
+    }
+
+    [Fact]
     public void Where_no_standard_error_exists_the_reason_is_given_and_no_figure()
     {
         var stages = HandMadeStages.Many;
