@@ -137,8 +137,10 @@ internal static class CommandLine
         var output = Path("--out", "Write result.json, coefficients.csv and replicates.parquet to this folder.", "DIR");
         var strict = Strict();
         var command = new Command("estimate", "The main job: fit, standard errors side by side, diagnostics, verdict.") { study, output, strict };
+        var showIds = new Option<bool>("--show-ids") { Description = "Name persons by their ids where they drive a result; not to be passed on." };
+        command.Add(showIds);
         var store = new StoreOptions(command, Path);
-        command.SetAction(r => EstimateCommand.Run(r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict), store.Of(r), options(r)));
+        command.SetAction(r => EstimateCommand.Run(r.GetRequiredValue(study), r.GetValue(output), r.GetValue(strict), r.GetValue(showIds), store.Of(r), options(r)));
         return command;
     }
 

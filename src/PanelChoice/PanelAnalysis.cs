@@ -74,9 +74,9 @@ public static class PanelAnalysis
         var form = study.Estimate.Form;
         var likelihood = LikelihoodKernel.Create(sample.Design, form, work.Threads);
         var model = MaximumLikelihood.Fit(likelihood, form, study.Estimate, work);
-        // Sentences of later stages name clusters; from here on they know them by pseudonyms alone.
-        var pseudonyms = Pseudonyms.Of(sample.Sample.Sha256, sample.Design.Clusters);
-        var evidence = InferenceInput.From(model, new ClusterRefitter(model, work.Threads), pseudonyms) with
+        // Sentences of later stages name clusters; from here on they know them by pseudonyms alone, unless their ids were asked for.
+        var names = sample.ShowsIds ? sample.Design.Clusters : Pseudonyms.Of(sample.Sample.Sha256, sample.Design.Clusters);
+        var evidence = InferenceInput.From(model, new ClusterRefitter(model, work.Threads), names) with
         {
             RefitsAtOnce = sample.RefitsAtOnce,
             Second = SecondClusters.Of(study, sample.Sample, model),
@@ -100,7 +100,10 @@ public static class PanelAnalysis
             evidence, TermTestPlan.Of(study, sample.Sample.Covariates, model.Layout, evidence, study.Inference), inference,
             new RestrictedRefitter(model, work.Cancellation), study.Inference, work);
         var diagnostics = IndependenceBattery.Run(study, sample.Sample, model, sample.Static, work);
-        var stages = new FindingsInput(study, sample.Sample, model, inference, diagnostics) { Tests = tests, UtilityMaximisation = UtilityRange.Of(model, work) };
+        var stages = new FindingsInput(study, sample.Sample, model, inference, diagnostics)
+        {
+            Tests = tests, UtilityMaximisation = UtilityRange.Of(model, work), ShowsIds = sample.ShowsIds,
+        };
         return ResultBuilder.Build(stages, FindingList.Of(stages));
     }
 }

@@ -40,6 +40,9 @@ public sealed class PanelAnalysisSample : IDisposable
     /// <summary>The design.</summary>
     public ChoiceDesign Design { get; }
 
+    /// <summary>Whether results may name clusters by their ids; pseudonyms otherwise.</summary>
+    public bool ShowsIds { get; set; }
+
     /// <summary>Most refits that may be at work at a time.</summary>
     internal int RefitsAtOnce { get; private init; } = int.MaxValue;
 

@@ -21,7 +21,7 @@ internal static class DemoCommand
         foreach (var study in studies)
         {
             options.Print($"\n{new string('-', Letter.Width)}\n\n");
-            codes.Add(EstimateCommand.Run(study, Path.ChangeExtension(study, null), strict, null, options));
+            codes.Add(EstimateCommand.Run(study, Path.ChangeExtension(study, null), strict, false, null, options));
             if (codes[^1] == ExitCode.Interrupted) return ExitCode.Interrupted;
         }
 

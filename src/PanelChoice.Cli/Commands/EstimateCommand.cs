@@ -1,4 +1,5 @@
 using PanelChoice.Cli.Report;
+using PanelChoice.Numerics;
 using PanelChoice.Results;
 using PanelChoice.Results.Refits;
 using PanelChoice.Study;
@@ -12,24 +13,32 @@ internal static class EstimateCommand
     /// <param name="study">The study file.</param>
     /// <param name="folder">Folder for the result's files; null for none.</param>
     /// <param name="strict">Whether a flagged dependence ends with its own code.</param>
+    /// <param name="showIds">Whether results may name persons by their ids.</param>
     /// <param name="kept">The store that the design is kept in; null for memory.</param>
     /// <param name="options">What every command takes.</param>
-    public static int Run(string study, string? folder, bool strict, KeptDesign? kept, RunOptions options)
+    public static int Run(string study, string? folder, bool strict, bool showIds, KeptDesign? kept, RunOptions options)
     {
         if (!KernelChoice.IsToBeHad(options)) return ExitCode.Usage;
-        if (folder is not null) return InFolder(study, folder, strict, kept, options);
+        if (folder is not null) return InFolder(study, folder, strict, showIds, kept, options);
         return StudyRun.With(
             study, options,
             specification =>
             {
                 KeptDesign.RefuseInput(kept, specification);
-                return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, KeptDesign.Read(kept, specification, work), work));
+                return ProgressDisplay.Run(options, work => PanelAnalysis.Run(specification, Read(kept, specification, showIds, work), work));
             },
             (_, result) => Tell(result, null, strict, options));
     }
 
+    private static Checked<PanelAnalysisSample> Read(KeptDesign? kept, StudySpecification study, bool showIds, WorkContext work)
+    {
+        var sample = KeptDesign.Read(kept, study, work);
+        if (sample.Value is { } read) read.ShowsIds = showIds;
+        return sample;
+    }
+
     /// <summary>The same with results in a folder, where a run that was ended before is taken up again.</summary>
-    private static int InFolder(string study, string folder, bool strict, KeptDesign? kept, RunOptions options)
+    private static int InFolder(string study, string folder, bool strict, bool showIds, KeptDesign? kept, RunOptions options)
     {
         var hasBegun = false;
         try
@@ -42,7 +51,7 @@ internal static class EstimateCommand
                     OutputException.RefuseInput(Path.Combine(folder, ResultFiles.Journal), specification);
                     KeptDesign.RefuseInput(kept, specification);
                     return OutputException.Guard(folder, () => ProgressDisplay.Run(options, (work, tell) => PanelAnalysisInFolder.Run(
-                        specification, folder, () => KeptDesign.Read(kept, specification, work),
+                        specification, folder, () => Read(kept, specification, showIds, work),
                         found =>
                         {
                             hasBegun = true;

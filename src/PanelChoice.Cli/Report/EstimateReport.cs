@@ -20,6 +20,7 @@ internal static class EstimateReport
         FitSection.AddTo(letter, result);
         TermsSection.AddTo(letter, result);
         TestsSection.AddTo(letter, result);
+        DriversSection.AddTo(letter, result);
         letter.Heading("What the past does");
         Say(letter, result, FindingTopic.Past);
         letter.Heading("Which alternatives replace which");

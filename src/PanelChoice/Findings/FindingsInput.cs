@@ -17,6 +17,9 @@ namespace PanelChoice.Findings;
 public sealed record FindingsInput(
     StudySpecification Study, EstimationSample Sample, FittedModel Model, InferenceResult Inference, DiagnosticsResult Diagnostics)
 {
+    /// <summary>Whether clusters go by their own ids, not by pseudonyms.</summary>
+    public bool ShowsIds { get; init; }
+
     /// <summary>What to report of each free parameter, in layout order.</summary>
     internal ImmutableArray<Recommendation> Recommendations => RecommendationRules.Of(this);
 

@@ -31,6 +31,9 @@ public enum CovarianceKind
 
     /// <summary>Covariance of bootstrap replicates.</summary>
     Bootstrap,
+
+    /// <summary>Clustered on scores adjusted for leverage (Bell and McCaffrey 2002), an extension to likelihoods that are not linear.</summary>
+    BiasReduced,
 }
 
 /// <summary>A covariance estimate, or the reason why there is none.</summary>
@@ -55,6 +58,16 @@ public sealed record CovarianceEstimate(
     /// <summary>F variances behind the standard errors, where they are not the diagonal of <see cref="Matrix"/>: those before a repair; empty otherwise.</summary>
     public ImmutableArray<double> Variances { get; init; } = [];
 
+    /// <summary>
+    /// F degrees of freedom, term by term (NaN where they do not exist), where they differ between terms; then <see cref="DegreesOfFreedom"/> is the smallest,
+    /// for joint tests. Empty otherwise.
+    /// </summary>
+    public ImmutableArray<double> DegreesByTerm { get; init; } = [];
+
+    /// <summary>Degrees of freedom that a single free parameter is read against; null means the normal distribution, NaN that there are none.</summary>
+    /// <param name="place">Its place among the free ones.</param>
+    internal double? DegreesOf(int place) => DegreesByTerm.IsEmpty ? DegreesOfFreedom : DegreesByTerm[place];
+
     /// <summary>Variance behind the standard error of a free parameter.</summary>
     /// <param name="place">Its place among the free ones.</param>
     internal double VarianceOf(int place) => Variances.IsEmpty ? Matrix![place, place] : Variances[place];
@@ -78,7 +91,11 @@ public sealed record Interval(double Low, double High);
 /// <param name="Interval">Interval at the study's confidence; null when it is not given for this kind.</param>
 /// <param name="PValue">Two-sided p-value against 0 (coefficients) or the parent's dissimilarity (log scale); null when not given.</param>
 /// <param name="Reason">Why a figure is missing; null when none is.</param>
-public sealed record KindFigures(double? StandardError, Interval? Interval, double? PValue, string? Reason);
+public sealed record KindFigures(double? StandardError, Interval? Interval, double? PValue, string? Reason)
+{
+    /// <summary>Degrees of freedom of the t distribution behind interval and p-value; null where there are none or the normal distribution is used.</summary>
+    public double? DegreesOfFreedom { get; init; }
+}
 
 /// <summary>All inference on one free parameter.</summary>
 /// <param name="Parameter">Index in the layout.</param>
@@ -95,6 +112,12 @@ public sealed record ParameterInference(
     /// The same ratio from the jackknife, given below 40 clusters, where the clustered standard error itself tends to be too small; null otherwise.
     /// </summary>
     public double? JackknifeSeRatio { get; init; }
+
+    /// <summary>What the shares of the clusters in the information tell of this term; null where nothing has a meaning.</summary>
+    public TermLeverage? Leverage { get; init; }
+
+    /// <summary>The cluster that moves this term most; null where no change is known.</summary>
+    public Influence? MostInfluential { get; init; }
 
     /// <summary>Why there is no percentile interval; null when there is one.</summary>
     public string? PercentileReason { get; init; }
@@ -140,6 +163,9 @@ public sealed record JackknifeSummary(JackknifeKind Kind, int Refits, int Failur
 {
     /// <summary>The largest certificate (<see cref="RefitOutcome.Decrement"/>) among the refits that converged; null for the one-step form or where none did.</summary>
     public double? LargestDecrement { get; init; }
+
+    /// <summary>With the one-step form, clusters without which the step does not exist and a full refit was made.</summary>
+    public int Refitted { get; init; }
 }
 
 /// <summary>Failures of one kind among bootstrap replicates.</summary>
@@ -229,7 +255,7 @@ public sealed record Influence(int Cluster, int Parameter, double Change);
 /// <param name="Smallest">Smallest number of situations in a cluster.</param>
 /// <param name="Median">Median number of situations.</param>
 /// <param name="Largest">Largest number of situations.</param>
-/// <param name="Effective">Effective number (Carter, Schnepel and Steigerwald 2017); null until it is computed.</param>
+/// <param name="Effective">Smallest effective number over the free coefficients (Carter, Schnepel and Steigerwald 2017); null where there is none.</param>
 /// <param name="DegreesOfFreedom">G - 1.</param>
 /// <param name="MostInfluential">Clusters that move terms most, measured in clustered standard errors; empty without jackknife.</param>
 public sealed record ClusterSummary(
@@ -237,6 +263,21 @@ public sealed record ClusterSummary(
 {
     /// <summary>Why there is no effective number; null when there is one.</summary>
     public string? EffectiveReason { get; init; }
+
+    /// <summary>Names of the clusters as sentences may give them: stand-ins where ids must not be passed on.</summary>
+    public ImmutableArray<string> Names { get; init; } = [];
+
+    /// <summary>Largest leverage tr(H_g H^-1) of a cluster, whose mean is parameters / clusters; null where it has no meaning.</summary>
+    public double? LargestLeverage { get; init; }
+
+    /// <summary>Coefficient of variation of the leverages; null where it has no meaning.</summary>
+    public double? LeverageSpread { get; init; }
+
+    /// <summary>Coefficient of variation of the numbers of situations; null with one cluster.</summary>
+    public double? SizeSpread { get; init; }
+
+    /// <summary>Where changes without a cluster come from: full refits or one Newton step each; null where none are known.</summary>
+    public JackknifeKind? InfluenceFrom { get; init; }
 }
 
 /// <summary>Everything Inference says about a fitted model.</summary>

@@ -20,7 +20,10 @@ internal sealed record JackknifeRefits(
     /// edge of their range) without the cluster, those terms are lost for the jackknife, and the others are estimated once more with them
     /// held at their full-sample values, so that one person cannot take the figures of every term away.
     /// </summary>
-    public static JackknifeRefits Run(InferenceInput input, WorkContext work)
+    /// <param name="input">What is known of the model.</param>
+    /// <param name="only">The clusters to leave out, one at a time.</param>
+    /// <param name="work">Threads, progress, cancellation.</param>
+    public static JackknifeRefits Run(InferenceInput input, IReadOnlyList<int> only, WorkContext work)
     {
         var clusters = input.Clusters.Length;
         var f = input.Free.Length;
@@ -30,7 +33,7 @@ internal sealed record JackknifeRefits(
         var hopeless = new List<(int, string)>();
         var failed = new HashSet<int>();
         double? largest = null;
-        var pending = Enumerable.Range(0, clusters).Select(g => new Deletion(g, [], [])).ToList();
+        var pending = only.Select(g => new Deletion(g, [], [])).ToList();
         while (pending.Count > 0)
         {
             var again = new List<Deletion>();

@@ -14,7 +14,7 @@ internal sealed class ParameterFigures(
 {
     private const string WeightUnit = "It depends on the unit of the sampling weights, so no interval or p-value is made from it.";
 
-    private readonly Dictionary<CovarianceKind, double> critical = [];
+    private readonly Dictionary<(CovarianceKind, double), double> critical = [];
     private readonly double[][] replicates = bootstrap is null ? [] : ByParameter(input, bootstrap);
 
     /// <summary>The figures of one free parameter.</summary>
@@ -62,15 +62,19 @@ internal sealed class ParameterFigures(
         if (covariance.Kind == CovarianceKind.ClusterUncorrected)
             return new KindFigures(se, null, null, "The form without the factor gives a standard error only.");
         if (covariance.Kind == CovarianceKind.Pooled && input.IsWeighted) return new KindFigures(se, null, null, WeightUnit);
-        var reference = new ReferenceDistribution(covariance.DegreesOfFreedom);
+        var degrees = covariance.DegreesOf(place);
+        if (degrees is { } none && !double.IsFinite(none))
+            return new KindFigures(se, null, null, "Its degrees of freedom do not exist, so that no interval and no p-value is made from it.");
+        var reference = new ReferenceDistribution(degrees);
         var (p, reason) = PValue(covariance, place, reference);
-        return new KindFigures(se, IntervalOf(place, se, Critical(covariance.Kind, reference)), p, reason);
+        return new KindFigures(se, IntervalOf(place, se, Critical(covariance.Kind, reference)), p, reason) { DegreesOfFreedom = degrees };
     }
 
-    /// <summary>The half-width of an interval in standard errors, the same for all parameters of a kind.</summary>
+    /// <summary>The half-width of an interval in standard errors, the same for all parameters of a kind with as many degrees of freedom.</summary>
     private double Critical(CovarianceKind kind, ReferenceDistribution reference)
     {
-        if (!critical.TryGetValue(kind, out var q)) critical[kind] = q = reference.Critical(confidence);
+        var key = (kind, reference.DegreesOfFreedom ?? double.PositiveInfinity);
+        if (!critical.TryGetValue(key, out var q)) critical[key] = q = reference.Critical(confidence);
         return q;
     }
 

@@ -1,4 +1,5 @@
 using System.Collections.Immutable;
+using System.Runtime.InteropServices;
 using PanelChoice.Numerics;
 using PanelChoice.Study;
 
@@ -30,13 +31,18 @@ public static class StandardErrors
         var (twoWay, ways) = TwoWayCovariance.Estimate(input, bread, scores, work.Threads);
         var (jackknife, deletions) = ClusterJackknife.Estimate(input, scores, settings.Jackknife, work);
         var (bootstrap, replicates) = ClusterBootstrap.Estimate(input, settings, work);
+        var sweep = ClusterSweep.Over(input, scores, work)!;
+        // Where the jackknife is off, one step each tells who moves what.
+        var changes = deletions is not null ? new DeletionChanges(deletions.Kind, deletions.Deviations)
+            : input.Clusters.Length < 2 ? null
+            : new DeletionChanges(JackknifeKind.OneStep, ImmutableCollectionsMarshal.AsImmutableArray(OneStepDeletions.Of(input, scores.ByCluster, work).Deviations));
         return Assemble(
             input, settings,
             [
                 pooled, OuterProductCovariance.Estimate(input, meat.AsSpan()), RobustCovariance.Estimate(input, bread, meat.AsSpan()), cluster, uncorrected, jackknife,
-                twoWay, bootstrap,
+                twoWay, bootstrap, BiasReducedCovariance.Estimate(input, sweep),
             ],
-            deletions, replicates) with
+            deletions, replicates, changes, sweep) with
         {
             TwoWay = ways,
         };
@@ -47,18 +53,22 @@ public static class StandardErrors
         input.NoMaximum ?? (input.Free.IsEmpty ? "Every parameter is fixed, so that nothing was estimated." : PooledCovariance.Estimate(input, out _).Refusal);
 
     private static InferenceResult Without(InferenceInput input, InferenceSettings settings, string reason) =>
-        Assemble(input, settings, [.. Enum.GetValues<CovarianceKind>().Select(kind => CovarianceEstimate.Refused(kind, reason))], null, null);
+        Assemble(input, settings, [.. Enum.GetValues<CovarianceKind>().Select(kind => CovarianceEstimate.Refused(kind, reason))], null, null, null, null);
 
     private static InferenceResult Assemble(
         InferenceInput input, InferenceSettings settings, ImmutableArray<CovarianceEstimate> estimates, JackknifeSummary? jackknife,
-        BootstrapSummary? bootstrap)
+        BootstrapSummary? bootstrap, DeletionChanges? changes, ClusterSweep? sweep)
     {
         var covariances = estimates.ToImmutableDictionary(c => c.Kind);
         var figures = new ParameterFigures(input, covariances, bootstrap, jackknife, settings.Confidence);
         return new InferenceResult(
             covariances,
-            [.. Enumerable.Range(0, input.Free.Length).Select(figures.Of)],
-            ClusterFigures.Of(input, covariances[CovarianceKind.Cluster], jackknife),
+            [.. Enumerable.Range(0, input.Free.Length).Select(k => figures.Of(k) with
+            {
+                Leverage = sweep?.Terms[k],
+                MostInfluential = ClusterFigures.MostInfluential(input, changes, k),
+            })],
+            ClusterFigures.Of(input, covariances[CovarianceKind.Cluster], changes, sweep),
             jackknife, bootstrap);
     }
 }

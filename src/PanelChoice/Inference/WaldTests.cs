@@ -57,7 +57,10 @@ internal static class WaldTests
         var w = 0.0;
         for (var i = 0; i < q; i++) w += gap[i] * solved[i];
         if (!double.IsFinite(w) || w < 0) return Refuse("The statistic leaves the range of numbers.");
-        return covariance.DegreesOfFreedom is { } d
+        // Where degrees of freedom differ between terms, the fewest of those in the test count.
+        var degrees = covariance.DegreesByTerm.IsDefaultOrEmpty ? covariance.DegreesOfFreedom : used.Min(c => covariance.DegreesByTerm[c]);
+        if (degrees is { } none && !double.IsFinite(none)) return Refuse("Its degrees of freedom do not exist, so that no p-value is made from it.");
+        return degrees is { } d
             ? new WaldFigures(w / q, q, d, UpperF(q, d, w / q), null)
             : new WaldFigures(w, q, null, UpperChiSquare(q, w), null);
     }

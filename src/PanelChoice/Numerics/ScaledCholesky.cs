@@ -72,6 +72,23 @@ internal sealed class ScaledCholesky
         for (var r = 0; r < n; r++) b[r] *= scale[r];
     }
 
+    /// <summary>
+    /// The lower triangular W with W A W' = I for the matrix A that was factored, so that A^-1 = W'W; n x n, row by row.
+    /// </summary>
+    public double[] Whitener()
+    {
+        var whitener = new double[n * n];
+        for (var c = 0; c < n; c++)
+            for (var r = c; r < n; r++)
+            {
+                var sum = r == c ? scale[c] : 0;
+                for (var k = c; k < r; k++) sum -= lower[(r * n) + k] * whitener[(k * n) + c];
+                whitener[(r * n) + c] = sum / lower[(r * n) + r];
+            }
+
+        return whitener;
+    }
+
     /// <summary>The inverse, n x n, exactly symmetric.</summary>
     public double[] Inverse()
     {

@@ -218,23 +218,39 @@ public sealed record JackknifeCounts(string Kind, int Refits, int Failures)
 {
     /// <summary>How far from its maximum any of the refits may be, in its own pooled standard errors; null where nothing was refitted.</summary>
     public double? LargestDecrement { get; init; }
+
+    /// <summary>With the one-step form, clusters without which the step does not exist and a full refit was made; with refits all of them.</summary>
+    public int Refitted { get; init; }
 }
 
 /// <summary>The clusters the figures rest on.</summary>
 /// <param name="By">"person" or the cluster column.</param>
 /// <param name="Count">Clusters with an occasion in the sample.</param>
-/// <param name="Effective">Effective number (Carter, Schnepel and Steigerwald 2017); null until it is computed.</param>
+/// <param name="Effective">Smallest effective number over the free coefficients (Carter, Schnepel and Steigerwald 2017); null where there is none.</param>
 /// <param name="Smallest">Smallest number of occasions.</param>
 /// <param name="Median">Median number.</param>
 /// <param name="Largest">Largest number.</param>
 /// <param name="DegreesOfFreedom">G - 1.</param>
-/// <param name="MostInfluential">Clusters that move terms most, under pseudonyms.</param>
+/// <param name="MostInfluential">Clusters that move terms most, under pseudonyms unless ids were asked for.</param>
 public sealed record ClusterResult(
     string By, int Count, double? Effective, int Smallest, double Median, int Largest, int DegreesOfFreedom,
-    ImmutableArray<InfluenceResult> MostInfluential);
+    ImmutableArray<InfluenceResult> MostInfluential)
+{
+    /// <summary>Largest leverage of a cluster, whose mean is free parameters / clusters; null where there is none.</summary>
+    public double? LargestLeverage { get; init; }
+
+    /// <summary>Coefficient of variation of the leverages; null where there is none.</summary>
+    public double? LeverageSpread { get; init; }
+
+    /// <summary>Coefficient of variation of the numbers of occasions; null with one cluster.</summary>
+    public double? SizeSpread { get; init; }
+
+    /// <summary>Where changes without a cluster come from: "refit" or "one_step"; null where none are known.</summary>
+    public string? InfluenceFrom { get; init; }
+}
 
 /// <summary>A cluster that moves a term.</summary>
-/// <param name="Person">Pseudonym of the person or cluster.</param>
+/// <param name="Person">The person or cluster, under its pseudonym unless ids were asked for.</param>
 /// <param name="Term">Label of the parameter.</param>
 /// <param name="Change">Change of the estimate when the cluster is left out.</param>
 public sealed record InfluenceResult(string Person, string Term, double Change);

@@ -43,6 +43,11 @@ public static class CoefficientsCsv
         .. Ends("bootstrap_error_t", p => p.BootstrapErrors.Studentised),
         ("se_ratio", p => p.SeRatio),
         ("equivalent_occasions", p => p.EquivalentOccasions),
+        ("se_bias_reduced", p => p.StandardErrors.BiasReduced),
+        .. Ends("bias_reduced", p => p.Intervals.BiasReduced),
+        ("p_bias_reduced", p => p.PValues.BiasReduced),
+        ("df_bias_reduced", p => p.Degrees.BiasReduced),
+        ("effective_clusters", p => p.EffectiveClusters),
     ];
 
     /// <summary>Writes the table.</summary>

@@ -11,7 +11,10 @@ internal static class CovarianceExpansion
     {
         return new CovarianceMatrices(
             Full(CovarianceKind.Pooled), Full(CovarianceKind.OuterProduct), Full(CovarianceKind.Robust), Full(CovarianceKind.Cluster),
-            Full(CovarianceKind.ClusterUncorrected), Full(CovarianceKind.Jackknife), Full(CovarianceKind.TwoWay), Full(CovarianceKind.Bootstrap));
+            Full(CovarianceKind.ClusterUncorrected), Full(CovarianceKind.Jackknife), Full(CovarianceKind.TwoWay), Full(CovarianceKind.Bootstrap))
+        {
+            BiasReduced = Full(CovarianceKind.BiasReduced),
+        };
 
         SquareMatrix? Full(CovarianceKind kind)
         {

@@ -12,6 +12,7 @@ internal static class JsonWords
         CovarianceKind.OuterProduct => "outer_product",
         CovarianceKind.ClusterUncorrected => "cluster_uncorrected",
         CovarianceKind.TwoWay => "two_way",
+        CovarianceKind.BiasReduced => "bias_reduced",
         _ => kind.ToString().ToLowerInvariant(),
     };
 

@@ -41,6 +41,8 @@ internal static class ParameterEntries
         return entries.ToImmutable();
     }
 
+    private const string NoShare = "Without a maximum no cluster has a share in the information.";
+
     public static ParameterResult Figures(ParameterEntry entry, string path, FittedModel model, InferenceResult inference, ReasonBook book)
     {
         var parameter = model.Layout.Parameters[entry.Parameter];
@@ -56,7 +58,10 @@ internal static class ParameterEntries
             new StandardErrorsByKind(
                 Error("pooled", CovarianceKind.Pooled), Error("outer_product", CovarianceKind.OuterProduct), Error("robust", CovarianceKind.Robust),
                 Error("cluster", CovarianceKind.Cluster), Error("jackknife", CovarianceKind.Jackknife), Error("two_way", CovarianceKind.TwoWay),
-                Error("bootstrap", CovarianceKind.Bootstrap)),
+                Error("bootstrap", CovarianceKind.Bootstrap))
+            {
+                BiasReduced = Error("bias_reduced", CovarianceKind.BiasReduced),
+            },
             new IntervalsByKind(
                 Range("pooled", CovarianceKind.Pooled), Range("robust", CovarianceKind.Robust), Range("cluster", CovarianceKind.Cluster),
                 Range("jackknife", CovarianceKind.Jackknife), Range("two_way", CovarianceKind.TwoWay), Range("bootstrap", CovarianceKind.Bootstrap),
@@ -66,10 +71,14 @@ internal static class ParameterEntries
                     $"{path}.interval.bootstrap_bca", figures?.BootstrapAccelerated, figures?.AcceleratedReason ?? Missing(CovarianceKind.Bootstrap)),
                 BootstrapStudentised = book.Interval(
                     $"{path}.interval.bootstrap_t", figures?.BootstrapStudentised, figures?.StudentisedReason ?? Missing(CovarianceKind.Bootstrap)),
+                BiasReduced = Range("bias_reduced", CovarianceKind.BiasReduced),
             },
             new PValuesByKind(
                 PValue("pooled", CovarianceKind.Pooled), PValue("robust", CovarianceKind.Robust), PValue("cluster", CovarianceKind.Cluster),
-                PValue("jackknife", CovarianceKind.Jackknife), PValue("two_way", CovarianceKind.TwoWay), PValue("bootstrap", CovarianceKind.Bootstrap)),
+                PValue("jackknife", CovarianceKind.Jackknife), PValue("two_way", CovarianceKind.TwoWay), PValue("bootstrap", CovarianceKind.Bootstrap))
+            {
+                BiasReduced = PValue("bias_reduced", CovarianceKind.BiasReduced),
+            },
             book.Number($"{path}.bootstrap_error", figures?.BootstrapError, Missing(CovarianceKind.Bootstrap)),
             book.Number($"{path}.se_ratio", figures?.SeRatio, figures?.RatioReason ?? Missing(CovarianceKind.Cluster)),
             book.Number($"{path}.equivalent_occasions", figures?.EquivalentOccasions, figures?.RatioReason ?? Missing(CovarianceKind.Cluster)))
@@ -79,7 +88,32 @@ internal static class ParameterEntries
                 book.Interval($"{path}.bootstrap_errors.percentile", figures?.BootstrapErrors?.Percentile, figures?.PercentileReason ?? Missing(CovarianceKind.Bootstrap)),
                 book.Interval($"{path}.bootstrap_errors.bca", figures?.BootstrapErrors?.Accelerated, figures?.AcceleratedReason ?? Missing(CovarianceKind.Bootstrap)),
                 book.Interval($"{path}.bootstrap_errors.t", figures?.BootstrapErrors?.Studentised, figures?.StudentisedReason ?? Missing(CovarianceKind.Bootstrap))),
+            Degrees = new DegreesByKind(
+                Degrees("cluster", CovarianceKind.Cluster), Degrees("jackknife", CovarianceKind.Jackknife), Degrees("two_way", CovarianceKind.TwoWay),
+                Degrees("bias_reduced", CovarianceKind.BiasReduced), Degrees("bootstrap", CovarianceKind.Bootstrap)),
+            EffectiveClusters = book.Number($"{path}.effective_clusters", figures?.Leverage?.Effective, FixedReason(entry) ?? NoShare),
+            PartialLeverage = Leverage(),
+            Influence = Influence(),
         };
+
+        double? Degrees(string name, CovarianceKind kind) => book.Number($"{path}.degrees_of_freedom.{name}", Of(kind)?.DegreesOfFreedom, Missing(kind));
+
+        PartialLeverageResult? Leverage()
+        {
+            if (figures?.Leverage is { } leverage)
+                return new PartialLeverageResult(
+                    book.Number($"{path}.partial_leverage.largest", leverage.Largest, NoShare),
+                    book.Number($"{path}.partial_leverage.spread", leverage.Spread, "There is one cluster only."));
+            book.Note($"{path}.partial_leverage", FixedReason(entry) ?? NoShare);
+            return null;
+        }
+
+        TermInfluenceResult? Influence()
+        {
+            if (figures?.MostInfluential is { } most) return new TermInfluenceResult(most.Change, $"{inference.Clusters.By} {inference.Clusters.Names[most.Cluster]}");
+            book.Note($"{path}.influence", FixedReason(entry) ?? "No estimate without a single cluster exists.");
+            return null;
+        }
 
         double? Error(string name, CovarianceKind kind) => book.Number($"{path}.se.{name}", Of(kind)?.StandardError, Missing(kind));
         Interval? Range(string name, CovarianceKind kind) => book.Interval($"{path}.interval.{name}", Of(kind)?.Interval, Missing(kind));

@@ -33,6 +33,18 @@ public sealed record ParameterResult(
     /// <summary>The name people read.</summary>
     public string Label => Alternative is null ? Name : $"{Name} [{Alternative}]";
 
+    /// <summary>Degrees of freedom behind intervals and p-values.</summary>
+    public DegreesByKind Degrees { get; init; } = new(null, null, null, null, null);
+
+    /// <summary>Effective number of clusters (Carter, Schnepel and Steigerwald 2017); null where there is none.</summary>
+    public double? EffectiveClusters { get; init; }
+
+    /// <summary>Partial leverage; null where there is none.</summary>
+    public PartialLeverageResult? PartialLeverage { get; init; }
+
+    /// <summary>The cluster that moves the estimate most; null where no change is known.</summary>
+    public TermInfluenceResult? Influence { get; init; }
+
     /// <summary>Whether it was estimated.</summary>
     public bool IsFree => Status == "free";
 }
@@ -46,7 +58,29 @@ public sealed record ParameterResult(
 /// <param name="TwoWay">Two-way clustered.</param>
 /// <param name="Bootstrap">Bootstrap.</param>
 public sealed record StandardErrorsByKind(
-    double? Pooled, double? OuterProduct, double? Robust, double? Cluster, double? Jackknife, double? TwoWay, double? Bootstrap);
+    double? Pooled, double? OuterProduct, double? Robust, double? Cluster, double? Jackknife, double? TwoWay, double? Bootstrap)
+{
+    /// <summary>Clustered with scores adjusted for leverage.</summary>
+    public double? BiasReduced { get; init; }
+}
+
+/// <summary>Degrees of freedom by kind; null where there is no figure that is read against t.</summary>
+/// <param name="Cluster">G - 1.</param>
+/// <param name="Jackknife">G - 1.</param>
+/// <param name="TwoWay">min G - 1.</param>
+/// <param name="BiasReduced">The term's own (Bell and McCaffrey 2002).</param>
+/// <param name="Bootstrap">G - 1.</param>
+public sealed record DegreesByKind(double? Cluster, double? Jackknife, double? TwoWay, double? BiasReduced, double? Bootstrap);
+
+/// <summary>How unevenly a term's information is spread over clusters.</summary>
+/// <param name="Largest">Largest share of a cluster; 1/G if all were alike.</param>
+/// <param name="Spread">Coefficient of variation of the shares; null with one cluster.</param>
+public sealed record PartialLeverageResult(double? Largest, double? Spread);
+
+/// <summary>The largest change of an estimate when one cluster is left out.</summary>
+/// <param name="Largest">The change.</param>
+/// <param name="Person">The cluster, under its pseudonym unless ids were asked for.</param>
+public sealed record TermInfluenceResult(double Largest, string Person);
 
 /// <summary>Intervals of one parameter; null where one does not exist.</summary>
 /// <param name="Pooled">Normal.</param>
@@ -64,6 +98,9 @@ public sealed record IntervalsByKind(
 
     /// <summary>Bootstrap-t.</summary>
     public Interval? BootstrapStudentised { get; init; }
+
+    /// <summary>t with the term's own degrees of freedom.</summary>
+    public Interval? BiasReduced { get; init; }
 }
 
 /// <summary>Two-sided p-values of one parameter; null where one does not exist.</summary>
@@ -73,7 +110,11 @@ public sealed record IntervalsByKind(
 /// <param name="Jackknife">t(G - 1).</param>
 /// <param name="TwoWay">t(min G - 1).</param>
 /// <param name="Bootstrap">t(G - 1).</param>
-public sealed record PValuesByKind(double? Pooled, double? Robust, double? Cluster, double? Jackknife, double? TwoWay, double? Bootstrap);
+public sealed record PValuesByKind(double? Pooled, double? Robust, double? Cluster, double? Jackknife, double? TwoWay, double? Bootstrap)
+{
+    /// <summary>t with the term's own degrees of freedom.</summary>
+    public double? BiasReduced { get; init; }
+}
 
 /// <summary>
 /// The covariance matrices, each square and symmetric over the result's parameters in their order (rows of fixed parameters are 0), or null.
@@ -88,7 +129,11 @@ public sealed record PValuesByKind(double? Pooled, double? Robust, double? Clust
 /// <param name="Bootstrap">Bootstrap.</param>
 public sealed record CovarianceMatrices(
     SquareMatrix? Pooled, SquareMatrix? OuterProduct, SquareMatrix? Robust, SquareMatrix? Cluster, SquareMatrix? ClusterUncorrected,
-    SquareMatrix? Jackknife, SquareMatrix? TwoWay, SquareMatrix? Bootstrap);
+    SquareMatrix? Jackknife, SquareMatrix? TwoWay, SquareMatrix? Bootstrap)
+{
+    /// <summary>Clustered with scores adjusted for leverage.</summary>
+    public SquareMatrix? BiasReduced { get; init; }
+}
 
 /// <summary>A square matrix, row by row; a cell that does not exist is NaN.</summary>
 /// <param name="Order">Rows and columns.</param>

@@ -93,19 +93,38 @@ internal static class ResultBuilder
             LargestDecrement = book.Number(
                 "jackknife.largest_decrement", summary.LargestDecrement,
                 isOneStep ? "One Newton step stands for each refit." : "No refit converged."),
+            Refitted = isOneStep ? summary.Refitted : summary.Refits,
         };
     }
+
+    private const string NoShare = "Without a maximum no cluster has a share in the information.", OneCluster = "There is one cluster only.";
 
     private static ClusterResult Clusters(FindingsInput stages, ReasonBook book)
     {
         var clusters = stages.Inference.Clusters;
         var design = stages.Model.Design;
-        var codes = Pseudonyms.Of(stages.Sample.Sha256, design.Clusters);
         return new ClusterResult(
             clusters.By, clusters.Count, book.Number("clusters.effective", clusters.Effective, clusters.EffectiveReason ?? "It is not computed."),
             clusters.Smallest, clusters.Median, clusters.Largest, clusters.DegreesOfFreedom,
             [.. clusters.MostInfluential.Select(
-                i => new InfluenceResult($"{clusters.By} {codes[i.Cluster]}", design.Layout.Parameters[i.Parameter].Label, i.Change))]);
+                i => new InfluenceResult($"{clusters.By} {clusters.Names[i.Cluster]}", design.Layout.Parameters[i.Parameter].Label, i.Change))])
+        {
+            LargestLeverage = book.Number("clusters.leverage.largest", clusters.LargestLeverage, NoShare),
+            LeverageSpread = book.Number("clusters.leverage.spread", clusters.LeverageSpread, clusters.Count < 2 ? OneCluster : NoShare),
+            SizeSpread = book.Number("clusters.size_spread", clusters.SizeSpread, OneCluster),
+            InfluenceFrom = Known(clusters.InfluenceFrom switch
+            {
+                JackknifeKind.OneStep => "one_step",
+                null => null,
+                _ => "refit",
+            }),
+        };
+
+        string? Known(string? from)
+        {
+            if (from is null) book.Note("clusters.influence_from", "No estimate without a single cluster exists.");
+            return from;
+        }
     }
 
     private static ImmutableArray<ResultWarning> Warnings(EstimationSample sample, InferenceResult inference, ImmutableArray<Finding> findings) =>

@@ -177,6 +177,7 @@ public static class ResultJson
             json.WriteFigure("jackknife", p.StandardErrors.Jackknife);
             json.WriteFigure("two_way", p.StandardErrors.TwoWay);
             json.WriteFigure("bootstrap", p.StandardErrors.Bootstrap);
+            json.WriteFigure("bias_reduced", p.StandardErrors.BiasReduced);
         });
         json.WriteObject("interval", () =>
         {
@@ -189,6 +190,7 @@ public static class ResultJson
             WriteInterval(json, "bootstrap_percentile", p.Intervals.BootstrapPercentile);
             WriteInterval(json, "bootstrap_bca", p.Intervals.BootstrapAccelerated);
             WriteInterval(json, "bootstrap_t", p.Intervals.BootstrapStudentised);
+            WriteInterval(json, "bias_reduced", p.Intervals.BiasReduced);
         });
         json.WriteObject("p_value", () =>
         {
@@ -198,11 +200,13 @@ public static class ResultJson
             json.WriteFigure("jackknife", p.PValues.Jackknife);
             json.WriteFigure("two_way", p.PValues.TwoWay);
             json.WriteFigure("bootstrap", p.PValues.Bootstrap);
+            json.WriteFigure("bias_reduced", p.PValues.BiasReduced);
         });
         json.WriteFigure("bootstrap_error", p.BootstrapError);
         BootstrapJson.WriteErrors(json, p.BootstrapErrors);
         json.WriteFigure("se_ratio", p.SeRatio);
         json.WriteFigure("equivalent_occasions", p.EquivalentOccasions);
+        DriversJson.Write(json, p);
     });
 
     internal static void WriteInterval(Utf8JsonWriter json, string name, Interval? interval)
@@ -226,6 +230,7 @@ public static class ResultJson
             json.WriteNumber("refits", jackknife.Refits);
             json.WriteNumber("failures", jackknife.Failures);
             json.WriteFigure("largest_decrement", jackknife.LargestDecrement);
+            json.WriteNumber("refitted", jackknife.Refitted);
         });
     }
 
@@ -239,6 +244,7 @@ public static class ResultJson
         Matrix("jackknife", covariance.Jackknife);
         Matrix("two_way", covariance.TwoWay);
         Matrix("bootstrap", covariance.Bootstrap);
+        Matrix("bias_reduced", covariance.BiasReduced);
 
         void Matrix(string name, SquareMatrix? matrix)
         {
@@ -256,6 +262,13 @@ public static class ResultJson
         json.WriteFigure("median", clusters.Median);
         json.WriteNumber("largest", clusters.Largest);
         json.WriteNumber("degrees_of_freedom", clusters.DegreesOfFreedom);
+        json.WriteObject("leverage", () =>
+        {
+            json.WriteFigure("largest", clusters.LargestLeverage);
+            json.WriteFigure("spread", clusters.LeverageSpread);
+        });
+        json.WriteFigure("size_spread", clusters.SizeSpread);
+        json.WriteString("influence_from", clusters.InfluenceFrom);
         json.WriteArray("most_influential", clusters.MostInfluential, i => json.WriteObject(() =>
         {
             json.WriteString("person", i.Person);

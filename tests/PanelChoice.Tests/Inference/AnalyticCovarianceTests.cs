@@ -223,6 +223,7 @@ public class AnalyticCovarianceTests
         {
             Clusters = input.Clusters.Add("21"), ClusterOccasions = input.ClusterOccasions.Add(0),
             Scores = threads => new ScoreSums(input.Scores(threads).OuterProduct, [.. input.Scores(threads).ByCluster, 0, 0, 0]),
+            ClusterInformation = (first, count) => [.. input.ClusterInformation(first, Math.Min(20, first + count) - first), .. new double[first + count > 20 ? 9 : 0]],
         };
         var with21 = StandardErrors.Compute(more, Settings(), WorkContext.Quiet).Covariances;
         var with20 = StandardErrors.Compute(input, Settings(), WorkContext.Quiet).Covariances;

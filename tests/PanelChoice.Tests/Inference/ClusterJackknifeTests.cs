@@ -101,6 +101,39 @@ public class ClusterJackknifeTests
         }
     }
 
+    [Fact]
+    public void With_fewer_than_forty_clusters_the_one_step_form_is_refused_and_its_changes_are_still_told()
+    {
+        var result = StandardErrors.Compute(new LinearToy(27, 39, _ => 2).Input(), Settings(JackknifeKind.OneStep), WorkContext.Quiet);
+        Assert.Contains("no substitute for refits with 39 clusters", result.Covariances[CovarianceKind.Jackknife].Refusal, StringComparison.Ordinal);
+        Assert.Equal(JackknifeKind.OneStep, result.Clusters.InfluenceFrom);
+        Assert.NotNull(StandardErrors.Compute(new LinearToy(27, 40, _ => 2).Input(), Settings(JackknifeKind.OneStep), WorkContext.Quiet).Covariances[CovarianceKind.Jackknife].Matrix);
+    }
+
+    [Fact]
+    public void Beyond_a_thousand_clusters_those_without_which_no_step_exists_are_refitted()
+    {
+        // One cluster alone carries the last column: without it nothing is left of the column's information.
+        var toy = new LinearToy(28, 1001, _ => 1);
+        var input = toy.Input();
+        var changed = input with
+        {
+            ClusterInformation = (first, count) =>
+            {
+                var parts = input.ClusterInformation(first, count).ToArray();
+                if (first <= 500 && first + count > 500) input.Information.CopyTo(parts, (500 - first) * 9);
+                return [.. parts];
+            },
+        };
+        var step = StandardErrors.Compute(changed, Settings(JackknifeKind.Auto), WorkContext.Quiet);
+        Assert.Equal((JackknifeKind.OneStep, 1, 0), (step.Jackknife!.Kind, step.Jackknife.Refitted, step.Jackknife.Failures));
+        Assert.Contains(step.Covariances[CovarianceKind.Jackknife].Cautions, c => c.Contains("full refits were made there", StringComparison.Ordinal));
+        // In a linear model a step is the refit, so that nothing else changes.
+        var plain = StandardErrors.Compute(input, Settings(JackknifeKind.Auto), WorkContext.Quiet);
+        Assert.True(plain.Jackknife!.Deviations.Zip(step.Jackknife.Deviations).All(x => Math.Abs(x.First - x.Second) < 1e-10));
+        Assert.NotNull(StandardErrors.Compute(changed, Settings(JackknifeKind.OneStep), WorkContext.Quiet).Covariances[CovarianceKind.Jackknife].Refusal);
+    }
+
     [Theory]
     [InlineData(1000, JackknifeKind.Refit)]
     [InlineData(1001, JackknifeKind.OneStep)]
@@ -180,12 +213,12 @@ public class ClusterJackknifeTests
     [Fact]
     public void A_one_step_without_enough_information_left_is_refused_and_names_person_and_term()
     {
-        var input = new LinearToy(28, 6, _ => 3).Input();
-        var parts = input.ClusterInformation(0, 6).ToArray();
+        var input = new LinearToy(28, 42, _ => 3).Input();
+        var parts = input.ClusterInformation(0, 42).ToArray();
         // Person 3 holds all the information on x2.
-        for (var g = 0; g < 6; g++)
+        for (var g = 0; g < 42; g++)
             for (var i = 0; i < 3; i++) parts[(g * 9) + 6 + i] = parts[(g * 9) + (i * 3) + 2] = g == 2 && i == 2 ? 10 : 0;
-        var whole = Enumerable.Range(0, 9).Select(i => Enumerable.Range(0, 6).Sum(g => parts[(g * 9) + i]));
+        var whole = Enumerable.Range(0, 9).Select(i => Enumerable.Range(0, 42).Sum(g => parts[(g * 9) + i]));
         var result = StandardErrors.Compute(
             input with { Information = [.. whole], ClusterInformation = (_, _) => [.. parts] }, Settings(JackknifeKind.OneStep), WorkContext.Quiet);
         Assert.Contains("without person 3 ", result.Covariances[CovarianceKind.Jackknife].Refusal, StringComparison.Ordinal);
@@ -213,7 +246,7 @@ public class ClusterJackknifeTests
         var off = StandardErrors.Compute(input, Settings(), WorkContext.Quiet);
         Assert.Null(off.Jackknife);
         Assert.Contains("switched off", off.Covariances[CovarianceKind.Jackknife].Refusal, StringComparison.Ordinal);
-        Assert.Empty(off.Clusters.MostInfluential);
+        Assert.Equal(JackknifeKind.OneStep, off.Clusters.InfluenceFrom);
         using var cancelled = new CancellationTokenSource();
         cancelled.Cancel();
         var work = new WorkContext(1, null, cancelled.Token);

@@ -20,7 +20,7 @@ public class TermTestTests
         var result = model.Run(TestedModel.Test("one", [label]));
         var parameter = result.Test.Terms[0].Parameter;
         var beside = model.Errors.Parameters.First(p => p.Parameter == parameter);
-        foreach (var kind in new[] { CovarianceKind.Pooled, CovarianceKind.Robust, CovarianceKind.Cluster, CovarianceKind.Jackknife })
+        foreach (var kind in new[] { CovarianceKind.Pooled, CovarianceKind.Robust, CovarianceKind.Cluster, CovarianceKind.Jackknife, CovarianceKind.BiasReduced })
             Assert.Equal(beside.ByKind[kind].PValue!.Value, result.Wald[kind].PValue!.Value, SameMethod);
         Assert.Null(result.Wald[CovarianceKind.Robust].DenominatorFreedom);
         Assert.Equal(29, result.Wald[CovarianceKind.Cluster].DenominatorFreedom);

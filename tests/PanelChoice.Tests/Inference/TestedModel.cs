@@ -19,7 +19,7 @@ internal sealed record TestedModel(
 
     public static TestedModel Of(SyntheticPanel made, InferenceSettings? settings = null)
     {
-        settings ??= new InferenceSettings("person", 0.95, JackknifeKind.OneStep, 0, 7) { ScoreDraws = 0 };
+        settings ??= new InferenceSettings("person", 0.95, JackknifeKind.Refit, 0, 7) { ScoreDraws = 0 };
         var model = Fits.Fit(made);
         Xunit.Assert.Equal(FitStatus.Converged, model.Status);
         var input = InferenceInput.From(model, new ClusterRefitter(model, 1));

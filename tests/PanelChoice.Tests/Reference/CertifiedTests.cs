@@ -66,6 +66,28 @@ public class CertifiedTests
         }
     }
 
+    [Fact]
+    public void Union_has_the_printed_one_step_jackknife_effective_clusters_and_leverage()
+    {
+        var run = PipelineRun.Of("c_union_certified");
+        var lines = File.ReadAllLines(Repository.Fixture("c_union_certified", "certified.txt"));
+        var input = InferenceInput.From(run.Model, new PanelChoice.Estimation.ClusterRefitter(run.Model, 2));
+        var step = StandardErrors.Compute(
+            input, run.Sample.Study.Inference with { Jackknife = PanelChoice.Study.JackknifeKind.OneStep }, PanelChoice.Numerics.WorkContext.Quiet);
+        foreach (var (name, line, effective) in lines.Skip(1).Take(5).Zip(lines.Skip(6).Take(5), (l, e) => (l.Split(' ')[0], l, e)))
+        {
+            var free = run.Model.Layout.Free.Select(k => run.Model.Layout.Parameters[k].Name).ToList().IndexOf(name);
+            Assert.Equal(Figure(line, "CV3lin="), step.Parameters[free].ByKind[CovarianceKind.Jackknife].StandardError!.Value, 0.5000001e-9);
+            // Printed to one decimal.
+            Assert.Equal(Figure(effective, @"G\*\(0\) "), run.Inference.Parameters[free].Leverage!.Effective, 0.0500001);
+            var adjusted = run.Inference.Parameters[free].ByKind[CovarianceKind.BiasReduced].StandardError!.Value;
+            Assert.InRange(adjusted, Figure(line, " CV0="), Figure(line, " CV3="));
+        }
+
+        var leverage = lines.Single(l => l.StartsWith("cluster leverage", StringComparison.Ordinal));
+        Assert.Equal(Figure(leverage, "max/mean "), run.Inference.Clusters.LargestLeverage!.Value / (11.0 / 545), 0.0005001);
+    }
+
     private static double Figure(string line, string before) =>
         double.Parse(Regex.Match(line, before + @"(-?[0-9.]+)").Groups[1].Value, CultureInfo.InvariantCulture);
 }
