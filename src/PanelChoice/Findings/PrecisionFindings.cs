@@ -129,6 +129,7 @@ internal static class PrecisionFindings
     internal static string IdOf(CovarianceKind kind) => kind switch
     {
         CovarianceKind.TwoWay => "two_way",
+        CovarianceKind.BiasReduced => "bias_reduced",
         _ => kind.ToString().ToLowerInvariant(),
     };
 

@@ -23,7 +23,8 @@ internal static class RecommendationRules
             if (!rule.Applies) continue;
             if (Figures(parameter, rule.Kind) is { StandardError: { } se, Interval: { } interval } figures)
             {
-                var df = rule.Kind == CovarianceKind.Robust ? null : input.Inference.Covariances[rule.Kind].DegreesOfFreedom;
+                var place = input.Layout.Free.IndexOf(parameter.Parameter);
+                var df = rule.Kind == CovarianceKind.Robust ? null : input.Inference.Covariances[rule.Kind].DegreesOf(place);
                 var critical = new ReferenceDistribution(df).Critical(input.Study.Inference.Confidence);
                 return new Recommendation(parameter.Parameter, rule.Kind, se, critical, df, interval, figures.PValue, rule.Id, missed + rule.Why);
             }
@@ -55,6 +56,10 @@ internal static class RecommendationRules
         yield return new Rule(
             "some_clusters", CovarianceKind.Jackknife, clusters.Count < SomeClusters,
             $"With {counted}, fewer than {SomeClusters}, the clustered standard error tends to be too small and the jackknife much less (MacKinnon, Nielsen and Webb 2023).");
+        yield return new Rule(
+            "some_clusters_no_refits", CovarianceKind.BiasReduced, clusters.Count < SomeClusters,
+            $"With {counted} the clustered standard error tends to be too small; this one needs no refits and has degrees of freedom of its own (Bell and McCaffrey 2002, here "
+            + "carried over to a likelihood that is not linear).");
         yield return new Rule(
             "many_clusters", CovarianceKind.Cluster, clusters.Count > 1,
             $"It rests on {counted} and holds whatever ties the occasions inside one together (Liang and Zeger 1986; Cameron and Miller 2015); the pooled one holds only "

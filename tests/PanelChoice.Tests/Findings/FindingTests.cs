@@ -93,7 +93,7 @@ public class FindingTests
             Inference = stages.Inference with
             {
                 Covariances = stages.Inference.Covariances.SetItem(CovarianceKind.Jackknife, refused),
-                Parameters = [.. stages.Inference.Parameters.Select(p => Without(p, CovarianceKind.Jackknife, "A refit failed."))],
+                Parameters = [.. stages.Inference.Parameters.Select(p => Without(Without(p, CovarianceKind.Jackknife, "A refit failed."), CovarianceKind.BiasReduced, "It cannot be adjusted."))],
             },
         });
         Assert.Contains(few, f => f.Id == "advice.lower_bound" && f.Sentence.Contains("There is no jackknife one: A refit failed.", StringComparison.Ordinal));
