@@ -19,6 +19,7 @@ internal static class EstimateReport
         letter.Heading("The fit");
         FitSection.AddTo(letter, result);
         TermsSection.AddTo(letter, result);
+        TwoWaySection.AddTo(letter, result);
         TestsSection.AddTo(letter, result);
         DriversSection.AddTo(letter, result);
         letter.Heading("What the past does");

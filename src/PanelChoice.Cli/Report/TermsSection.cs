@@ -42,7 +42,6 @@ internal static class TermsSection
         if (result.Parameters.Any(p => p.StandardErrors.Pooled is not null)) columns.Add((new TableColumnPlan("pooled"), (p, d) => Error(p, p.StandardErrors.Pooled, d)));
         if (IsCrossSection(result)) columns.Add((new TableColumnPlan("robust"), (p, d) => Error(p, p.StandardErrors.Robust, d)));
         if (HasClustered(result)) columns.Add((new TableColumnPlan("clustered"), (p, d) => Error(p, p.StandardErrors.Cluster, d)));
-        if (result.TwoWay is { } ways) columns.Add((new TableColumnPlan($"and by {ways.Second}"), (p, d) => Error(p, p.StandardErrors.TwoWay, d)));
         if (hasJackknife) columns.Add((new TableColumnPlan(jackknife), (p, d) => Error(p, p.StandardErrors.Jackknife, d)));
         if (hasBootstrap) columns.Add((new TableColumnPlan("bootstrap"), (p, d) => Error(p, p.StandardErrors.Bootstrap, d)));
         if (HasClustered(result)) columns.Add((new TableColumnPlan("ratio"), (p, _) => p.SeRatio is { } r ? PlainNumber.Ratio(r) : ""));

@@ -53,6 +53,20 @@ public class TwoWayRunTests
     }
 
     [Fact]
+    public void The_report_shows_both_figures_side_by_side_within_eighty_columns()
+    {
+        using var study = new SmallStudy(text => Quick(text, "occasion").Replace("replicates = 0", "replicates = 5", StringComparison.Ordinal));
+        var outcome = CommandLineProcess.InProcess(["estimate", study.StudyFile]);
+        Assert.Equal(0, outcome.Code);
+        Assert.Contains("Clustered two ways: by person and by occasion", outcome.Out, StringComparison.Ordinal);
+        Assert.Contains("16 by person, 7 by", outcome.Out, StringComparison.Ordinal);
+        var lines = outcome.Out.Split('\n');
+        Assert.All(lines, l => Assert.True(l.Length <= 80, l));
+        // No term is broken to shreds by the columns beside it.
+        Assert.Contains(lines, l => l.StartsWith("  minutes ", StringComparison.Ordinal));
+    }
+
+    [Fact]
     public void Without_a_common_calendar_nothing_is_said_by_occasion_and_the_reason_stands_there()
     {
         using var study = new SmallStudy(text => Quick(text, "occasion").Replace("shared_calendar = true\n", "", StringComparison.Ordinal));
