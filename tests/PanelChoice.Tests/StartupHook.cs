@@ -36,7 +36,7 @@ internal sealed class StartupHook
         public Holder(string name, int count, string mark)
         {
             (this.name, this.count, this.mark) = (name, count, mark);
-            onInterrupt = PosixSignalRegistration.Create(PosixSignal.SIGINT, _ => interrupted.Set());
+            onInterrupt = PosixSignalRegistration.Create(PosixSignal.SIGTERM, _ => interrupted.Set());
         }
 
         public override void Dispose()

@@ -58,7 +58,8 @@ internal sealed class HeldRun : IDisposable
     /// <summary>Interrupts it as Ctrl-C does and waits for its end.</summary>
     public Outcome Interrupt()
     {
-        using (var kill = Process.Start("kill", ["-INT", process.Id.ToString(CultureInfo.InvariantCulture)])) kill.WaitForExit();
+        // TERM and INT have the same handler; INT is ignored by children of a shell that runs its jobs in the background.
+        using (var kill = Process.Start("kill", ["-TERM", process.Id.ToString(CultureInfo.InvariantCulture)])) kill.WaitForExit();
         var error = process.StandardError.ReadToEndAsync();
         var output = process.StandardOutput.ReadToEnd();
         process.WaitForExit();
