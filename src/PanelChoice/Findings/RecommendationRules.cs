@@ -9,7 +9,7 @@ namespace PanelChoice.Findings;
 /// </summary>
 internal static class RecommendationRules
 {
-    /// <summary>Below this many clusters, counted or effective, the clustered standard error with t(G - 1) misses too often; the jackknife does not.</summary>
+    /// <summary>Below this many clusters the clustered standard error with t(G - 1) misses too often; the jackknife does not.</summary>
     public const int SomeClusters = 100;
 
     /// <summary>One recommendation for each free parameter, in layout order.</summary>
