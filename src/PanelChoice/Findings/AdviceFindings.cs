@@ -85,7 +85,7 @@ internal static class AdviceFindings
             yield return new Finding(
                 isBound ? "advice.lower_bound" : "advice." + PrecisionFindings.IdOf(kind), FindingTopic.Advice,
                 isBound ? FindingSeverity.Warning : kind == CovarianceKind.Cluster ? FindingSeverity.Information : FindingSeverity.Notice,
-                $"Report the {PrecisionFindings.InWords(kind)} standard error{(groups.Count == 1 ? "s" : terms)} with {Distribution(group)}. {group.Key.Why}"
+                $"Report the {PrecisionFindings.InWords(kind)} standard error{(groups.Count == 1 ? " of every term" : terms)} with {Distribution(group)}. {group.Key.Why}"
                 + (isBound ? " Call its interval a lower bound for the uncertainty." : ""),
                 [new FindingFigure("clusters", clusters.Count)]);
         }

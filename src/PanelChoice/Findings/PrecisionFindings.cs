@@ -126,8 +126,11 @@ internal static class PrecisionFindings
         _ => kind.ToString().ToLowerInvariant(),
     };
 
+    /// <summary>The word that stands for a kind in ids and machine-readable files.</summary>
     internal static string IdOf(CovarianceKind kind) => kind switch
     {
+        CovarianceKind.OuterProduct => "outer_product",
+        CovarianceKind.ClusterUncorrected => "cluster_uncorrected",
         CovarianceKind.TwoWay => "two_way",
         CovarianceKind.BiasReduced => "bias_reduced",
         _ => kind.ToString().ToLowerInvariant(),

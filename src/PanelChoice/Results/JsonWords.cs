@@ -7,14 +7,7 @@ namespace PanelChoice.Results;
 /// <summary>The words that stand for enumerations in machine-readable files.</summary>
 internal static class JsonWords
 {
-    public static string Of(CovarianceKind kind) => kind switch
-    {
-        CovarianceKind.OuterProduct => "outer_product",
-        CovarianceKind.ClusterUncorrected => "cluster_uncorrected",
-        CovarianceKind.TwoWay => "two_way",
-        CovarianceKind.BiasReduced => "bias_reduced",
-        _ => kind.ToString().ToLowerInvariant(),
-    };
+    public static string Of(CovarianceKind kind) => PrecisionFindings.IdOf(kind);
 
     public static string Of(Verdict verdict) => verdict switch
     {

@@ -39,9 +39,7 @@ public sealed record RecommendationResult(
             json.WriteFigure("se", r.StandardError);
             json.WriteFigure("critical", r.Critical);
             json.WriteFigure("degrees_of_freedom", r.DegreesOfFreedom);
-            json.WritePropertyName("interval");
-            if (r.Interval is { } interval) json.WriteRow([interval.Low, interval.High]);
-            else json.WriteNullValue();
+            ResultJson.WriteInterval(json, "interval", r.Interval);
             json.WriteFigure("p_value", r.PValue);
             json.WriteString("rule", r.Rule);
             json.WriteString("why", r.Why);
